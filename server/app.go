@@ -1,0 +1,53 @@
+package main
+
+import (
+	"log/slog"
+	"net/http"
+
+	"github.com/alexedwards/scs/v2"
+	"github.com/labstack/echo/v4"
+
+	"fathombend/catalogue"
+)
+
+// App is the running web application: the open catalogue, the sessions and
+// the caches. Handlers are its methods.
+type App struct {
+	store    *catalogue.Store
+	sessions *scs.SessionManager
+	log      *slog.Logger
+	readOnly bool
+	fits     *cache
+}
+
+// newApp wires an App over an open store.
+func newApp(store *catalogue.Store, log *slog.Logger, readOnly bool) *App {
+	return &App{store: store, log: log, readOnly: readOnly, fits: newCache(256)}
+}
+
+// handler builds the router. One line a room: each routes method stands in the
+// file of its noun.
+func (a *App) handler() http.Handler {
+	e := echo.New()
+	e.HideBanner, e.HidePort = true, true
+	e.HTTPErrorHandler = a.handleError
+	a.middleware(e)
+	a.routesStatic(e)
+	a.routesMeridian(e)
+	a.routesSystems(e)
+	a.routesRegression(e)
+	a.routesExpectation(e)
+	a.routesMeasure(e)
+	a.routesAccounts(e)
+	a.routesContribute(e)
+	a.routesReview(e)
+	a.routesMethods(e)
+	return e
+}
+
+// get registers a handler for GET and HEAD: echo answers 405 to HEAD unless
+// it is registered.
+func get(e *echo.Echo, path string, h echo.HandlerFunc, m ...echo.MiddlewareFunc) {
+	e.GET(path, h, m...)
+	e.HEAD(path, h, m...)
+}

@@ -1,0 +1,56 @@
+// Command server is Fathombend: a catalogue of submarine channels, its
+// regressions and its expectations, as a web application and a command line.
+package main
+
+import (
+	"fmt"
+	"io"
+	"os"
+)
+
+// Version of the program; see the change log.
+const Version = "0.1.0"
+
+// Exit codes of every command.
+const (
+	exitOK      = 0
+	exitProblem = 1 // a problem with the data
+	exitBadCall = 2 // a bad call
+)
+
+// command is one sub-command. Its help text is the source of the docs.
+type command struct {
+	name    string
+	summary string
+	run     func(args []string, in io.Reader, out, errOut io.Writer) int
+}
+
+func commands() []command {
+	return []command{
+		{"serve", "run the web application (the default)", runServe},
+	}
+}
+
+func main() {
+	os.Exit(run(os.Args[1:], os.Stdin, os.Stdout, os.Stderr))
+}
+
+func run(args []string, in io.Reader, out, errOut io.Writer) int {
+	name := "serve"
+	if len(args) > 0 && len(args[0]) > 0 && args[0][0] != '-' {
+		name, args = args[0], args[1:]
+	} else if len(args) > 0 && (args[0] == "-version" || args[0] == "--version") {
+		fmt.Fprintln(out, "fathombend", Version)
+		return exitOK
+	}
+	for _, c := range commands() {
+		if c.name == name {
+			return c.run(args, in, out, errOut)
+		}
+	}
+	fmt.Fprintf(errOut, "fathombend: no command %q. Commands:\n", name)
+	for _, c := range commands() {
+		fmt.Fprintf(errOut, "  %-12s %s\n", c.name, c.summary)
+	}
+	return exitBadCall
+}

@@ -1,0 +1,83 @@
+package main
+
+import (
+	"context"
+	"fmt"
+	"math"
+	"runtime"
+	"slices"
+
+	"fathombend/catalogue"
+	"fathombend/stats"
+)
+
+// statsRows turns catalogue rows into what a regression sees.
+func statsRows(rows []catalogue.Row) []stats.Row {
+	out := make([]stats.Row, len(rows))
+	for i, r := range rows {
+		out[i] = stats.Row{
+			ID: r.Measurement, System: r.System, SystemName: r.SystemName,
+			ParentDeposit: r.ParentDeposit, Source: r.Source, Basin: r.Basin,
+			Kind: r.Kind, Invented: r.Invented, SinuosityKind: r.SinuosityKind,
+			MeasuredLine: r.MeasuredLine, Grade: r.Grade, Order: i,
+			Sinuosity: num(r.Sinuosity), SinuositySE: num(r.SinuositySE), Windows: r.WindowSinuosities,
+			LatitudeDeg: num(r.LatitudeDeg), LongitudeDeg: num(r.LongitudeDeg), AgeMa: num(r.AgeMa),
+			PalaeolatitudeDeg: num(r.PalaeolatitudeDeg), PalaeolatitudeSEDeg: num(r.PalaeolatitudeSEDeg),
+			ValleySlope: num(r.ValleySlope), ValleySlopeSE: num(r.ValleySlopeSE), SlopeState: r.SlopeState,
+			ChannelWidthM: num(r.ChannelWidthM), ChannelDepthM: num(r.ChannelDepthM),
+			WavelengthM: num(r.WavelengthM), AmplitudeM: num(r.AmplitudeM), RadiusM: num(r.RadiusM),
+			NetToGross: num(r.NetToGross),
+			Categories: map[string]string{
+				"feeder": r.Feeder, "grain": r.Grain, "margin": r.Margin, "setting": r.Setting,
+				"activity": r.Activity, "burial": r.Burial, "confinement": r.Confinement,
+				"aggradation": r.Aggradation, "large_river": r.LargeRiver, "stacking": r.Stacking,
+				"lateral_accretion": r.LateralAccretion, "survey": r.Survey, "extraction": r.Extraction,
+			},
+		}
+	}
+	return out
+}
+
+func num(n catalogue.Number) float64 {
+	if !n.Valid {
+		return math.NaN()
+	}
+	return n.V
+}
+
+// fitFilter is the filter a fit uses: submarine systems unless told otherwise,
+// and never a page of them.
+func fitFilter(f catalogue.Filter, group string) catalogue.Filter {
+	f.Page, f.PerPage, f.Sort = 0, 0, ""
+	if len(f.Choices["kind"]) == 0 && group != "kind" {
+		c := map[string][]string{"kind": {"submarine"}}
+		for k, v := range f.Choices {
+			c[k] = v
+		}
+		f.Choices = c
+	}
+	return f
+}
+
+// analyse answers a regression question from the cache of this catalogue
+// revision, or computes it.
+func (a *App) analyse(ctx context.Context, f catalogue.Filter, req stats.Request) (*stats.Analysis, error) {
+	f = fitFilter(f, req.Group)
+	rev, err := a.store.Revision(ctx)
+	if err != nil {
+		return nil, err
+	}
+	req.Workers = runtime.GOMAXPROCS(0)
+	key := fmt.Sprintf("regression|%d|%s|%+v", rev, f.Values().Encode(), req)
+	v, err := a.fits.do(ctx, key, func(ctx context.Context) (any, error) {
+		rows, err := a.store.Rows(ctx, f)
+		if err != nil {
+			return nil, err
+		}
+		return stats.Analyse(ctx, slices.Clip(statsRows(rows)), req, nil)
+	})
+	if err != nil {
+		return nil, err
+	}
+	return v.(*stats.Analysis), nil
+}

@@ -1,0 +1,234 @@
+// Package stats holds the regressions, the resampling, the comparison of
+// explanations and the influence tables. It is pure: slices in, results out;
+// it imports gonum and the standard library only (and its own sub-packages).
+package stats
+
+import "fathombend/stats/earth"
+
+// Row is one measurement as a regression sees it. Missing numbers are NaN;
+// missing categories are "" or "unknown".
+type Row struct {
+	ID         string // measurement id
+	System     string // slug
+	SystemName string
+	// Parents: any of them may be the cluster.
+	ParentDeposit string // "" = the system stands alone
+	Source        string
+	Basin         string
+
+	Kind          string // submarine, river, lacustrine
+	Invented      bool
+	SinuosityKind string // peak, p90, mean, bend, reach, unknown
+	MeasuredLine  string // thalweg, centreline, levee_crest, unknown
+	Grade         string // remeasured, surveyed, traced, quoted
+	Order         int    // larger is newer: ties of grade are broken by it
+
+	Sinuosity   float64
+	SinuositySE float64
+	Windows     []float64 // window sinuosities of the stored centreline, if any
+
+	LatitudeDeg         float64
+	LongitudeDeg        float64
+	AgeMa               float64 // NaN = today
+	PalaeolatitudeDeg   float64
+	PalaeolatitudeSEDeg float64
+	ValleySlope         float64 // m/m
+	ValleySlopeSE       float64
+	SlopeState          string // present, restored
+	ChannelWidthM       float64
+	ChannelDepthM       float64
+	WavelengthM         float64
+	AmplitudeM          float64
+	RadiusM             float64
+	NetToGross          float64
+
+	// Categories by column name: feeder, grain, margin, setting, activity,
+	// burial, confinement, aggradation, large_river, stacking,
+	// lateral_accretion, survey, extraction, climate_state.
+	Categories map[string]string
+}
+
+// InputError is a refusal with its reason; the one type of all pure rooms.
+type InputError = earth.InputError
+
+// Request is one regression question. The zero value is not valid: start from
+// DefaultRequest.
+type Request struct {
+	Models      []ModelSpec // FORM:PREDICTOR
+	Joint       []string    // predictors and categories of a joint model
+	Interaction [2]string   // a pair of Joint's members, or empty
+	Group       string      // "" or "kind"
+
+	Response         string // peak p90 mean bend reach standardised_peak any
+	MeasuredLine     string // all, or one line
+	Scale            string // raw ln ln_excess
+	K                int    // windows of a standardised peak
+	Cluster          string // parent_deposit system source basin none
+	Interval         string // studentised cr2 bca percentile
+	Level            float64
+	Resamples        int
+	Permutations     int
+	Seed             uint64
+	Time             string // of_deposition, present
+	Pick             string // best, all
+	MeasurementError bool
+	ThinStraight     float64 // fraction 0..1
+	ThinSinuous      float64
+
+	Workers int // cores to use; no effect on any number
+}
+
+// ModelSpec is one FORM:PREDICTOR pair.
+type ModelSpec struct{ Form, Predictor string }
+
+func (m ModelSpec) String() string { return m.Form + ":" + m.Predictor }
+
+// Forms and Predictors that Analyse accepts, in the order they are listed to
+// users.
+var (
+	Forms      = []string{"linear", "logarithmic", "exponential", "power", "inverse", "floor_decay", "broken_line", "quantile_10", "quantile_50", "quantile_90", "theil_sen"}
+	Predictors = []string{"valley_slope", "abs_latitude", "sin_abs_latitude", "coriolis", "channel_width"}
+)
+
+// DefaultRequest is the question asked when nothing is said: three straight
+// lines over whole parent deposits, with the defaults of the contract.
+func DefaultRequest() Request {
+	return Request{
+		Models:   []ModelSpec{{"linear", "valley_slope"}, {"linear", "abs_latitude"}, {"linear", "coriolis"}},
+		Response: "any", MeasuredLine: "all", Scale: "raw", K: 5,
+		Cluster: "parent_deposit", Interval: "studentised", Level: 0.95,
+		Resamples: 9999, Permutations: 1999, Seed: 1,
+		Time: "of_deposition", Pick: "all", Workers: 1,
+	}
+}
+
+// Interval is [low, high]; JSON writes null for an end that is not finite.
+type Interval [2]float64
+
+// Analysis is the answer to a Request: everything the regression page shows
+// and, field for field, the JSON of the contract.
+type Analysis struct {
+	Rows         int            `json:"rows"`
+	Clusters     int            `json:"clusters"`
+	Systems      int            `json:"systems"`
+	Dropped      []Dropped      `json:"dropped"`
+	InventedRows int            `json:"invented_rows"`
+	Settings     map[string]any `json:"settings"`
+	Models       []Model        `json:"models"`
+	Comparisons  []Comparison   `json:"comparisons"`
+	Shares       []Share        `json:"shares"`
+	Influence    []Influence    `json:"influence"`
+	Overturning  *Overturning   `json:"overturning"`
+	Breakpoint   *Breakpoint    `json:"breakpoint"`
+	Headline     string         `json:"headline"`
+	Warnings     []string       `json:"warnings"`
+	MethodsText  string         `json:"methods_text"`
+	Used         []UsedRow      `json:"-"` // every row considered, for /regression.csv and the figures
+	Separability []string       `json:"separability"`
+}
+
+// Dropped counts the rows left out for one reason.
+type Dropped struct {
+	Reason string `json:"reason"`
+	Rows   int    `json:"rows"`
+}
+
+// UsedRow is one row considered, with its derived predictors. Missing numbers
+// are NaN.
+type UsedRow struct {
+	Row
+	Kept        bool
+	WhyDropped  string
+	ClusterID   string
+	Response    float64            // the response in sinuosity units
+	PredictorOf map[string]float64 // by predictor name, as fitted (coriolis in 1e-4 s-1)
+	ResidualOf  map[string]float64 // by model name, sinuosity units
+	PredictedOf map[string]float64 // by model name, sinuosity units
+}
+
+// Model is one fitted model.
+type Model struct {
+	Model               string        `json:"model"`
+	Form                string        `json:"form"`
+	Predictor           string        `json:"predictor"`
+	Coefficients        []Coefficient `json:"coefficients"`
+	RSquared            float64       `json:"r_squared"`
+	RSquaredInterval    Interval      `json:"r_squared_interval"`
+	RSquaredFitted      float64       `json:"r_squared_fitted_scale"`
+	OutOfSampleR2       float64       `json:"out_of_sample_r_squared"`
+	AICc                float64       `json:"aicc"`
+	AkaikeWeight        float64       `json:"akaike_weight"`
+	PermutationP        float64       `json:"permutation_p"`
+	Kendall             float64       `json:"kendall"`
+	Spearman            float64       `json:"spearman"`
+	DegenerateResamples int           `json:"degenerate_resamples"`
+	Failure             string        `json:"failure,omitempty"` // why this model could not be fitted, in a sentence
+	Curve               []CurvePoint  `json:"curve"`             // fitted line with its interval band, in sinuosity units
+}
+
+// CurvePoint is the fitted line at X with the pointwise interval of the line.
+type CurvePoint struct {
+	X    float64 `json:"x"`
+	Y    float64 `json:"y"`
+	Low  float64 `json:"low"`
+	High float64 `json:"high"`
+}
+
+// Coefficient is one estimate with its interval and the CR2 interval beside it.
+type Coefficient struct {
+	Name          string              `json:"name"`
+	Estimate      float64             `json:"estimate"`
+	StandardError float64             `json:"standard_error"`
+	Interval      Interval            `json:"interval"`
+	IntervalKind  string              `json:"interval_kind"`
+	CR2           *CR2                `json:"cr2"`
+	Intervals     map[string]Interval `json:"intervals"` // every kind that is defined: studentised, cr2, bca, percentile, row_bootstrap
+}
+
+// CR2 is the bias-reduced cluster error with Satterthwaite degrees of freedom.
+type CR2 struct {
+	SE       float64  `json:"se"`
+	DF       float64  `json:"df"`
+	Interval Interval `json:"interval"`
+}
+
+// Comparison is the paired difference of R2 between two models.
+type Comparison struct {
+	A          string   `json:"a"`
+	B          string   `json:"b"`
+	Difference float64  `json:"r_squared_difference"`
+	Interval   Interval `json:"interval"`
+}
+
+// Share is one predictor's share of R2 (Lindeman-Merenda-Gold).
+type Share struct {
+	Predictor string   `json:"predictor"`
+	Share     float64  `json:"share"`
+	Interval  Interval `json:"interval"`
+}
+
+// Influence says what happens without one system, for the leading model.
+type Influence struct {
+	System             string  `json:"system"`
+	SystemName         string  `json:"system_name"`
+	Model              string  `json:"model"`
+	RSquaredWithout    float64 `json:"r_squared_without"`
+	CoefficientWithout float64 `json:"coefficient_without"`
+	Cook               float64 `json:"cook"`
+	Leverage           float64 `json:"leverage"`
+}
+
+// Overturning is how many contrary systems would undo a term.
+type Overturning struct {
+	Term    string `json:"term"`
+	Systems int    `json:"systems"`
+	Text    string `json:"text"`
+}
+
+// Breakpoint is the broken line's breakpoint with its interval.
+type Breakpoint struct {
+	At       float64      `json:"at"`
+	Interval Interval     `json:"interval"`
+	P        float64      `json:"p"`
+	Profile  []CurvePoint `json:"profile"`
+}
