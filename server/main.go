@@ -28,6 +28,12 @@ type command struct {
 func commands() []command {
 	return []command{
 		{"serve", "run the web application (the default)", runServe},
+		{"import", "read a CSV of measurements into a catalogue", runImport},
+		{"export", "write measurements as CSV", runExport},
+		{"account", "add people, set their passwords and roles", runAccount},
+		{"backup", "copy a catalogue while it is in use", runBackup},
+		{"restore", "make a catalogue from a backup", runRestore},
+		{"check", "look for faults and odd values", runCheck},
 	}
 }
 
