@@ -1,6 +1,7 @@
 package main
 
 import (
+	"io"
 	"log/slog"
 	"net/http"
 
@@ -18,11 +19,17 @@ type App struct {
 	log      *slog.Logger
 	readOnly bool
 	fits     *cache
+
+	// onListen run once, after the program listens: base is the address a
+	// person can open, say the console. For words that need the address.
+	onListen []func(base string, say io.Writer)
 }
 
 // newApp wires an App over an open store.
 func newApp(store *catalogue.Store, log *slog.Logger, readOnly bool) *App {
-	return &App{store: store, log: log, readOnly: readOnly, fits: newCache(256)}
+	a := &App{store: store, log: log, readOnly: readOnly, fits: newCache(256)}
+	a.sessions = newSessions(store, log, readOnly)
+	return a
 }
 
 // handler builds the router. One line a room: each routes method stands in the
@@ -42,7 +49,16 @@ func (a *App) handler() http.Handler {
 	a.routesContribute(e)
 	a.routesReview(e)
 	a.routesMethods(e)
-	return e
+	// Sessions stand around the router, so that the error handler still has
+	// them; static files need none, and stay cacheable.
+	with := a.sessions.LoadAndSave(e)
+	return http.HandlerFunc(func(w http.ResponseWriter, r *http.Request) {
+		if sessionless(r.URL.Path) {
+			e.ServeHTTP(w, r)
+			return
+		}
+		with.ServeHTTP(w, r)
+	})
 }
 
 // get registers a handler for GET and HEAD: echo answers 405 to HEAD unless

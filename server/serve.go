@@ -1,7 +1,170 @@
 package main
 
 import (
+	"context"
+	"errors"
+	"flag"
+	"fmt"
 	"io"
+	"log/slog"
+	"net"
+	"net/http"
+	"os"
+	"os/signal"
+	"slices"
+	"strings"
+	"syscall"
+	"time"
+
+	"fathombend/catalogue"
+	"fathombend/seed"
 )
 
-func runServe(args []string, in io.Reader, out, errOut io.Writer) int { return exitOK }
+// serveConfig is what `serve` was asked for.
+type serveConfig struct {
+	Catalogue string    // file; "" = the demo in a temporary copy
+	Listen    string    // host:port; port 0 takes a free one
+	ReadOnly  bool      // no sign-in, no contribution, no writing
+	DemoLaw   seed.Law  // law the demo is drawn from
+	Say       io.Writer // what a person at the console reads
+	Log       *slog.Logger
+}
+
+const serveHelp = `Usage: fathombend serve [-catalogue FILE] [-listen ADDR] [-read-only] [-demo-law LAW]
+
+Runs the web application until it is interrupted. Without -catalogue it shows
+the demo, an invented survey, from a temporary copy: nothing entered there is
+kept. A new FILE starts empty.
+
+`
+
+func runServe(args []string, in io.Reader, out, errOut io.Writer) int {
+	cfg := serveConfig{Say: out, Log: slog.New(slog.NewTextHandler(errOut, nil))}
+	law := string(seed.Both)
+	fs := flag.NewFlagSet("serve", flag.ContinueOnError)
+	fs.SetOutput(errOut)
+	fs.StringVar(&cfg.Catalogue, "catalogue", "", "catalogue `FILE`; without it, the invented demo")
+	fs.StringVar(&cfg.Listen, "listen", "localhost:8080", "`ADDR` to listen on; port 0 takes a free one")
+	fs.BoolVar(&cfg.ReadOnly, "read-only", false, "show the catalogue, change nothing")
+	fs.StringVar(&law, "demo-law", law, "law the demo is drawn from: coriolis, supply, both or none")
+	fs.Usage = func() { fmt.Fprint(errOut, serveHelp); fs.PrintDefaults() }
+	if err := fs.Parse(args); errors.Is(err, flag.ErrHelp) {
+		return exitOK
+	} else if err != nil {
+		return exitBadCall
+	}
+	if fs.NArg() > 0 {
+		fmt.Fprintf(errOut, "serve: unexpected %q; it takes flags only\n", fs.Arg(0))
+		return exitBadCall
+	}
+	laws := []seed.Law{seed.Coriolis, seed.Supply, seed.Both, seed.None}
+	if cfg.DemoLaw = seed.Law(law); !slices.Contains(laws, cfg.DemoLaw) {
+		fmt.Fprintf(errOut, "serve: -demo-law %q is not a law; expected coriolis, supply, both or none\n", law)
+		return exitBadCall
+	}
+	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
+	defer stop()
+	_, shut, err := startServer(ctx, cfg)
+	if err != nil {
+		fmt.Fprintln(errOut, "serve:", userSentence(err))
+		return exitProblem
+	}
+	<-ctx.Done()
+	fmt.Fprintln(out, "Stopping.")
+	shut()
+	return exitOK
+}
+
+// userSentence keeps the operator's cause: a console reader is the operator.
+func userSentence(err error) string {
+	if errors.Is(err, syscall.EADDRINUSE) {
+		return err.Error() + "; give another address with -listen"
+	}
+	return err.Error()
+}
+
+// startServer opens the catalogue of cfg, listens and serves until stop is
+// called; addr is the address taken, host:port. Stop waits up to ten seconds
+// for running requests and closes the catalogue.
+func startServer(ctx context.Context, cfg serveConfig) (addr string, stop func(), err error) {
+	if cfg.Say == nil {
+		cfg.Say = io.Discard
+	}
+	if cfg.Log == nil {
+		cfg.Log = slog.New(slog.DiscardHandler)
+	}
+	listener, err := net.Listen("tcp", cfg.Listen)
+	if err != nil {
+		return "", nil, err
+	}
+	store, closeStore, err := openServed(ctx, cfg)
+	if err != nil {
+		listener.Close()
+		return "", nil, err
+	}
+	a := newApp(store, cfg.Log, cfg.ReadOnly)
+	handler := a.handler()
+	srv := &http.Server{
+		Handler:           handler,
+		ReadHeaderTimeout: 10 * time.Second,
+		ReadTimeout:       60 * time.Second,
+		WriteTimeout:      120 * time.Second,
+		IdleTimeout:       120 * time.Second,
+		MaxHeaderBytes:    64 << 10,
+		ErrorLog:          slog.NewLogLogger(cfg.Log.Handler(), slog.LevelWarn),
+	}
+	served := make(chan struct{})
+	go func() {
+		defer close(served)
+		if err := srv.Serve(listener); !errors.Is(err, http.ErrServerClosed) {
+			cfg.Log.Error("serving ended", "err", err)
+		}
+	}()
+	addr = listener.Addr().String()
+	cfg.Log.Info("listening", "address", addr, "url", "http://"+shownHost(cfg.Listen, addr))
+	fmt.Fprintf(cfg.Say, "Fathombend %s on http://%s\n", Version, shownHost(cfg.Listen, addr))
+	for _, f := range a.onListen {
+		f("http://"+shownHost(cfg.Listen, addr), cfg.Say)
+	}
+	return addr, func() {
+		ctx, cancel := context.WithTimeout(context.Background(), 10*time.Second)
+		defer cancel()
+		if err := srv.Shutdown(ctx); err != nil {
+			srv.Close()
+		}
+		<-served
+		closeStore()
+	}, nil
+}
+
+// shownHost is the address a person can open: the host asked for with the port
+// taken.
+func shownHost(asked, taken string) string {
+	host, _, err := net.SplitHostPort(asked)
+	if err != nil || host == "" || host == "0.0.0.0" || host == "::" {
+		host = "localhost"
+	}
+	_, port, _ := net.SplitHostPort(taken)
+	return net.JoinHostPort(host, port)
+}
+
+// openServed opens the file asked for, or the demo.
+func openServed(ctx context.Context, cfg serveConfig) (*catalogue.Store, func(), error) {
+	if strings.TrimSpace(cfg.Catalogue) != "" {
+		s, err := catalogue.Open(ctx, cfg.Catalogue, catalogue.Options{ReadOnly: cfg.ReadOnly})
+		if err != nil {
+			return nil, nil, err
+		}
+		return s, func() { s.Close() }, nil
+	}
+	law := cfg.DemoLaw
+	if law == "" {
+		law = seed.Both
+	}
+	s, cleanup, err := openDemo(ctx, law)
+	if err != nil {
+		return nil, nil, err
+	}
+	fmt.Fprintf(cfg.Say, "No -catalogue given: this is the demo (law: %s). Every system in it is invented, and nothing entered is kept when the program stops.\n", law)
+	return s, cleanup, nil
+}

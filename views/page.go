@@ -2,7 +2,10 @@
 // values and computes nothing but geometry on the page; it holds no SQL.
 package views
 
-import "net/url"
+import (
+	"net/url"
+	"strconv"
+)
 
 // Page is what every page's frame needs.
 type Page struct {
@@ -19,6 +22,9 @@ type Page struct {
 	CSV          string
 	GeoJSON      string
 	Notice       string // one sentence shown once
+	Version      string
+	Assets       map[string]string // file name under static/ -> address with its content hash
+	Wide         bool              // the main column takes the full width
 }
 
 // User is who is signed in.
@@ -28,3 +34,46 @@ type User struct {
 
 // Curates says whether the user may review.
 func (u *User) Curates() bool { return u != nil && (u.Role == "curator" || u.Role == "keeper") }
+
+// Asset is the address of a file under static/.
+func (p Page) Asset(name string) string {
+	if a, ok := p.Assets[name]; ok {
+		return a
+	}
+	return "/static/" + name
+}
+
+type navItem struct{ key, href, text string }
+
+// navigation lists the ways in that this person has.
+func navigation(p Page) []navItem {
+	items := []navItem{
+		{"meridian", "/", "Meridian"},
+		{"systems", "/systems", "Systems"},
+		{"regression", "/regression", "Regression"},
+		{"expectation", "/expectation", "Expectation"},
+		{"measure", "/measure", "Measure"},
+	}
+	if !p.ReadOnly {
+		items = append(items, navItem{"contribute", "/contribute", "Contribute"})
+	}
+	if p.User.Curates() {
+		text := "Review"
+		if p.Pending > 0 {
+			text += " (" + strconv.Itoa(p.Pending) + ")"
+		}
+		items = append(items, navItem{"review", "/review", text})
+	}
+	return append(items, navItem{"methods", "/methods", "Methods"})
+}
+
+// twins lists the data twins of the page.
+func twins(p Page) []navItem {
+	var out []navItem
+	for _, t := range []navItem{{"csv", p.CSV, "CSV"}, {"json", p.JSON, "JSON"}, {"geojson", p.GeoJSON, "GeoJSON"}} {
+		if t.href != "" {
+			out = append(out, t)
+		}
+	}
+	return out
+}

@@ -1,0 +1,2 @@
+// Fathombend's only script. Every page works without it.
+"use strict";
