@@ -1,30 +1,229 @@
+// Package catalogue keeps the records: systems, measurements, sources,
+// centrelines, revisions, review and accounts, in one SQLite file. All SQL of
+// the project is here. It imports neither server, views nor echo.
 package catalogue
 
 import (
 	"context"
+	"database/sql"
 	"errors"
+	"fmt"
 	"net/url"
+	"os"
+	"path/filepath"
+	"runtime"
+	"strings"
+	"time"
+
+	"modernc.org/sqlite"
+	sqlite3 "modernc.org/sqlite/lib"
 )
 
-// Store is an open catalogue.
-type Store struct{ Catalogue }
+// Store is an open catalogue. Its methods may be called from many goroutines.
+type Store struct {
+	Catalogue
+	path   string
+	w      *sql.DB // one connection, immediate transactions; nil when read only
+	r      *sql.DB // a pool of read-only connections
+	onLand func(lat, lon float64) bool
+	hashes chan struct{} // bounds the memory of password hashing
+	now    func() time.Time
+}
 
 // Options of Open.
 type Options struct {
 	ReadOnly bool
+	// OnLand says whether a point lies on land, for the check of that name; nil
+	// leaves the check out.
+	OnLand func(lat, lon float64) bool
+	// Throwaway gives up durability for speed: for a temporary copy that is
+	// deleted at the end, such as the demo.
+	Throwaway bool
 }
 
 // Open opens the catalogue in the SQLite file at path, creating and migrating
-// it as needed.
+// it as needed. A file made by a newer version, or by another program, is
+// refused.
 func Open(ctx context.Context, path string, o Options) (*Store, error) {
-	return nil, errors.New("not built yet")
+	s := &Store{path: path, onLand: o.OnLand, hashes: make(chan struct{}, hashesAtOnce), now: time.Now}
+	if err := s.open(ctx, o); err != nil {
+		_ = s.Close()
+		return nil, openError(path, err)
+	}
+	return s, nil
 }
 
-// ParseFilter reads the filter parameters of the contract out of a query.
-func ParseFilter(q url.Values) (Filter, error) { return Filter{}, nil }
+func (s *Store) open(ctx context.Context, o Options) (err error) {
+	if o.ReadOnly {
+		if _, err := os.Stat(s.path); err != nil {
+			return err
+		}
+	} else {
+		if s.w, err = sql.Open("sqlite", writerDSN(s.path, o)); err != nil {
+			return err
+		}
+		s.w.SetMaxOpenConns(1)
+		if err := migrate(ctx, s.w); err != nil {
+			return err
+		}
+	}
+	if s.r, err = sql.Open("sqlite", readerDSN(s.path, o)); err != nil {
+		return err
+	}
+	s.r.SetMaxOpenConns(max(4, 2*runtime.GOMAXPROCS(0)))
+	s.r.SetMaxIdleConns(max(4, 2*runtime.GOMAXPROCS(0)))
+	return checkVersion(ctx, s.r)
+}
 
-// Values is the way back: only what is set.
-func (f Filter) Values() url.Values { return url.Values{} }
+// fileURI escapes what SQLite would read as a part of a URI.
+func fileURI(path string) string {
+	if abs, err := filepath.Abs(path); err == nil {
+		path = abs
+	}
+	return "file:" + strings.ReplaceAll(url.PathEscape(filepath.ToSlash(path)), "%2F", "/")
+}
 
-// FilterParameters are the names ParseFilter reads.
-var FilterParameters = []string{"q", "kind", "setting", "margin", "feeder", "grain", "confinement", "activity", "burial", "survey", "extraction", "grade", "basin", "parent_deposit", "source", "lat_min", "lat_max", "abs_lat_min", "abs_lat_max", "slope_min", "slope_max", "sinuosity_min", "sinuosity_max", "width_min", "width_max", "age_min", "age_max", "bbox", "release", "sort", "page", "per_page"}
+func writerDSN(path string, o Options) string {
+	q := "?_txlock=immediate&_pragma=busy_timeout(10000)&_pragma=journal_mode(WAL)&_pragma=foreign_keys(1)&_pragma=temp_store(2)"
+	if o.Throwaway {
+		return fileURI(path) + q + "&_pragma=synchronous(OFF)"
+	}
+	return fileURI(path) + q + "&_pragma=synchronous(FULL)"
+}
+
+func readerDSN(path string, o Options) string {
+	q := "?mode=ro&_pragma=busy_timeout(10000)&_pragma=query_only(1)&_pragma=temp_store(2)&_pragma=cache_size(-8000)"
+	if o.ReadOnly && readOnlyFolder(path) {
+		// Without its -shm file a WAL database in a folder that cannot be
+		// written opens only as immutable, which it is as nobody can write it.
+		q += "&immutable=1"
+	}
+	return fileURI(path) + q
+}
+
+func readOnlyFolder(path string) bool {
+	f, err := os.CreateTemp(filepath.Dir(path), ".writable-*")
+	if err != nil {
+		return true
+	}
+	f.Close()
+	return os.Remove(f.Name()) != nil
+}
+
+func openError(path string, err error) error {
+	var own *Error
+	if errors.As(err, &own) {
+		return err
+	}
+	msg := "the catalogue " + path + " cannot be opened"
+	switch {
+	case errors.Is(err, os.ErrNotExist):
+		msg += ": there is no such file"
+	case sqliteCode(err) == sqlite3.SQLITE_NOTADB:
+		msg += ": it is not a SQLite file"
+	case sqliteCode(err) == sqlite3.SQLITE_CANTOPEN:
+		msg += ": the folder is missing or may not be written"
+	case sqliteCode(err) == sqlite3.SQLITE_READONLY:
+		msg += ": it may not be written; open it read only"
+	case sqliteCode(err) == sqlite3.SQLITE_BUSY:
+		msg += ": another program holds it locked"
+	case sqliteCode(err) == sqlite3.SQLITE_CORRUPT:
+		msg += ": it is damaged; restore a backup"
+	default:
+		return &Error{Code: Internal, Message: msg, Cause: err}
+	}
+	return &Error{Code: Invalid, Message: msg, Cause: err}
+}
+
+// sqliteCode returns the primary result code of SQLite, 0 if err has none.
+func sqliteCode(err error) int {
+	var e *sqlite.Error
+	if errors.As(err, &e) {
+		return e.Code() & 0xff
+	}
+	return 0
+}
+
+// Close ends all connections.
+func (s *Store) Close() error {
+	var errs []error
+	if s.r != nil {
+		errs = append(errs, s.r.Close())
+	}
+	if s.w != nil {
+		errs = append(errs, s.w.Close())
+	}
+	return errors.Join(errs...)
+}
+
+// Path is the file of the catalogue.
+func (s *Store) Path() string { return s.path }
+
+// ReadOnly says whether every change is refused.
+func (s *Store) ReadOnly() bool { return s.w == nil }
+
+// write runs fn in one immediate transaction. fn must use tx only: asking the
+// pool while its single connection is in use would wait for ever.
+func (s *Store) write(ctx context.Context, fn func(tx *sql.Tx) error) error {
+	if s.w == nil {
+		return &Error{Code: Forbidden, Message: "this catalogue is open read only; changes are made on the server it is a copy of"}
+	}
+	tx, err := s.w.BeginTx(ctx, nil)
+	if err != nil {
+		return fault("begin", err)
+	}
+	defer tx.Rollback()
+	if err := fn(tx); err != nil {
+		return fault("write", err)
+	}
+	return fault("commit", tx.Commit())
+}
+
+// querier is a transaction or a pool.
+type querier interface {
+	QueryContext(ctx context.Context, query string, args ...any) (*sql.Rows, error)
+	QueryRowContext(ctx context.Context, query string, args ...any) *sql.Row
+	ExecContext(ctx context.Context, query string, args ...any) (sql.Result, error)
+}
+
+// fault makes an *Error of any error: one that already is stays as it is, and
+// a cancelled request keeps its cause visible to errors.Is.
+func fault(doing string, err error) error {
+	if err == nil {
+		return nil
+	}
+	var own *Error
+	if errors.As(err, &own) {
+		return err
+	}
+	msg := "the catalogue could not do that"
+	switch sqliteCode(err) {
+	case sqlite3.SQLITE_FULL:
+		msg = "the disk is full; nothing was stored"
+	case sqlite3.SQLITE_READONLY, sqlite3.SQLITE_IOERR:
+		msg = "the disk cannot be written; nothing was stored"
+	case sqlite3.SQLITE_BUSY:
+		msg = "another program holds the catalogue locked; nothing was stored, try again"
+	}
+	return &Error{Code: Internal, Message: msg, Cause: fmt.Errorf("%s: %w", doing, err)}
+}
+
+func (s *Store) stamp() string { return s.now().UTC().Format(time.RFC3339) }
+
+func parseTime(text string) time.Time {
+	t, _ := time.Parse(time.RFC3339, text)
+	return t
+}
+
+// Revision grows with every accepted change: the key of every cache.
+func (s *Store) Revision(ctx context.Context) (int64, error) {
+	var rev int64
+	err := s.r.QueryRowContext(ctx, `SELECT coalesce(max(id), 0) FROM revisions`).Scan(&rev)
+	return rev, fault("revision", err)
+}
+
+// Invented counts the accepted rows that no survey measured.
+func (s *Store) Invented(ctx context.Context) (rows int, err error) {
+	err = s.r.QueryRowContext(ctx, `SELECT count(*) FROM measurements WHERE substr(notes, 1, ?) = ?`, len(InventedMark), InventedMark).Scan(&rows)
+	return rows, fault("invented", err)
+}

@@ -1,0 +1,4 @@
+package catalogue
+
+// hashesAtOnce bounds how many passwords are hashed at the same time.
+const hashesAtOnce = 2

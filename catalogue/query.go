@@ -1,0 +1,139 @@
+package catalogue
+
+import (
+	"fmt"
+	"strings"
+	"unicode"
+)
+
+// fromRows joins what a row is made of; the aliases are those of Column.expr.
+const fromRows = ` FROM measurements m JOIN systems s ON s.id = m.system_id JOIN sources c ON c.id = m.source_id`
+
+// where is a condition under construction.
+type where struct {
+	parts []string
+	args  []any
+}
+
+func (w *where) add(cond string, args ...any) {
+	w.parts = append(w.parts, cond)
+	w.args = append(w.args, args...)
+}
+
+func (w *where) String() string {
+	if len(w.parts) == 0 {
+		return ""
+	}
+	return " WHERE " + strings.Join(w.parts, " AND ")
+}
+
+// condition turns the filter into SQL, leaving out the choices of the column
+// named without.
+func (f *Filter) condition(without string) (*where, error) {
+	if f.Release != "" {
+		return nil, &Error{Code: Invalid, Field: "release", Message: fmt.Sprintf("there is no release named %q", f.Release), Expected: "leave it out: no release has been made yet"}
+	}
+	w := &where{}
+	for _, name := range ChoiceParameters {
+		values := f.Choices[name]
+		if len(values) == 0 || name == without {
+			continue
+		}
+		c, _ := ColumnByName(name)
+		args := make([]any, len(values))
+		for i, v := range values {
+			args[i] = v
+		}
+		w.add(c.expr+" IN (?"+strings.Repeat(", ?", len(values)-1)+")", args...)
+	}
+	for _, r := range rangeParameters {
+		if n := r.min(f); n.Valid {
+			w.add(r.expr+" >= ?", n.V)
+		}
+		if n := r.max(f); n.Valid {
+			w.add(r.expr+" <= ?", n.V)
+		}
+	}
+	if f.Text != "" {
+		w.addText(f.Text)
+	}
+	if f.BBox != nil {
+		w.addBox(*f.BBox)
+	}
+	return w, nil
+}
+
+// addText asks for all words of the text, the last letters of each open. Every
+// word is quoted: nothing of it is MATCH syntax.
+func (w *where) addText(text string) {
+	words := strings.FieldsFunc(text, func(r rune) bool { return !unicode.IsLetter(r) && !unicode.IsNumber(r) && !unicode.IsMark(r) })
+	if len(words) == 0 {
+		w.add("0")
+		return
+	}
+	for i, x := range words {
+		words[i] = `"` + x + `"*`
+	}
+	w.add("m.id IN (SELECT rowid FROM search WHERE search MATCH ?)", strings.Join(words, " "))
+}
+
+// addBox preselects with the R*Tree, whose 32-bit boxes are rounded outwards,
+// and decides with the doubles.
+func (w *where) addBox(b BBox) {
+	const lon = "(m.longitude_deg - 360 * (m.longitude_deg > 180))"
+	w.add("m.latitude_deg BETWEEN ? AND ?", b.South, b.North)
+	if b.West > b.East {
+		w.add("m.id IN (SELECT id FROM places WHERE north >= ? AND south <= ? AND east >= ? UNION ALL SELECT id FROM places WHERE north >= ? AND south <= ? AND west <= ?)",
+			b.South, b.North, b.West, b.South, b.North, b.East)
+		w.add("("+lon+" >= ? OR "+lon+" <= ?)", b.West, b.East)
+		return
+	}
+	// -180 and 180 are one meridian: a box that touches one holds the other.
+	box := "m.id IN (SELECT id FROM places WHERE north >= ? AND south <= ? AND east >= ? AND west <= ?"
+	exact := "(" + lon + " BETWEEN ? AND ?"
+	if b.West == -180 || b.East == 180 {
+		w.add(box+" UNION SELECT id FROM places WHERE north >= ? AND south <= ? AND (east >= 180 OR west <= -180))",
+			b.South, b.North, b.West, b.East, b.South, b.North)
+		exact += " OR abs(" + lon + ") = 180"
+	} else {
+		w.add(box+")", b.South, b.North, b.West, b.East)
+	}
+	w.add(exact+")", b.West, b.East)
+}
+
+// orderBy sorts by the column of the filter, what is not given last, ties by
+// the order in which the measurements were accepted.
+func (f *Filter) orderBy(def string) (string, error) {
+	sort := f.Sort
+	if sort == "" {
+		sort = def
+	}
+	if sort == "" {
+		return " ORDER BY m.id", nil
+	}
+	name, dir := sort, ""
+	if strings.HasPrefix(sort, "-") {
+		name, dir = sort[1:], " DESC"
+	}
+	c, ok := ColumnByName(name)
+	if !ok {
+		return "", badParameter("sort", fmt.Sprintf("%q is not a column", Clip(name)), "one of: "+strings.Join(ColumnNames(), ", "))
+	}
+	switch {
+	case c.Name == "grade":
+		return " ORDER BY m.grade_rank" + dir + ", m.id", nil
+	case c.Numeric():
+		return " ORDER BY " + c.expr + " IS NULL, " + c.expr + dir + ", m.id", nil
+	}
+	return " ORDER BY " + c.expr + " = '', " + c.expr + " COLLATE NOCASE" + dir + ", m.id", nil
+}
+
+// paging returns the page of the filter as LIMIT and OFFSET.
+func (f *Filter) paging() (limit, offset int) {
+	limit = f.PerPage
+	if limit <= 0 {
+		limit = DefaultPerPage
+	}
+	limit = min(limit, MaxPerPage)
+	return limit, (max(f.Page, 1) - 1) * limit
+}

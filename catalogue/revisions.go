@@ -1,0 +1,40 @@
+package catalogue
+
+import (
+	"context"
+	"strconv"
+)
+
+// who names the person of a change; changes from the command line have none.
+const whoExpr = `coalesce(a.credit, 'command line')`
+
+func lineRecord(id int64) string { return "centreline:" + strconv.FormatInt(id, 10) }
+
+// revisionsOf returns the revisions of one record, newest first.
+func revisionsOf(ctx context.Context, q querier, record string) ([]Revision, error) {
+	rows, err := q.QueryContext(ctx, `SELECT v.id, t.at, `+whoExpr+`, t.why, v.record, v.field, v.before, v.after, v.action
+		FROM revisions v JOIN change_sets t ON t.id = v.change_set_id LEFT JOIN accounts a ON a.id = coalesce(t.author_id, t.account_id)
+		WHERE v.record = ? ORDER BY v.id DESC`, record)
+	if err != nil {
+		return nil, err
+	}
+	defer rows.Close()
+	var out []Revision
+	for rows.Next() {
+		var v Revision
+		var at string
+		if err := rows.Scan(&v.ID, &at, &v.Who, &v.Why, &v.Record, &v.Field, &v.Before, &v.After, &v.Action); err != nil {
+			return nil, err
+		}
+		v.At = parseTime(at)
+		out = append(out, v)
+	}
+	return out, rows.Err()
+}
+
+// History returns the revisions of one record ("system:SLUG" or
+// "measurement:ID"), newest first.
+func (s *Store) History(ctx context.Context, record string) ([]Revision, error) {
+	out, err := revisionsOf(ctx, s.r, record)
+	return out, fault("history", err)
+}

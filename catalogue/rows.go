@@ -1,0 +1,166 @@
+package catalogue
+
+import (
+	"context"
+	"database/sql"
+	"encoding/json"
+	"strings"
+	"time"
+)
+
+// rowColumns is the SELECT list of a row: every column, then what rowMeta
+// holds.
+var rowColumns = func() string {
+	exprs := make([]string, len(Columns))
+	for i, c := range Columns {
+		exprs[i] = c.expr
+	}
+	// The windows are those of the measurement's own line; a line of the whole
+	// system stands for its measurement only when there is just one.
+	return strings.Join(exprs, ", ") + `, m.id, m.system_id, max(m.revision, s.revision), max(m.updated_at, s.updated_at),
+		(SELECT l.sinuosities FROM centrelines l WHERE l.measurement_id = m.id OR (l.measurement_id IS NULL AND l.system_id = m.system_id
+			AND (SELECT count(*) FROM measurements o WHERE o.system_id = m.system_id) = 1) ORDER BY l.measurement_id IS NULL, l.id DESC LIMIT 1)`
+}()
+
+// rowMeta is what a stored row has beside its columns.
+type rowMeta struct {
+	id, systemID, revision int64
+	updatedAt              string
+}
+
+// rowScanner reads rows of rowColumns; it is reused from row to row.
+type rowScanner struct {
+	cells []any
+	dest  []any
+}
+
+func newRowScanner() *rowScanner {
+	n := len(Columns) + 5
+	sc := &rowScanner{cells: make([]any, n), dest: make([]any, n)}
+	for i := range sc.cells {
+		sc.dest[i] = &sc.cells[i]
+	}
+	return sc
+}
+
+func (sc *rowScanner) scan(rows interface{ Scan(...any) error }, r *Row) (rowMeta, error) {
+	var meta rowMeta
+	if err := rows.Scan(sc.dest...); err != nil {
+		return meta, err
+	}
+	*r = Row{}
+	for i := range Columns {
+		switch v := sc.cells[i].(type) {
+		case float64:
+			*Columns[i].num(r) = Number{V: v, Valid: true}
+		case string:
+			*Columns[i].text(r) = v
+		}
+	}
+	rest := sc.cells[len(Columns):]
+	meta.id, _ = rest[0].(int64)
+	meta.systemID, _ = rest[1].(int64)
+	meta.revision, _ = rest[2].(int64)
+	meta.updatedAt, _ = rest[3].(string)
+	if windows, ok := rest[4].(string); ok && windows != "[]" {
+		if err := json.Unmarshal([]byte(windows), &r.WindowSinuosities); err != nil {
+			return meta, err
+		}
+	}
+	r.Invented = strings.HasPrefix(r.Notes, InventedMark)
+	return meta, nil
+}
+
+// eachRow visits the rows of a query over rowColumns.
+func eachRow(ctx context.Context, q querier, tail string, args []any, visit func(*Row, rowMeta) error) error {
+	rows, err := q.QueryContext(ctx, "SELECT "+rowColumns+fromRows+tail, args...)
+	if err != nil {
+		return err
+	}
+	defer rows.Close()
+	sc := newRowScanner()
+	var r Row
+	for rows.Next() {
+		meta, err := sc.scan(rows, &r)
+		if err != nil {
+			return err
+		}
+		if err := visit(&r, meta); err != nil {
+			return err
+		}
+	}
+	return rows.Err()
+}
+
+// EachRow visits all accepted measurements under the filter, sorted, without
+// holding them in memory.
+func (s *Store) EachRow(ctx context.Context, f Filter, visit func(Row) error) error {
+	w, err := f.condition("")
+	if err != nil {
+		return err
+	}
+	order, err := f.orderBy("")
+	if err != nil {
+		return err
+	}
+	return fault("rows", eachRow(ctx, s.r, w.String()+order, w.args, func(r *Row, _ rowMeta) error { return visit(*r) }))
+}
+
+// Rows returns all accepted measurements under the filter (no paging), sorted;
+// unsorted they come in the order in which they were accepted.
+func (s *Store) Rows(ctx context.Context, f Filter) ([]Row, error) {
+	var out []Row
+	err := s.EachRow(ctx, f, func(r Row) error { out = append(out, r); return nil })
+	return out, err
+}
+
+// RowsPage returns one page of Rows with the total.
+func (s *Store) RowsPage(ctx context.Context, f Filter) (rows []Row, total int, err error) {
+	w, err := f.condition("")
+	if err != nil {
+		return nil, 0, err
+	}
+	order, err := f.orderBy("")
+	if err != nil {
+		return nil, 0, err
+	}
+	limit, offset := f.paging()
+	err = s.read(ctx, func(tx *sql.Tx) error {
+		if err := tx.QueryRowContext(ctx, "SELECT count(*)"+fromRows+w.String(), w.args...).Scan(&total); err != nil {
+			return err
+		}
+		args := append(append([]any{}, w.args...), limit, offset)
+		return eachRow(ctx, tx, w.String()+order+" LIMIT ? OFFSET ?", args, func(r *Row, _ rowMeta) error {
+			rows = append(rows, *r)
+			return nil
+		})
+	})
+	return rows, total, err
+}
+
+// read runs fn on one snapshot of the catalogue.
+func (s *Store) read(ctx context.Context, fn func(tx *sql.Tx) error) error {
+	tx, err := s.r.BeginTx(ctx, nil)
+	if err != nil {
+		return fault("begin", err)
+	}
+	defer tx.Rollback()
+	return fault("read", fn(tx))
+}
+
+// rowOf returns the accepted row with a measurement id, nil if there is none.
+func rowOf(ctx context.Context, q querier, measurement string) (*Row, rowMeta, error) {
+	var found *Row
+	var meta rowMeta
+	if measurement == "" {
+		return nil, meta, nil
+	}
+	err := eachRow(ctx, q, " WHERE m.measurement = ?", []any{measurement}, func(r *Row, m rowMeta) error {
+		row := *r
+		found, meta = &row, m
+		return nil
+	})
+	return found, meta, err
+}
+
+func (m rowMeta) time() time.Time { return parseTime(m.updatedAt) }

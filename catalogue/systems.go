@@ -1,0 +1,155 @@
+package catalogue
+
+import (
+	"context"
+	"database/sql"
+	"slices"
+	"sort"
+	"strings"
+)
+
+// Systems returns one page of the systems that have a measurement under the
+// filter, with the total number of such systems. Each holds its measurements
+// under the filter, best-graded first; sorting uses the first of them.
+func (s *Store) Systems(ctx context.Context, f Filter) ([]System, int, error) {
+	w, err := f.condition("")
+	if err != nil {
+		return nil, 0, err
+	}
+	order, err := f.orderBy("system")
+	if err != nil {
+		return nil, 0, err
+	}
+	limit, offset := f.paging()
+	var systems []System
+	var total int
+	err = s.read(ctx, func(tx *sql.Tx) error {
+		if err := tx.QueryRowContext(ctx, "SELECT count(DISTINCT m.system_id)"+fromRows+w.String(), w.args...).Scan(&total); err != nil {
+			return err
+		}
+		ids, err := systemPage(ctx, tx, w, order, limit, offset)
+		if err != nil || len(ids) == 0 {
+			return err
+		}
+		systems, err = systemsByID(ctx, tx, w, ids)
+		return err
+	})
+	return systems, total, err
+}
+
+// systemPage finds the ids of one page: one representative row a system, its
+// best-graded, then newest under the filter.
+func systemPage(ctx context.Context, tx *sql.Tx, w *where, order string, limit, offset int) ([]int64, error) {
+	q := `SELECT m.system_id FROM (SELECT m.id, row_number() OVER (PARTITION BY m.system_id ORDER BY m.grade_rank, m.id DESC) AS place` +
+		fromRows + w.String() + `) best JOIN measurements m ON m.id = best.id JOIN systems s ON s.id = m.system_id JOIN sources c ON c.id = m.source_id
+		WHERE best.place = 1` + order + ` LIMIT ? OFFSET ?`
+	rows, err := tx.QueryContext(ctx, q, append(append([]any{}, w.args...), limit, offset)...)
+	if err != nil {
+		return nil, err
+	}
+	defer rows.Close()
+	var ids []int64
+	for rows.Next() {
+		var id int64
+		if err := rows.Scan(&id); err != nil {
+			return nil, err
+		}
+		ids = append(ids, id)
+	}
+	return ids, rows.Err()
+}
+
+// systemsByID reads the systems in the order of ids, with their rows under w.
+func systemsByID(ctx context.Context, q querier, w *where, ids []int64) ([]System, error) {
+	place := make(map[int64]int, len(ids))
+	in := where{parts: slices.Clone(w.parts), args: slices.Clone(w.args)}
+	args := make([]any, len(ids))
+	for i, id := range ids {
+		place[id] = i
+		args[i] = id
+	}
+	in.add("m.system_id IN (?"+strings.Repeat(", ?", len(ids)-1)+")", args...)
+	systems := make([]System, len(ids))
+	err := eachRow(ctx, q, in.String()+" ORDER BY m.system_id, m.grade_rank, m.id DESC", in.args, func(r *Row, meta rowMeta) error {
+		systems[place[meta.systemID]].take(r, meta)
+		return nil
+	})
+	return systems, err
+}
+
+func (y *System) take(r *Row, meta rowMeta) {
+	y.Slug, y.Name = r.System, r.SystemName
+	y.Measurements = append(y.Measurements, *r)
+	y.Revision = max(y.Revision, int(meta.revision))
+	if t := meta.time(); t.After(y.UpdatedAt) {
+		y.UpdatedAt = t
+	}
+}
+
+// System returns everything the page of one system shows.
+func (s *Store) System(ctx context.Context, slug string) (*Detail, error) {
+	var d Detail
+	err := s.read(ctx, func(tx *sql.Tx) error {
+		err := eachRow(ctx, tx, " WHERE s.slug = ? ORDER BY m.grade_rank, m.id DESC", []any{slug}, func(r *Row, meta rowMeta) error {
+			d.take(r, meta)
+			return nil
+		})
+		if err != nil {
+			return err
+		}
+		if len(d.Measurements) == 0 {
+			return &Error{Code: NotFound, Message: "there is no accepted system of that name", Field: "system"}
+		}
+		if d.Sources, err = sourcesOf(ctx, tx, slug); err != nil {
+			return err
+		}
+		if d.Centrelines, err = centrelinesOf(ctx, tx, slug); err != nil {
+			return err
+		}
+		d.History, err = historyOf(ctx, tx, &d)
+		return err
+	})
+	if err != nil {
+		return nil, err
+	}
+	return &d, nil
+}
+
+func sourcesOf(ctx context.Context, q querier, slug string) ([]Source, error) {
+	rows, err := q.QueryContext(ctx, `SELECT DISTINCT c.id, c.citation, c.doi`+fromRows+` WHERE s.slug = ? ORDER BY c.citation, c.doi`, slug)
+	if err != nil {
+		return nil, err
+	}
+	defer rows.Close()
+	var out []Source
+	for rows.Next() {
+		var x Source
+		if err := rows.Scan(&x.ID, &x.Citation, &x.DOI); err != nil {
+			return nil, err
+		}
+		out = append(out, x)
+	}
+	return out, rows.Err()
+}
+
+// historyOf returns the revisions of the system, its measurements and its
+// lines, newest first.
+func historyOf(ctx context.Context, q querier, d *Detail) ([]Revision, error) {
+	records := []string{"system:" + d.Slug}
+	for _, r := range d.Measurements {
+		records = append(records, "measurement:"+r.Measurement)
+	}
+	for _, l := range d.Centrelines {
+		records = append(records, lineRecord(l.ID))
+	}
+	var out []Revision
+	for _, rec := range records {
+		h, err := revisionsOf(ctx, q, rec)
+		if err != nil {
+			return nil, err
+		}
+		out = append(out, h...)
+	}
+	sort.Slice(out, func(i, j int) bool { return out[i].ID > out[j].ID })
+	return out, nil
+}
