@@ -18,6 +18,19 @@ type Line struct {
 	Plane    bool // Lon, Lat are metres in a plane with no place
 	HasTime  bool // the third coordinate was two-way time: no slope
 	Notes    []string
+
+	// Z is what the third coordinate was taken as: depth, elevation, time, or
+	// "" when there is none.
+	Z string
+	// Role is what the file says the line is: "" for a centreline, else
+	// left_bank, right_bank or axis.
+	Role string
+	// LeveeLeft and LeveeRight are levee crest heights above the channel floor
+	// in metres, looking downstream, one a vertex, NaN where unknown; both nil
+	// when the file gives none.
+	LeveeLeft, LeveeRight []float64
+	// Axis is a given valley axis in the coordinates of the line, nil if none.
+	Axis []Vertex
 }
 
 // Settings of a measurement; every choice that changes a number is here, and
@@ -34,6 +47,8 @@ type Settings struct {
 	EPSG          string  `json:"epsg"`            // "", UTM zone code or "plane"
 	Z             string  `json:"z"`               // depth, elevation, time
 	Direction     string  `json:"direction"`       // as_given, reversed
+	Along         string  `json:"along"`           // arcs of windows and bends along the "given" vertices or the "resampled" points
+	Lines         string  `json:"lines"`           // what several lines of a file are: centrelines, banks, levels
 }
 
 // Measured is the planform of one line; its JSON is that of the contract.
@@ -52,17 +67,57 @@ type Measured struct {
 	MedianSpacingM   float64       `json:"vertex_spacing_m"`
 	Bends            []Bend        `json:"bends"`
 	Windows          []Window      `json:"windows"`
+	WindowLengthM    float64       `json:"window_length_m"` // mean arc of the windows
+	WholeReach       bool          `json:"whole_reach"`     // too short for one window: the reach is the window
 	Ruler            []Ruler       `json:"ruler"`
-	Sensitivity      Range         `json:"sensitivity"`
+	StableSpacingM   *float64      `json:"stable_spacing_m"` // coarsest ruler within 1 % of the finest
+	Coarse           bool          `json:"coarse"`           // too coarse for its bends: sinuosity reads low
+	Sensitivity      Range         `json:"sensitivity"`      // of the peak
+	SensitivityMean  Range         `json:"sensitivity_mean"`
+	SensitivityP90   Range         `json:"sensitivity_p90"`
+	ChannelSlope     *float64      `json:"channel_slope"`
+	Width            *float64      `json:"channel_width_m"`
+	Typical          *Typical      `json:"typical"` // medians over the bends, nil without bends
+	Place            *Place        `json:"place"`   // nil for a plane line
+	Notes            []string      `json:"notes"`   // what was guessed or chosen
 	Settings         Settings      `json:"settings"`
 	Warnings         []string      `json:"warnings"`
 	Levees           *Levees       `json:"levees,omitempty"`
 
+	// Profile is the depth along the channel where it is known, thinned to at
+	// most profilePoints.
+	Profile []ProfilePoint `json:"-"`
 	// Plan is the smoothed line in local metres (east, north) for figures.
 	Plan []PlanPoint `json:"-"`
 	// Inflections are indices into Plan.
 	Inflections []int `json:"-"`
+
+	missing    float64 // share of the length that the vertices miss
+	depthShare float64 // share of the line between the first and last known depth
 }
+
+// Typical bend: medians over all bends, m.
+type Typical struct {
+	Bends       int     `json:"bends"`
+	WavelengthM float64 `json:"wavelength_m"`
+	AmplitudeM  float64 `json:"amplitude_m"`
+	RadiusM     float64 `json:"radius_m"`
+	Sinuosity   float64 `json:"sinuosity"`
+}
+
+// Place is where a line starts, has its middle and ends, degrees.
+type Place struct {
+	StartLat  float64 `json:"start_latitude_deg"`
+	StartLon  float64 `json:"start_longitude_deg"`
+	MiddleLat float64 `json:"latitude_deg"`
+	MiddleLon float64 `json:"longitude_deg"`
+	EndLat    float64 `json:"end_latitude_deg"`
+	EndLon    float64 `json:"end_longitude_deg"`
+}
+
+// ProfilePoint is the depth, m below sea level, at a distance along the
+// channel, m.
+type ProfilePoint struct{ S, Depth float64 }
 
 // ValleyLengths by their definitions, m.
 type ValleyLengths struct {
@@ -90,12 +145,17 @@ type Bend struct {
 	RadiusM     float64 `json:"radius_m"`
 	Side        string  `json:"side"` // left or right, looking downstream
 	Asymmetry   float64 `json:"asymmetry"`
+	ApexLat     float64 `json:"-"` // degrees; 0 for a plane line
+	ApexLon     float64 `json:"-"`
+
+	apex float64 // place along Plan
 }
 
 // Window of the along-channel profile.
 type Window struct {
 	FromM       float64  `json:"from_m"`
 	ToM         float64  `json:"to_m"`
+	ChordM      float64  `json:"chord_m"`
 	Sinuosity   float64  `json:"sinuosity"`
 	ValleySlope *float64 `json:"valley_slope"`
 }
@@ -135,6 +195,8 @@ type Refused struct {
 type Report struct {
 	Lines   []Measured `json:"lines"`
 	Refused []Refused  `json:"refused"`
+	// Movements between two levels of one channel, one for each pair of lines.
+	Movements []Movement `json:"movements,omitempty"`
 }
 
 // InputError is a refusal with the setting or field it concerns and one
