@@ -87,7 +87,9 @@ func (m ModelSpec) String() string { return m.Form + ":" + m.Predictor }
 // users.
 var (
 	Forms      = []string{"linear", "logarithmic", "exponential", "power", "inverse", "floor_decay", "broken_line", "quantile_10", "quantile_50", "quantile_90", "theil_sen"}
-	Predictors = []string{"valley_slope", "abs_latitude", "sin_abs_latitude", "coriolis", "channel_width"}
+	Predictors = []string{"valley_slope", "abs_latitude", "sin_abs_latitude", "coriolis", "channel_width", "channel_depth", "log10_slope"}
+	// Categories may stand in Joint beside predictors.
+	Categories = []string{"feeder", "grain", "margin", "setting", "activity", "burial", "confinement", "aggradation", "large_river", "stacking", "lateral_accretion", "survey", "extraction", "climate_state"}
 )
 
 // DefaultRequest is the question asked when nothing is said: three straight
@@ -125,6 +127,67 @@ type Analysis struct {
 	MethodsText  string         `json:"methods_text"`
 	Used         []UsedRow      `json:"-"` // every row considered, for /regression.csv and the figures
 	Separability []string       `json:"separability"`
+
+	LeadingModel string            `json:"leading_model"` // best leave-one-cluster-out score: the headline and Influence are about it
+	Parts        []Part            `json:"parts"`         // unique and common parts of R2 for two or three predictors
+	Groups       []GroupDifference `json:"groups"`        // group=kind: each model's slope in one kind minus that in another
+	Selection    []Selection       `json:"selection"`     // thin_straight, thin_sinuous
+	Collinearity []Collinearity    `json:"collinearity"`  // pairs of the predictors in use
+}
+
+// Part is a part of the joint R2 that goes with exactly these predictors:
+// one member = its unique part, several = what they have in common
+// (commonality analysis; Newton & Spurrell, Appl. Stat. 16:51 (1967),
+// doi 10.2307/2985237). A common part can be negative (suppression).
+type Part struct {
+	Members  []string `json:"members"`
+	Share    float64  `json:"share"`
+	Interval Interval `json:"interval"`
+}
+
+// GroupDifference is the interaction of a model's slope with the kind of
+// system: coefficient in A minus coefficient in B.
+type GroupDifference struct {
+	Model        string   `json:"model"`
+	Term         string   `json:"term"`
+	A            string   `json:"a"`
+	B            string   `json:"b"`
+	Difference   float64  `json:"difference"`
+	Interval     Interval `json:"interval"`
+	IntervalKind string   `json:"interval_kind"`
+	P            float64  `json:"p"`
+	Text         string   `json:"text"`
+}
+
+// Selection is the leading model re-estimated with a stated fraction of the
+// straight (or sinuous) systems left out at random, many times.
+type Selection struct {
+	Thinned     string   `json:"thinned"` // straight, sinuous
+	Fraction    float64  `json:"fraction"`
+	Systems     int      `json:"systems"` // systems open to thinning
+	Repeats     int      `json:"repeats"`
+	Term        string   `json:"term"`
+	Coefficient float64  `json:"coefficient"` // median over the repeats
+	Range       Interval `json:"range"`       // 2.5 and 97.5 % points over the repeats
+	RSquared    float64  `json:"r_squared"`   // median
+	Text        string   `json:"text"`
+}
+
+// Collinearity is how far two predictors move together on the rows used.
+type Collinearity struct {
+	A           string  `json:"a"`
+	B           string  `json:"b"`
+	Correlation float64 `json:"correlation"` // of the values; for a category the multiple correlation
+	VIF         float64 `json:"vif"`         // 1/(1 - r^2)
+}
+
+// Term is one predictor, category or interaction of a joint model, tested as
+// a whole given all the others.
+type Term struct {
+	Name         string  `json:"name"`
+	Columns      int     `json:"columns"`
+	VIF          float64 `json:"vif"` // largest of its columns
+	PermutationP float64 `json:"permutation_p"`
 }
 
 // Dropped counts the rows left out for one reason.
@@ -164,6 +227,28 @@ type Model struct {
 	DegenerateResamples int           `json:"degenerate_resamples"`
 	Failure             string        `json:"failure,omitempty"` // why this model could not be fitted, in a sentence
 	Curve               []CurvePoint  `json:"curve"`             // fitted line with its interval band, in sinuosity units
+
+	Group                string      `json:"group,omitempty"` // group=kind: the kind this fit is for
+	Scale                string      `json:"scale"`           // response as fitted: raw ln ln_excess
+	Rows                 int         `json:"rows"`
+	Clusters             int         `json:"clusters"`
+	Sigma                float64     `json:"residual_standard_deviation"` // on the scale fitted
+	Skill                float64     `json:"out_of_sample_skill"`         // 1 - PRESS/PRESS of the mean of the other clusters
+	RSquaredIntervalKind string      `json:"r_squared_interval_kind"`
+	ResamplesUsed        int         `json:"resamples_used"`
+	CurveKind            string      `json:"curve_interval_kind"`
+	Levels               []Level     `json:"levels,omitempty"` // categories of a joint model, first level = baseline
+	Terms                []Term      `json:"terms,omitempty"`
+	Influence            []Influence `json:"influence"`
+	Carrier              string      `json:"carrier"` // cluster whose leaving out moves the slope farthest
+	Found                bool        `json:"found"`   // see Analysis.Headline: interval, sign-flip test and out-of-sample score all speak for it
+}
+
+// Level is a category of a joint model with its levels and their rows.
+type Level struct {
+	Category string   `json:"category"`
+	Levels   []string `json:"levels"` // alphabetical; the first is the baseline
+	Rows     []int    `json:"rows"`
 }
 
 // CurvePoint is the fitted line at X with the pointwise interval of the line.

@@ -1,0 +1,216 @@
+package stats
+
+import (
+	"fmt"
+	"math"
+	"slices"
+)
+
+// fewClusters is the number of clusters under which every interval is warned of.
+const fewClusters = 10
+
+// warnings are all warning sentences of the page.
+func (s *study) warnings(a *Analysis) []string {
+	var out []string
+	add := func(format string, args ...any) { out = append(out, fmt.Sprintf(format, args...)) }
+	g, noun := s.t.cluster.count(), clusterNoun(s.req.Cluster)
+	switch {
+	case s.t.n() == 0:
+	case g == 1:
+		add("All rows belong to one %s, so no interval or test is possible. Widen the filter, or choose another cluster.", clusterOne(s.req.Cluster))
+	case g < fewClusters:
+		add("Only %d %s: every interval here is rough and probably too narrow. Take none of them as settled; widen the filter if you can.", g, noun)
+	}
+	if s.req.Cluster == "none" && s.t.n() > 0 {
+		add("Rows are resampled as if they were independent (cluster=none). Rows of one deposit are not: these intervals are too narrow. Use cluster=parent_deposit.")
+	}
+	out = append(out, s.mixed()...)
+	for _, m := range s.out {
+		if m.Failure != "" {
+			add("%s was not fitted. %s", m.name(), m.Failure)
+			continue
+		}
+		out = append(out, s.modelWarnings(&m)...)
+	}
+	if unlikeScales(s.out) {
+		add("AICc is not compared: the models are fitted on different response scales, and a likelihood of ln P is not one of P. Compare the out-of-sample R2, which is in sinuosity units for all, or fit all on one scale.")
+	}
+	if f := s.flips(); f < s.req.Permutations && s.t.n() > 0 {
+		add("The sign-flip tests use %d flips, not %d: with %d %s more would take too long.", f, s.req.Permutations, g, noun)
+	}
+	if s.anyEqualOne() && s.req.Scale == "raw" && len(s.out) > 0 {
+		n := 0
+		for _, y := range s.t.y {
+			if y == 1 {
+				n++
+			}
+		}
+		add("%s a sinuosity of exactly 1: on scale=ln_excess they would be dropped.", plural(n, "row has", "rows have"))
+	}
+	return append(out, a.Separability...)
+}
+
+func (s *study) anyEqualOne() bool { return slices.Contains(s.t.y, 1.0) }
+
+// name is the model with its group.
+func (m *Model) name() string {
+	if m.Group != "" {
+		return m.Model + " (" + m.Group + ")"
+	}
+	return m.Model
+}
+
+// mixed warns of definitions mixed in one response.
+func (s *study) mixed() []string {
+	var out []string
+	if s.req.Response == "any" {
+		if text := tally(s.t.sinuosityKind); text != "" {
+			out = append(out, "The rows mix kinds of sinuosity ("+text+"): a peak is larger than a mean of the same channel, so part of the scatter is definition. Keep to one with response=.")
+		}
+	}
+	if s.req.MeasuredLine == "all" {
+		if text := tally(s.t.measuredLine); text != "" {
+			out = append(out, "The rows mix measured lines ("+text+"): a levee crest is straighter than its thalweg. Keep to one with measured_line=.")
+		}
+	}
+	return out
+}
+
+// tally counts values, "" where there is only one.
+func tally(values []string) string {
+	count := map[string]int{}
+	for _, v := range values {
+		count[orUnknown(v)]++
+	}
+	if len(count) < 2 {
+		return ""
+	}
+	var parts []string
+	for _, k := range slices.Sorted(mapKeys(count)) {
+		parts = append(parts, fmt.Sprintf("%d %s", count[k], k))
+	}
+	return list(parts)
+}
+
+func (s *study) modelWarnings(m *Model) []string {
+	var out []string
+	add := func(format string, args ...any) {
+		out = append(out, m.name()+": "+fmt.Sprintf(format, args...))
+	}
+	c := m.slope()
+	if m.ResamplesUsed > 0 && m.DegenerateResamples > 0 {
+		advice := "its intervals rest on the others."
+		if 10*m.DegenerateResamples > m.ResamplesUsed {
+			advice = "its intervals rest on the others and are not to be trusted. Leave out the category or predictor that hangs on few " + clusterNoun(s.req.Cluster) + "."
+		}
+		add("%d of %d resamples could not be fitted; %s", m.DegenerateResamples, m.ResamplesUsed, advice)
+	}
+	if m.ResamplesUsed > 0 && m.ResamplesUsed < s.req.Resamples {
+		add("%d resamples are used, not %d: with %d rows more would take too long.", m.ResamplesUsed, s.req.Resamples, m.Rows)
+	}
+	for _, l := range m.Levels {
+		for i, n := range l.Rows {
+			if n == 1 {
+				add("%s = %s has one row, and its coefficient fits that row alone. Join it with another level, or leave it out.", l.Category, l.Levels[i])
+			}
+		}
+	}
+	if c != nil && m.Form != "joint" {
+		if t := disagreement(c, m, s); t != "" {
+			add("%s", t)
+		}
+		if t := clusteringSentence(c, s); t != "" {
+			add("%s", t)
+		}
+	}
+	if len(m.Influence) > 0 && math.Abs(m.Influence[0].RSquaredWithout-m.RSquared) > ruling {
+		i := m.Influence[0]
+		add("one system decides: without %s R2 is %.2f in place of %.2f. Look at its record before you quote either.", i.SystemName, i.RSquaredWithout, m.RSquared)
+	}
+	if t := s.leverage(m); t != "" {
+		add("%s", t)
+	}
+	for _, t := range m.Terms {
+		if t.VIF > 5 {
+			add("%s is tied to the other members (variance inflation %s): its coefficient cannot be told from theirs. Leave one of them out.", upperFirst(nameOf(t.Name)), number(t.VIF))
+		}
+	}
+	return out
+}
+
+// disagreement: the interval kinds differ about zero, or in width by more than
+// half.
+func disagreement(c *Coefficient, m *Model, s *study) string {
+	kinds := []string{"studentised", "cr2", "bca"}
+	var known []string
+	zero, wide, narrow := 0, 0.0, math.Inf(1)
+	text := ""
+	for _, k := range kinds {
+		i, ok := c.Intervals[k]
+		if !ok || !i.known() {
+			continue
+		}
+		known = append(known, k)
+		if i.excludes(0) {
+			zero++
+		}
+		wide, narrow = math.Max(wide, i.width()), math.Min(narrow, i.width())
+		if text != "" {
+			text += ", "
+		}
+		text += kindName(k) + " " + between(i)
+	}
+	if len(known) < 2 {
+		return ""
+	}
+	overZero := zero > 0 && zero < len(known)
+	if !overZero && narrow > 0.5*wide {
+		return ""
+	}
+	about := "in width"
+	if overZero {
+		about = "about zero"
+	}
+	return fmt.Sprintf("the intervals of %s disagree %s (%s), because %s %s carries the estimate. Quote the widest, and say why.", c.Name, about, text, clusterOne(s.req.Cluster), m.Carrier)
+}
+
+// clusteringSentence puts the intervals with and without clustering side by
+// side when they differ by more than half.
+func clusteringSentence(c *Coefficient, s *study) string {
+	rows, ok := c.Intervals["row_bootstrap"]
+	whole := c.Intervals["bca"]
+	if !ok || !rows.known() || !whole.known() {
+		return ""
+	}
+	ratio := whole.width() / rows.width()
+	if ratio < 1.5 && ratio > 0.5 {
+		return ""
+	}
+	verdict := ""
+	switch {
+	case rows.excludes(0) && !whole.excludes(0):
+		verdict = " Rows taken for independent would say that it matters; whole " + clusterNoun(s.req.Cluster) + " say that it cannot be told."
+	case !rows.excludes(0) && whole.excludes(0):
+		verdict = " Only the clustered interval excludes zero."
+	}
+	return fmt.Sprintf("clustering changes the interval of %s by more than half: rows resampled %s, whole %s resampled %s (BCa both).%s Use the second.",
+		c.Name, between(rows), clusterNoun(s.req.Cluster), between(whole), verdict)
+}
+
+// leverage warns when one row alone holds more than half of the leverage of an
+// inverse model.
+func (s *study) leverage(m *Model) string {
+	if m.Form != "inverse" {
+		return ""
+	}
+	worst := Influence{Leverage: math.Inf(-1)}
+	for _, i := range m.Influence {
+		if i.Leverage > worst.Leverage {
+			worst = i
+		}
+	}
+	if !(worst.Leverage > 1) {
+		return ""
+	}
+	return fmt.Sprintf("%s has a leverage of %.2f of 2: 1/%s is ruled by the system nearest to zero. Prefer floor_decay.", worst.SystemName, worst.Leverage, m.Predictor)
+}
