@@ -1,5 +1,339 @@
 package main
 
-import "github.com/labstack/echo/v4"
+import (
+	"context"
+	"encoding/csv"
+	"errors"
+	"fmt"
+	"io"
+	"net/http"
+	"net/url"
+	"slices"
+	"strconv"
+	"strings"
 
-func (a *App) routesExpectation(e *echo.Echo) {}
+	"github.com/labstack/echo/v4"
+
+	"fathombend/catalogue"
+	"fathombend/stats/expectation"
+	"fathombend/views"
+)
+
+func (a *App) routesExpectation(e *echo.Echo) {
+	for _, r := range []struct {
+		path string
+		h    echo.HandlerFunc
+	}{
+		{"/expectation", a.expectationPage},
+		{"/expectation.json", a.expectationJSON},
+		{"/figures/expectation.svg", a.expectationFigure},
+	} {
+		get(e, r.path, noStore(r.h))
+		e.POST(r.path, noStore(r.h))
+	}
+	e.POST("/expectation.csv", noStore(a.expectationCSV))
+	get(e, "/expectation/columns.csv", a.expectationColumns)
+}
+
+// noStore keeps targets out of caches: they are confidential.
+func noStore(next echo.HandlerFunc) echo.HandlerFunc {
+	return func(c echo.Context) error {
+		c.Response().Header().Set(echo.HeaderCacheControl, "no-store")
+		return next(c)
+	}
+}
+
+// classLimits are where the planform classes part. No published limit for
+// submarine channels is settled: they are a convention, shown as one.
+var classLimits = []float64{1.05, 1.2, 1.5}
+
+// fitSeed seeds the bootstrap of the fits. A target's own seed moves its
+// draws only, so that fits can be shared by all targets.
+const fitSeed = 1
+
+// expectationFits gives the rival explanations fitted on the rows of f for one
+// response and measured line, from the cache of this catalogue revision.
+// response "" is peak, else any; line "" is all.
+func (a *App) expectationFits(ctx context.Context, f catalogue.Filter, response, line string) (*expectation.Fits, error) {
+	f = fitFilter(f, "")
+	rev, err := a.store.Revision(ctx)
+	if err != nil {
+		return nil, err
+	}
+	key := fmt.Sprintf("expectation|%d|%s|%s|%s", rev, f.Values().Encode(), response, line)
+	v, err := a.fits.do(ctx, key, func(ctx context.Context) (any, error) {
+		rows, err := a.store.Rows(ctx, f)
+		if err != nil {
+			return nil, err
+		}
+		return expectation.Fit(ctx, statsRows(rows), expectation.Options{
+			Response: response, MeasuredLine: line, Cluster: "parent_deposit", Seed: fitSeed, ClassLimits: classLimits,
+		})
+	})
+	if err != nil {
+		return nil, err
+	}
+	return v.(*expectation.Fits), nil
+}
+
+// expect answers one target on the rows of f.
+func (a *App) expect(ctx context.Context, f catalogue.Filter, t expectation.Target) (*expectation.Result, error) {
+	fits, err := a.expectationFits(ctx, f, t.Response, t.MeasuredLine)
+	if err != nil {
+		return nil, err
+	}
+	return fits.Expect(ctx, t)
+}
+
+// expectationPage shows the form, and under it the answer when something was
+// asked. A wrong value comes back with everything typed.
+func (a *App) expectationPage(c echo.Context) error {
+	q, err := params(c)
+	if err != nil {
+		return err
+	}
+	posted := c.Request().Method == http.MethodPost
+	if !posted && hasEmpty(q) && allow(q, targetParameters, catalogue.FilterParameters) == nil {
+		return c.Redirect(http.StatusFound, withQuery("/expectation", withoutEmpty(q)))
+	}
+	page := a.expectationFrame(c, q, posted)
+	if asksNothing(q) && allow(q, targetParameters, catalogue.FilterParameters) == nil {
+		page.Filter, err = filterOf(q)
+		if err != nil {
+			return err
+		}
+		return render(c, http.StatusOK, views.Expectation(page))
+	}
+	f, t, err := expectationQuestion(q)
+	page.Filter = f
+	if err == nil {
+		page.Result, err = a.expect(c.Request().Context(), f, t)
+	}
+	if err != nil {
+		return a.expectationRefused(c, page, err)
+	}
+	page.Target = t
+	if page.Days, err = dayCurves(page.Result); err != nil {
+		return err
+	}
+	return render(c, http.StatusOK, views.Expectation(page))
+}
+
+func (a *App) expectationFrame(c echo.Context, q url.Values, posted bool) views.ExpectationPage {
+	p := views.ExpectationPage{Page: a.page(c, "Expectation", "expectation"), Typed: q, Posted: posted, Columns: columnHelp()}
+	p.Query = withoutEmpty(q)
+	if !posted && !asksNothing(q) {
+		p.JSON = withQuery("/expectation.json", p.Query)
+	}
+	return p
+}
+
+// expectationRefused shows why, beside the form with everything typed still in
+// it.
+func (a *App) expectationRefused(c echo.Context, page views.ExpectationPage, err error) error {
+	p := problemOf(err)
+	if p.Status != http.StatusBadRequest {
+		return err
+	}
+	page.JSON = ""
+	page.RefusedField, page.Refused = p.Field, p.Detail
+	if p.Expected != "" {
+		page.Refused += " Expected: " + p.Expected
+	}
+	return render(c, http.StatusBadRequest, views.Expectation(page))
+}
+
+func (a *App) expectationJSON(c echo.Context) error {
+	q, err := params(c)
+	if err != nil {
+		return err
+	}
+	f, t, err := expectationQuestion(q)
+	if err != nil {
+		return err
+	}
+	r, err := a.expect(c.Request().Context(), f, t)
+	if err != nil {
+		return err
+	}
+	return writeJSON(c, http.StatusOK, r)
+}
+
+// expectationFigure is one figure of the page as a file.
+func (a *App) expectationFigure(c echo.Context) error {
+	q, err := params(c)
+	if err != nil {
+		return err
+	}
+	panel := q.Get("panel")
+	q = withValues(q)
+	q.Del("panel")
+	f, t, err := expectationQuestion(q)
+	if err != nil {
+		return err
+	}
+	page := views.ExpectationPage{Target: t, Filter: f}
+	if page.Result, err = a.expect(c.Request().Context(), f, t); err != nil {
+		return err
+	}
+	if page.Days, err = dayCurves(page.Result); err != nil {
+		return err
+	}
+	names := page.Panels()
+	if panel == "" {
+		panel = names[0]
+	}
+	if !slices.Contains(names, panel) {
+		return &badInput{"panel", strconv.Quote(clip(panel)) + " is no figure of this page. Expected one of: " + strings.Join(names, ", ")}
+	}
+	return a.writeFigure(c, page.Figure(panel))
+}
+
+// expectationCSV answers a file of targets: the body itself, or a form's file
+// or text called targets. Settings of the query hold for every row that does
+// not give its own.
+func (a *App) expectationCSV(c echo.Context) error {
+	q, err := url.ParseQuery(c.Request().URL.RawQuery)
+	if err != nil {
+		return &badInput{"query", "the address holds a broken escape (%); write a plain % as %25"}
+	}
+	in, q, err := targetsBody(c, q)
+	if err != nil {
+		return err
+	}
+	defer in.Close()
+	if err := allow(q, targetParameters, catalogue.FilterParameters); err != nil {
+		return err
+	}
+	f, err := filterOf(q)
+	if err != nil {
+		return err
+	}
+	if _, err := targetOf(q); err != nil {
+		return err
+	}
+	h := c.Response().Header()
+	out := &lateHeader{c: c, set: func() {
+		h.Set(echo.HeaderContentType, "text/csv; charset=utf-8; header=present")
+		h.Set(echo.HeaderContentDisposition, `attachment; filename="expectations.csv"`)
+		c.Response().WriteHeader(http.StatusOK)
+	}}
+	fits := func(ctx context.Context, response, line string) (*expectation.Fits, error) {
+		return a.expectationFits(ctx, f, response, line)
+	}
+	_, err = answerTargets(c.Request().Context(), in, out, targetValues(q), fits, func(int) { c.Response().Flush() })
+	return err
+}
+
+// lateHeader sends the header with the first byte, so that a file that is no
+// table at all can still be refused with its own status.
+type lateHeader struct {
+	c    echo.Context
+	set  func()
+	sent bool
+}
+
+func (l *lateHeader) Write(b []byte) (int, error) {
+	if !l.sent {
+		l.sent = true
+		l.set()
+	}
+	return l.c.Response().Write(b)
+}
+
+// targetsBody finds the file of targets in a request and the settings sent
+// with it.
+func targetsBody(c echo.Context, q url.Values) (io.ReadCloser, url.Values, error) {
+	r := c.Request()
+	kind, _, _ := strings.Cut(r.Header.Get(echo.HeaderContentType), ";")
+	switch strings.TrimSpace(kind) {
+	case "multipart/form-data":
+		if err := r.ParseMultipartForm(8 << 20); err != nil {
+			return nil, nil, bodyError(err)
+		}
+		q = withValues(q, withoutEmpty(r.MultipartForm.Value))
+		text := q.Get("targets")
+		q.Del("targets")
+		if file, _, err := r.FormFile("targets"); err == nil {
+			return file, q, nil
+		}
+		return io.NopCloser(strings.NewReader(text)), q, nil
+	case echo.MIMEApplicationForm:
+		if err := r.ParseForm(); err != nil {
+			return nil, nil, bodyError(err)
+		}
+		q = withValues(q, withoutEmpty(r.PostForm))
+		text := q.Get("targets")
+		q.Del("targets")
+		return io.NopCloser(strings.NewReader(text)), q, nil
+	}
+	return r.Body, q, nil
+}
+
+func bodyError(err error) error {
+	var over *http.MaxBytesError
+	if errors.As(err, &over) {
+		return err
+	}
+	return &badInput{"body", "the form could not be read; send the CSV as the body with Content-Type text/csv, or as the form field targets"}
+}
+
+func withoutEmpty(q url.Values) url.Values {
+	out := url.Values{}
+	for name, values := range q {
+		for _, v := range values {
+			if strings.TrimSpace(v) != "" {
+				out.Add(name, v)
+			}
+		}
+	}
+	return out
+}
+
+func withQuery(path string, q url.Values) string {
+	if len(q) == 0 {
+		return path
+	}
+	return path + "?" + q.Encode()
+}
+
+// columnHelp is the dictionary of the columns a file of targets may have and
+// of those it comes back with.
+func columnHelp() []views.ColumnHelp {
+	var out []views.ColumnHelp
+	for _, f := range targetFields {
+		out = append(out, views.ColumnHelp{Name: f.name, Unit: f.unit, Meaning: "from " + short(f.low) + " to " + short(f.top)})
+	}
+	for _, s := range slopeFields {
+		unit := map[string]string{"target_slope": "m/m", "target_slope_deg": "degrees", "target_slope_permille": "per mille"}[s.name]
+		out = append(out, views.ColumnHelp{Name: s.name, Unit: unit, Meaning: "valley slope; one of the three"})
+	}
+	for _, t := range targetTexts {
+		meaning := "a name"
+		if t.choices != nil {
+			meaning = "one of: " + strings.Join(t.choices, ", ")
+		}
+		out = append(out, views.ColumnHelp{Name: t.name, Meaning: meaning})
+	}
+	out = append(out, views.ColumnHelp{Name: "seed", Meaning: "seed of the draws"}, views.ColumnHelp{Name: "draws", Meaning: "number of draws"})
+	for _, c := range resultColumns {
+		out = append(out, views.ColumnHelp{Name: c.Name, Unit: c.Unit, Meaning: c.Meaning, Out: true})
+	}
+	return append(out, views.ColumnHelp{Name: errorColumn, Meaning: "why a row has no result; empty for the others", Out: true})
+}
+
+func (a *App) expectationColumns(c echo.Context) error {
+	var b strings.Builder
+	w := csv.NewWriter(&b)
+	_ = w.Write([]string{"column", "direction", "unit", "meaning"})
+	for _, h := range columnHelp() {
+		direction := "in"
+		if h.Out {
+			direction = "out"
+		}
+		_ = w.Write([]string{h.Name, direction, h.Unit, h.Meaning})
+	}
+	w.Flush()
+	c.Response().Header().Set(echo.HeaderContentDisposition, `attachment; filename="expectation-columns.csv"`)
+	return c.Blob(http.StatusOK, "text/csv; charset=utf-8; header=present", []byte(b.String()))
+}

@@ -1,6 +1,7 @@
 package main
 
 import (
+	"errors"
 	"math"
 	"net/url"
 	"slices"
@@ -8,6 +9,8 @@ import (
 	"strings"
 
 	"fathombend/catalogue"
+	"fathombend/stats"
+	"fathombend/stats/earth"
 	"fathombend/stats/expectation"
 )
 
@@ -46,6 +49,8 @@ var targetFields = []targetField{
 	{"rate_ms_per_century", func(t *expectation.Target) *float64 { return &t.RateMsPerCentury }, -10, 10, "ms per century", ""},
 	{"day_length_h", func(t *expectation.Target) *float64 { return &t.DayLengthH }, 1, 10000, "solar hours", ""},
 	{"days_per_year", func(t *expectation.Target) *float64 { return &t.DaysPerYear }, 1, 10000, "solar days per year", ""},
+	{"rotation_period_h", func(t *expectation.Target) *float64 { return &t.RotationPeriodH }, 0.1, 20_000, "hours against the stars, for other planets", ""},
+	{"gravity_m_s2", func(t *expectation.Target) *float64 { return &t.GravityMS2 }, 0.01, 1000, "m/s2, for other planets", ""},
 	{"target_width_m", func(t *expectation.Target) *float64 { return &t.TargetWidthM }, 0.1, 200_000, "m", ""},
 	{"target_depth_m", func(t *expectation.Target) *float64 { return &t.TargetDepthM }, 0.01, 10_000, "m", ""},
 	{"speed_m_s", func(t *expectation.Target) *float64 { return &t.SpeedMS }, 0.001, 50, "m/s", ""},
@@ -60,7 +65,7 @@ var slopeFields = []struct {
 	top  float64
 	mm   func(float64) float64
 }{
-	{"target_slope", 1, func(x float64) float64 { return x }},
+	{"target_slope", 10, func(x float64) float64 { return x }},
 	{"target_slope_deg", 45, func(x float64) float64 { return math.Tan(x * math.Pi / 180) }},
 	{"target_slope_permille", 1000, func(x float64) float64 { return x / 1000 }},
 }
@@ -71,8 +76,9 @@ var (
 	solarTideChoices   = []string{"middle", "on", "off"}
 	eulerFrameChoices  = []string{"spin_axis", "mantle"}
 	feederChoices      = []string{"unknown", "river", "shelf", "glacial", "volcanic", "failure"}
+	largeRiverChoices  = []string{"unknown", "yes", "no"}
 	grainChoices       = []string{"unknown", "mud", "mud_sand", "sand", "gravel"}
-	settingChoices     = []string{"unknown", "fan", "slope", "rise", "trench", "foredeep", "minibasin", "deep_ocean", "non_margin"}
+	settingChoices     = []string{"unknown", "fan", "slope", "rise", "trench", "foredeep", "minibasin", "deep_ocean", "non_margin", "river_valley"}
 	confinementChoices = []string{"unknown", "confined", "levee_confined", "unconfined"}
 	aggradationChoices = []string{"unknown", "aggrading", "stable", "incising"}
 )
@@ -90,9 +96,10 @@ var targetTexts = []targetText{
 	{"unit", func(t *expectation.Target) *string { return &t.Unit }, nil},
 	{"day", func(t *expectation.Target) *string { return &t.Day }, dayChoices},
 	{"solar_tide", func(t *expectation.Target) *string { return &t.SolarTide }, solarTideChoices},
-	{"response", func(t *expectation.Target) *string { return &t.Response }, responseChoices},
-	{"measured_line", func(t *expectation.Target) *string { return &t.MeasuredLine }, lineChoices},
+	{"response", func(t *expectation.Target) *string { return &t.Response }, stats.Responses},
+	{"measured_line", func(t *expectation.Target) *string { return &t.MeasuredLine }, stats.MeasuredLines},
 	{"target_feeder", func(t *expectation.Target) *string { return &t.TargetFeeder }, feederChoices},
+	{"target_large_river", func(t *expectation.Target) *string { return &t.TargetLargeRiver }, largeRiverChoices},
 	{"target_grain", func(t *expectation.Target) *string { return &t.TargetGrain }, grainChoices},
 	{"target_setting", func(t *expectation.Target) *string { return &t.TargetSetting }, settingChoices},
 	{"target_confinement", func(t *expectation.Target) *string { return &t.TargetConfinement }, confinementChoices},
@@ -112,10 +119,8 @@ var targetParameters = func() []string {
 	for _, t := range targetTexts {
 		out = append(out, t.name)
 	}
-	return append(out, "seed", "draws")
+	return append(out, "pole_csv", "seed", "draws")
 }()
-
-const maxDraws = 100_000
 
 // targetOf reads a target; what was not given keeps NewTarget's default.
 func targetOf(q url.Values) (expectation.Target, error) {
@@ -145,11 +150,14 @@ func targetOf(q url.Values) (expectation.Target, error) {
 		}
 		*f.to(&t) = v
 	}
+	if err := readPoles(q, &t); err != nil {
+		return t, err
+	}
 	seed, err := whole(q, "seed", int(t.Seed), 0, maxSeed)
 	if err != nil {
 		return t, err
 	}
-	draws, err := whole(q, "draws", t.Draws, 100, maxDraws)
+	draws, err := whole(q, "draws", t.Draws, expectation.FewestDraws, expectation.MostDraws)
 	if err != nil {
 		return t, err
 	}
@@ -219,13 +227,38 @@ func readSlope(q url.Values, t *expectation.Target) error {
 		if err != nil {
 			return err
 		}
-		if s.name == "target_slope" && x > 0.3 {
-			return &badInput{s.name, strconv.Quote(q.Get(s.name)) + " in m/m is steeper than 16 degrees. If it is in degrees, give it as target_slope_deg"}
-		}
 		if x <= 0 {
 			return &badInput{s.name, strconv.Quote(q.Get(s.name)) + " is not a slope down the channel. Expected a number above 0; leave it out when it is not known"}
 		}
 		t.TargetSlope = s.mm(x)
+	}
+	return nil
+}
+
+// ownPoles is the name of a pole table that came with the question.
+const ownPoles = "own"
+
+// readPoles reads a pole table of the user's own, sent as CSV text: it is used
+// for this question and stored nowhere.
+func readPoles(q url.Values, t *expectation.Target) error {
+	text := q.Get("pole_csv")
+	if strings.TrimSpace(text) == "" {
+		if t.PoleTable == ownPoles {
+			return &badInput{"pole_table", "a pole table of your own is chosen, but pole_csv is empty. Paste it there: plate, age, pole latitude, pole longitude, A95"}
+		}
+		return nil
+	}
+	table, err := earth.ParsePoleTable(ownPoles, strings.NewReader(text))
+	var in *earth.InputError
+	if errors.As(err, &in) {
+		return &badInput{"pole_csv", in.Message}
+	}
+	if err != nil {
+		return err
+	}
+	t.UserPoles = table
+	if t.PoleTable == "" {
+		t.PoleTable = ownPoles
 	}
 	return nil
 }

@@ -1,5 +1,158 @@
 package main
 
-import "github.com/labstack/echo/v4"
+import (
+	"context"
+	"errors"
+	"fmt"
+	"net/http"
+	"net/url"
+	"slices"
 
-func (a *App) routesRegression(e *echo.Echo) {}
+	"github.com/labstack/echo/v4"
+
+	"fathombend/catalogue"
+	"fathombend/stats"
+	"fathombend/views"
+)
+
+func (a *App) routesRegression(e *echo.Echo) {
+	get(e, "/regression", a.regressionPage)
+	get(e, "/regression.json", a.regressionJSON)
+	get(e, "/regression.csv", a.regressionCSV)
+	get(e, "/figures/regression.svg", a.regressionFigure)
+}
+
+// regressionPage answers the question in the address. An address that leaves
+// the question open is sent to one that says all of it, seed included, so that
+// what is on the screen can always be linked to.
+func (a *App) regressionPage(c echo.Context) error {
+	q, err := params(c)
+	if err != nil {
+		return err
+	}
+	ctx := c.Request().Context()
+	f, req, err := regressionQuestion(q)
+	if err != nil {
+		return a.regressionRefused(c, q, err)
+	}
+	if full, err := a.fullAddress(ctx, q, f, req); err != nil {
+		return err
+	} else if full != "" {
+		return c.Redirect(http.StatusFound, full)
+	}
+	page := views.RegressionPage{Page: a.regressionFrame(c, f, req), Request: req, Filter: f, Categories: stats.Categories}
+	page.Analysis, err = a.analyse(ctx, f, req)
+	if err != nil {
+		return a.regressionRefused(c, q, err)
+	}
+	return render(c, http.StatusOK, views.Regression(page))
+}
+
+// regressionFrame is the frame of the page with the addresses of its twins.
+func (a *App) regressionFrame(c echo.Context, f catalogue.Filter, req stats.Request) views.Page {
+	p := a.page(c, "Regression", "regression")
+	p.Query = withValues(regressionFilter(f).Values(), regressionValues(req))
+	p.JSON, p.CSV = "/regression.json?"+p.Query.Encode(), "/regression.csv?"+p.Query.Encode()
+	p.Wide = true
+	return p
+}
+
+// regressionRefused shows why a question has no answer, with the form still
+// there, so that one setting can be changed and nothing is lost. An address
+// that cannot be read at all gets the plain page of errors.
+func (a *App) regressionRefused(c echo.Context, q url.Values, err error) error {
+	p := problemOf(err)
+	f, ferr := filterOf(q)
+	var in interface{ Input() (string, string) }
+	if p.Status != http.StatusBadRequest || ferr != nil || !errors.As(err, &in) {
+		return err
+	}
+	req, rerr := regressionRequest(q)
+	if rerr != nil {
+		req = stats.DefaultRequest()
+	}
+	page := views.RegressionPage{Page: a.regressionFrame(c, f, req), Request: req, Filter: f, Categories: stats.Categories,
+		RefusedField: p.Field, Refused: p.Detail}
+	page.JSON, page.CSV = "", ""
+	return render(c, http.StatusBadRequest, views.Regression(page))
+}
+
+// regressionFilter is f without what only lists use.
+func regressionFilter(f catalogue.Filter) catalogue.Filter {
+	f.Page, f.PerPage, f.Sort = 0, 0, ""
+	return f
+}
+
+// fullAddress is where to send an address that does not say its question in
+// full: no model, no seed, or the empty fields a form leaves. It is "" when
+// the address is full.
+func (a *App) fullAddress(ctx context.Context, q url.Values, f catalogue.Filter, req stats.Request) (string, error) {
+	asks := q.Has("model") || q.Has("joint")
+	if asks && q.Has("seed") && !hasEmpty(q) {
+		return "", nil
+	}
+	if !asks && q.Get("scale") == "" {
+		scale, err := a.offeredScale(ctx, f, req)
+		if err != nil {
+			return "", err
+		}
+		req.Scale = scale
+	}
+	return "/regression?" + withValues(regressionFilter(f).Values(), regressionValues(req)).Encode(), nil
+}
+
+// offeredScale is the scale the page offers first: ln(P - 1), where intervals
+// hold best, when every sinuosity allows it.
+func (a *App) offeredScale(ctx context.Context, f catalogue.Filter, req stats.Request) (string, error) {
+	f = fitFilter(f, req.Group)
+	rev, err := a.store.Revision(ctx)
+	if err != nil {
+		return "", err
+	}
+	v, err := a.fits.do(ctx, fmt.Sprintf("offered scale|%d|%s", rev, f.Values().Encode()), func(ctx context.Context) (any, error) {
+		rows, err := a.store.Rows(ctx, f)
+		if err != nil {
+			return nil, err
+		}
+		straight := func(r catalogue.Row) bool { return r.Sinuosity.Valid && r.Sinuosity.V <= 1 }
+		if len(rows) == 0 || slices.ContainsFunc(rows, straight) {
+			return "raw", nil
+		}
+		return "ln_excess", nil
+	})
+	if err != nil {
+		return "", err
+	}
+	return v.(string), nil
+}
+
+func (a *App) regressionJSON(c echo.Context) error {
+	_, _, analysis, err := a.regressionAnswer(c)
+	if err != nil {
+		return err
+	}
+	return writeJSON(c, http.StatusOK, analysis)
+}
+
+// regressionAnswer reads the question of a data twin and answers it.
+func (a *App) regressionAnswer(c echo.Context) (catalogue.Filter, stats.Request, *stats.Analysis, error) {
+	q, err := params(c)
+	if err != nil {
+		return catalogue.Filter{}, stats.Request{}, nil, err
+	}
+	f, req, err := regressionQuestion(q)
+	if err != nil {
+		return f, req, nil, err
+	}
+	analysis, err := a.analyse(c.Request().Context(), f, req)
+	return f, req, analysis, err
+}
+
+// regressionFigure is the main figure alone, as a file.
+func (a *App) regressionFigure(c echo.Context) error {
+	_, req, analysis, err := a.regressionAnswer(c)
+	if err != nil {
+		return err
+	}
+	return a.writeFigure(c, views.RegressionFigure(analysis, req))
+}

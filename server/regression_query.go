@@ -17,17 +17,7 @@ var regressionParameters = []string{
 	"resamples", "permutations", "seed", "time", "pick", "measurement_error", "thin_straight", "thin_sinuous",
 }
 
-// The choices of the regression parameters, as the contract lists them.
-var (
-	responseChoices = []string{"any", "peak", "p90", "mean", "bend", "reach", "standardised_peak"}
-	lineChoices     = []string{"all", "thalweg", "centreline", "levee_crest", "unknown"}
-	scaleChoices    = []string{"raw", "ln", "ln_excess"}
-	clusterChoices  = []string{"parent_deposit", "system", "source", "basin", "none"}
-	intervalChoices = []string{"studentised", "cr2", "bca", "percentile"}
-	timeChoices     = []string{"of_deposition", "present"}
-	pickChoices     = []string{"all", "best"}
-	yesNo           = []string{"no", "yes"}
-)
+var yesNo = []string{"no", "yes"}
 
 const (
 	maxModels = 12
@@ -132,13 +122,13 @@ func readRegressionChoices(q url.Values, r *stats.Request) error {
 		choices []string
 	}{
 		{"group", &r.Group, []string{"kind"}},
-		{"response", &r.Response, responseChoices},
-		{"measured_line", &r.MeasuredLine, lineChoices},
-		{"scale", &r.Scale, scaleChoices},
-		{"cluster", &r.Cluster, clusterChoices},
-		{"interval", &r.Interval, intervalChoices},
-		{"time", &r.Time, timeChoices},
-		{"pick", &r.Pick, pickChoices},
+		{"response", &r.Response, stats.Responses},
+		{"measured_line", &r.MeasuredLine, stats.MeasuredLines},
+		{"scale", &r.Scale, stats.Scales},
+		{"cluster", &r.Cluster, stats.Clusterings},
+		{"interval", &r.Interval, stats.IntervalKinds},
+		{"time", &r.Time, stats.Times},
+		{"pick", &r.Pick, stats.Picks},
 		{"measurement_error", &measurementError, yesNo},
 	} {
 		v, err := oneOf(q, c.name, *c.to, c.choices)
@@ -160,8 +150,8 @@ func readRegressionNumbers(q url.Values, r *stats.Request) error {
 		low, top int
 	}{
 		{"k", &r.K, r.K, 1, 1000},
-		{"resamples", &r.Resamples, r.Resamples, 99, 100_000},
-		{"permutations", &r.Permutations, r.Permutations, 99, 99_999},
+		{"resamples", &r.Resamples, r.Resamples, stats.MinResamples, stats.MaxResamples},
+		{"permutations", &r.Permutations, r.Permutations, stats.MinPermutations, stats.MaxPermutations},
 		{"seed", &seed, int(r.Seed), 0, maxSeed},
 	} {
 		v, err := whole(q, c.name, c.def, c.low, c.top)
@@ -177,8 +167,8 @@ func readRegressionNumbers(q url.Values, r *stats.Request) error {
 		low, top float64
 	}{
 		{"level", &r.Level, 0.5, 0.999},
-		{"thin_straight", &r.ThinStraight, 0, 0.95},
-		{"thin_sinuous", &r.ThinSinuous, 0, 0.95},
+		{"thin_straight", &r.ThinStraight, 0, 0.9},
+		{"thin_sinuous", &r.ThinSinuous, 0, 0.9},
 	} {
 		v, err := number(q, c.name, *c.to, c.low, c.top)
 		if err != nil {

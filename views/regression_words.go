@@ -1,0 +1,312 @@
+package views
+
+import (
+	"slices"
+	"strconv"
+	"strings"
+
+	"fathombend/stats"
+)
+
+// predictorWords are how a predictor is spoken of and drawn.
+type predictorWords struct {
+	name string // in a sentence
+	axis string // on an axis and in a table head, with its unit
+	unit string
+	log  bool // axis
+}
+
+var predictorWordsOf = map[string]predictorWords{
+	"valley_slope":     {"valley slope", "valley slope (m/m)", "m/m", true},
+	"log10_slope":      {"log10 of valley slope", "log10 of valley slope (m/m)", "", false},
+	"abs_latitude":     {"|latitude|", "|latitude| (degrees)", "degrees", false},
+	"sin_abs_latitude": {"sin |latitude|", "sin |latitude|", "", false},
+	"coriolis":         {"the Coriolis parameter", "|f| (1e-4 s⁻¹)", "1e-4 s⁻¹", false},
+	"channel_width":    {"channel width", "channel width (m)", "m", true},
+	"channel_depth":    {"channel depth", "channel depth (m)", "m", true},
+}
+
+// predictorText gives the words for a predictor or category; one it does not
+// know is shown under its own name.
+func predictorText(p string) predictorWords {
+	if w, ok := predictorWordsOf[p]; ok {
+		return w
+	}
+	plain := strings.ReplaceAll(p, "_", " ")
+	return predictorWords{name: plain, axis: plain}
+}
+
+var formWordsOf = map[string]string{
+	"linear": "straight line", "logarithmic": "logarithmic", "exponential": "exponential", "power": "power", "inverse": "inverse",
+	"floor_decay": "decay to the floor", "broken_line": "broken line", "quantile_10": "10 % quantile line", "quantile_50": "median line",
+	"quantile_90": "90 % quantile line", "theil_sen": "Theil-Sen line", "joint": "joint model",
+}
+
+func formText(f string) string {
+	if w, ok := formWordsOf[f]; ok {
+		return w
+	}
+	return strings.ReplaceAll(f, "_", " ")
+}
+
+var formulaOf = map[string]string{
+	"linear": "y = a + b x", "logarithmic": "y = a + b ln x", "exponential": "P = a e^(b x)", "power": "P = a x^b", "inverse": "y = a + b / x",
+	"floor_decay": "P = 1 + a e^(−b x)", "broken_line": "y = a + b x, slope changing at one x", "quantile_10": "y = a + b x at the 10 % quantile",
+	"quantile_50": "y = a + b x at the median", "quantile_90": "y = a + b x at the 90 % quantile", "theil_sen": "y = a + b x, median of pairwise slopes",
+}
+
+// modelText names a model for a reader: form, predictor and, with group=kind,
+// the kind.
+func modelText(m stats.Model) string {
+	s := m.Model
+	if m.Form != "" && m.Form != "joint" {
+		s = formText(m.Form) + ", " + predictorText(m.Predictor).name
+	} else if m.Form == "joint" {
+		s = "joint: " + strings.ReplaceAll(strings.ReplaceAll(m.Predictor, ",", ", "), "_", " ")
+	}
+	if m.Group != "" {
+		s += " (" + m.Group + ")"
+	}
+	return s
+}
+
+// modelName turns a FORM:PREDICTOR text into words, for tables that hold only
+// the text.
+func (p RegressionPage) modelName(text string) string {
+	for _, m := range p.Analysis.Models {
+		if m.Model == text {
+			return modelText(m)
+		}
+	}
+	return text
+}
+
+func scaleText(s string) string {
+	switch s {
+	case "ln":
+		return "ln P"
+	case "ln_excess":
+		return "ln(P − 1)"
+	}
+	return "P"
+}
+
+func responseText(r string, k int) string {
+	switch r {
+	case "any", "":
+		return "sinuosity of any kind"
+	case "p90":
+		return "P90 sinuosity"
+	case "bend":
+		return "bend sinuosity"
+	case "standardised_peak":
+		return "standardised peak sinuosity (largest of " + strconv.Itoa(k) + " windows)"
+	}
+	return r + " sinuosity"
+}
+
+func clusterText(c string) string {
+	switch c {
+	case "parent_deposit":
+		return "parent deposit"
+	case "none":
+		return "single row"
+	}
+	return c
+}
+
+func intervalText(kind string) string {
+	switch kind {
+	case "bca":
+		return "BCa"
+	case "cr2":
+		return "CR2"
+	case "row_bootstrap":
+		return "rows resampled singly"
+	}
+	return strings.ReplaceAll(kind, "_", " ")
+}
+
+// otherKinds lists the interval kinds defined for c beside the one shown, in a
+// fixed order.
+func otherKinds(c stats.Coefficient) []string {
+	var out []string
+	for _, k := range []string{"studentised", "bca", "percentile", "row_bootstrap"} {
+		if _, ok := c.Intervals[k]; ok && k != c.IntervalKind {
+			out = append(out, k)
+		}
+	}
+	return out
+}
+
+// termText names a coefficient for a reader.
+func termText(name string) string {
+	if w, ok := predictorWordsOf[name]; ok {
+		return w.name
+	}
+	return strings.ReplaceAll(name, "_", " ")
+}
+
+// jointLevels are the category levels of the joint models, each category once.
+func jointLevels(a *stats.Analysis) []stats.Level {
+	var out []stats.Level
+	for _, m := range a.Models {
+		for _, l := range m.Levels {
+			if !slices.ContainsFunc(out, func(o stats.Level) bool { return o.Category == l.Category }) {
+				out = append(out, l)
+			}
+		}
+	}
+	return out
+}
+
+func levelSentence(l stats.Level) string {
+	var parts []string
+	for i, name := range l.Levels {
+		if i < len(l.Rows) {
+			name += " " + strconv.Itoa(l.Rows[i])
+		}
+		parts = append(parts, name)
+	}
+	base := ""
+	if len(l.Levels) > 0 {
+		base = " against " + l.Levels[0]
+	}
+	return "Levels of " + termText(l.Category) + " are coded" + base + "; rows: " + strings.Join(parts, ", ") + "."
+}
+
+// sentence says what counting whole clusters changes.
+func (l rowLesson) sentence() string {
+	rowsZero, wholeZero := holdsZero(l.Rows), holdsZero(l.Whole)
+	ratio := (l.Whole[1] - l.Whole[0]) / (l.Rows[1] - l.Rows[0])
+	width := numberText(ratio, 2) + " times as wide"
+	if ratio < 1 {
+		width = numberText(1/ratio, 2) + " times narrower"
+	}
+	switch {
+	case !rowsZero && wholeZero:
+		return width + "; single rows exclude zero, whole clusters do not: it cannot be told"
+	case rowsZero && !wholeZero:
+		return width + "; whole clusters exclude zero, single rows do not: look at the influence table"
+	case l.Changed:
+		return width
+	}
+	return "little"
+}
+
+// comparisonSentence reads a paired difference.
+func comparisonSentence(c stats.Comparison) string {
+	switch {
+	case !finiteInterval(c.Interval):
+		return "no interval could be formed"
+	case c.Interval[0] > 0:
+		return "the first goes with more of the variance"
+	case c.Interval[1] < 0:
+		return "the second goes with more of the variance"
+	}
+	return "these rows do not tell which goes with more"
+}
+
+func partText(s stats.Part) string {
+	var names []string
+	for _, m := range s.Members {
+		names = append(names, predictorText(m).name)
+	}
+	if len(names) == 1 {
+		return names[0] + " alone"
+	}
+	return "common to " + strings.Join(names[:len(names)-1], ", ") + " and " + names[len(names)-1]
+}
+
+// mainPanels and diagnosticPanels divide the figures of an analysis.
+func mainPanels(p RegressionPage) []string {
+	var out []string
+	for _, n := range RegressionPanels(p.Analysis) {
+		if strings.HasPrefix(n, "fit:") || n == "r_squared" {
+			out = append(out, n)
+		}
+	}
+	return out
+}
+
+func diagnosticPanels(p RegressionPage) []string {
+	main := mainPanels(p)
+	return slices.DeleteFunc(RegressionPanels(p.Analysis), func(n string) bool { return slices.Contains(main, n) })
+}
+
+func (p RegressionPage) plots(names []string) []Plot {
+	var out []Plot
+	for _, n := range names {
+		out = append(out, RegressionFigure(p.Analysis, p.Request, n))
+	}
+	return out
+}
+
+func panelText(name string) string {
+	if predictor, ok := strings.CutPrefix(name, "fit:"); ok {
+		return predictorText(predictor).name
+	}
+	if name == "r_squared" {
+		return "R²"
+	}
+	return strings.ReplaceAll(name, "_", " ")
+}
+
+// rampVariables are the variables that colour carries on the named panels.
+func rampVariables(names []string) []string {
+	var out []string
+	for _, n := range names {
+		if predictor, ok := strings.CutPrefix(n, "fit:"); ok {
+			if v := otherVariable(predictor); !slices.Contains(out, v) {
+				out = append(out, v)
+			}
+		}
+	}
+	return out
+}
+
+// predictorsOn lists the panels on which colour carries variable.
+func predictorsOn(names []string, variable string) string {
+	var out []string
+	for _, n := range names {
+		if predictor, ok := strings.CutPrefix(n, "fit:"); ok && otherVariable(predictor) == variable {
+			out = append(out, predictorText(predictor).name)
+		}
+	}
+	return strings.Join(out, ", ")
+}
+
+func hasRivers(a *stats.Analysis) bool {
+	return slices.ContainsFunc(a.Used, func(r stats.UsedRow) bool { return r.Kept && r.Kind == "river" })
+}
+
+// mainCaption is a caption that can go to print: what, how many, how.
+func (p RegressionPage) mainCaption() string {
+	a, r := p.Analysis, p.Request
+	s := upperFirst(responseText(r.Response, r.K)) + " against each predictor, with the fitted lines and the pointwise " + percent(r.Level) +
+		" interval of each line, and R² of each model with its interval (hollow: out of sample). " +
+		countText(a.Rows, "row", "rows") + " of " + countText(a.Systems, "system", "systems") + " in " + countText(a.Clusters, "cluster", "clusters") +
+		" (by " + clusterText(r.Cluster) + "), " + strconv.Itoa(r.Resamples) + " resamples of whole clusters, seed " + strconv.FormatUint(r.Seed, 10) + "."
+	if r.Cluster == "none" {
+		s = strings.Replace(s, "whole clusters", "single rows", 1)
+	}
+	if a.InventedRows > 0 {
+		s += " " + countText(a.InventedRows, "row is", "rows are") + " invented."
+	}
+	return s + " The axis follows the rows; a band that leaves the frame goes on."
+}
+
+func (p RegressionPage) diagnosticCaption() string {
+	s := "What " + p.modelName(p.Analysis.LeadingModel) + " leaves over, and how far its R² hangs on single systems. Points are rows; each leads to its system."
+	if p.Analysis.InventedRows > 0 {
+		s += " " + countText(p.Analysis.InventedRows, "row is", "rows are") + " invented."
+	}
+	return s
+}
+
+func countText(n int, one, many string) string {
+	if n == 1 {
+		return "1 " + one
+	}
+	return strconv.Itoa(n) + " " + many
+}
