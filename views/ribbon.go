@@ -5,6 +5,8 @@ import (
 	"strconv"
 	"strings"
 	"sync"
+
+	"fathombend/catalogue/planform"
 )
 
 // RibbonCap is the largest sinuosity drawn as it is; a larger one is drawn as
@@ -58,7 +60,7 @@ func RibbonShape(p, axis float64) Shape {
 }
 
 func ribbonShape(p, axis float64) Shape {
-	omega := omegaOf(p)
+	omega := planform.OmegaOf(p)
 	wave := p * axis / ribbonWaves // arc length of one wave
 	ds := wave / ribbonSteps
 	angle := func(s float64) float64 { return omega * math.Cos(2*math.Pi*s/wave) }
@@ -98,24 +100,6 @@ func ribbonShape(p, axis float64) Shape {
 	return out
 }
 
-// omegaOf inverts P = 1/J0(omega), omega in radians, on the branch below the
-// first zero of J0, by bisection.
-func omegaOf(p float64) float64 {
-	if !(p > 1) {
-		return 0
-	}
-	lo, hi := 0.0, 2.404825557695773 // first zero of J0, Abramowitz & Stegun table 9.5
-	for range 60 {
-		mid := (lo + hi) / 2
-		if math.J0(mid)*p > 1 {
-			lo = mid
-		} else {
-			hi = mid
-		}
-	}
-	return (lo + hi) / 2
-}
-
 // nums writes page coordinates as short as two decimals allow.
 func nums(v ...float64) string {
 	var b []byte
@@ -150,7 +134,8 @@ func num2(x float64) string {
 }
 
 // WidthClass is the stroke class of a channel width in m: w0 unknown, then
-// under 300 m, to 1 km, to 3 km, and wider.
+// under 300 m, to 1 km, to 3 km, and wider. The limits are a choice of this
+// project for drawing only.
 func WidthClass(m float64) string {
 	switch {
 	case !(m > 0):
