@@ -36,6 +36,14 @@ type Target struct {
 	SpeedMS, Concentration, RadiusM                                                float64
 	ObservedSinuosity                                                              float64
 
+	// TargetLargeRiver is yes, no or unknown.
+	TargetLargeRiver string
+	// RotationPeriodH is a rotation period against the stars in hours, and
+	// GravityMS2 a gravity in m/s2, for other planets; NaN = the Earth's.
+	RotationPeriodH, GravityMS2 float64
+	// UserPoles is a pole table of the user's own; its name goes in PoleTable.
+	UserPoles *earth.PoleTable
+
 	Seed  uint64
 	Draws int
 }
@@ -70,6 +78,14 @@ type Result struct {
 	Notes                    []string       `json:"notes"` // what was assumed, e.g. a missing error taken as 0
 	Cautions                 []string       `json:"cautions"`
 	Settings                 map[string]any `json:"settings"`
+	// ResponseText names the sinuosity that is expected, in words.
+	ResponseText string `json:"response_text"`
+	// RotationEffect compares what the faster spin does with the error of the
+	// palaeolatitude, in a sentence.
+	RotationEffect string `json:"rotation_effect"`
+	// ClimateState at the age, "" where the table has none.
+	ClimateState string      `json:"climate_state"`
+	Dimensions   []Dimension `json:"dimensions"`
 }
 
 // ValueSE is a value with one standard error.
@@ -125,6 +141,36 @@ type Explanation struct {
 	// Parts of the variance of ln(P-1): parameters, residual, inputs.
 	Parts   map[string]float64 `json:"parts,omitempty"`
 	Failure string             `json:"failure,omitempty"`
+	// Rows and Clusters it is fitted on; Score is its mean log density (or,
+	// where P = 1 occurs, minus its ranked probability score) of left-out
+	// clusters; larger is better.
+	Rows         int           `json:"rows"`
+	Clusters     int           `json:"clusters"`
+	Score        float64       `json:"score"`
+	Coefficients []Coefficient `json:"coefficients"`
+}
+
+// Coefficient of an explanation on ln(P - 1), with its cluster-bootstrap
+// standard error.
+type Coefficient struct {
+	Name          string  `json:"name"`
+	Estimate      float64 `json:"estimate"`
+	StandardError float64 `json:"standard_error"`
+}
+
+// Dimension is a quantity of the analogues for a reservoir model, each deposit
+// counted once.
+type Dimension struct {
+	Name     string  `json:"name"`
+	Unit     string  `json:"unit"`
+	From     string  `json:"from"` // nearest or filtered
+	Rows     int     `json:"rows"`
+	Deposits int     `json:"deposits"`
+	P10      float64 `json:"p10"`
+	P25      float64 `json:"p25"`
+	P50      float64 `json:"p50"`
+	P75      float64 `json:"p75"`
+	P90      float64 `json:"p90"`
 }
 
 // Observed places a measured sinuosity in the expected distribution.
@@ -154,8 +200,12 @@ type Regime struct {
 	BendsRule     float64    `json:"bends_rule"`
 	Neither       float64    `json:"neither"`
 	RiverTiltM    float64    `json:"river_tilt_m"`
-	Assumed       []string   `json:"assumed"`
-	Text          []string   `json:"text"`
+	// In bends the two terms add (turning left in the north) or oppose.
+	TiltAddingBendM   [3]float64 `json:"tilt_adding_bend_m"`
+	TiltOpposingBendM [3]float64 `json:"tilt_opposing_bend_m"`
+	LeveeSide         string     `json:"levee_side"` // right, left, or "" = no side is stated
+	Assumed           []string   `json:"assumed"`
+	Text              []string   `json:"text"`
 }
 
 // Tendency is one facies statement.

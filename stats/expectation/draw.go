@@ -1,0 +1,409 @@
+package expectation
+
+import (
+	"cmp"
+	"math"
+	"math/rand/v2"
+	"slices"
+	"sort"
+)
+
+// draws are the draws of one target: its inputs, and the sinuosities they give
+// under each explanation.
+type draws struct {
+	point  inputs
+	n      int
+	in     []inputs
+	lat    []float64
+	f      []float64 // |f|, s-1
+	set    []float64 // uniform: which parameter set
+	res    []float64 // uniform: which residual
+	one    []float64 // uniform: is P = 1
+	p      [][]float64
+	mix    mixture // of the weighted explanations
+	donors donors
+	moves  moves
+}
+
+// moves says which inputs of a target are uncertain.
+type moves struct{ lat, age, day, slope, supply bool }
+
+// donors are the catalogue rows whose slope or supply stands in for what a
+// target does not say.
+type donors struct {
+	rows  []int
+	total []float64 // cumulative weight
+}
+
+func (f *Fits) donorsFor(point *inputs) donors {
+	collect := func(fits func(*observation) bool) donors {
+		var d donors
+		var sum float64
+		for i := range f.frame.obs {
+			if ob := &f.frame.obs[i]; fits(ob) {
+				sum += ob.weight
+				d.rows, d.total = append(d.rows, i), append(d.total, sum)
+			}
+		}
+		return d
+	}
+	slope := func(ob *observation) bool { return !math.IsNaN(point.logSlope) || !math.IsNaN(ob.logSlope) }
+	d := collect(func(ob *observation) bool {
+		for k := range factors {
+			if point.level[k] >= 0 && ob.level[k] != point.level[k] {
+				return false
+			}
+		}
+		return slope(ob)
+	})
+	if len(d.rows) < 5 {
+		d = collect(slope)
+	}
+	if len(d.rows) == 0 {
+		d = collect(func(*observation) bool { return true })
+	}
+	return d
+}
+
+func (d *donors) pick(u float64) int {
+	k := sort.SearchFloat64s(d.total, u*d.total[len(d.total)-1])
+	return d.rows[min(k, len(d.rows)-1)]
+}
+
+// fill puts a donor's slope and supply where the target has none.
+func (d *donors) fill(f *frame, in *inputs, u float64, slope, supply bool) {
+	if len(d.rows) == 0 {
+		return
+	}
+	ob := &f.obs[d.pick(u)]
+	if slope && math.IsNaN(in.logSlope) {
+		in.logSlope = ob.logSlope
+	}
+	if supply {
+		for k := range factors {
+			if in.level[k] < 0 {
+				in.level[k] = ob.level[k]
+			}
+		}
+	}
+}
+
+// pointOf is a target's inputs at their point values.
+func (f *Fits) pointOf(t *Target, p *place) inputs {
+	in := inputs{sin: sinOf(p.lat.Value), ratio: p.ratio, logSlope: math.NaN(), state: stateAt(p.age.Value)}
+	if given(t.TargetSlope) {
+		in.logSlope = math.Log10(t.TargetSlope)
+	}
+	for k, v := range []string{t.TargetFeeder, t.TargetGrain, t.TargetLargeRiver} {
+		in.level[k] = f.frame.levelOf(k, v)
+	}
+	return in
+}
+
+// draw makes a target's draws; draw j comes from its own stream PCG(seed, j),
+// so the answer does not depend on the number of cores.
+func (f *Fits) draw(t *Target, p *place) *draws {
+	d := &draws{point: f.pointOf(t, p), n: t.Draws}
+	d.donors = f.donorsFor(&d.point)
+	d.moves = moves{
+		lat: p.lat.SE > 0, age: p.age.SE > 0, day: p.day.High > p.day.Low,
+		slope: math.IsNaN(d.point.logSlope), supply: slices.Contains(d.point.level[:], -1),
+	}
+	d.in = make([]inputs, d.n)
+	block := make([]float64, 5*d.n)
+	d.lat, d.f, d.set, d.res, d.one = block[:d.n], block[d.n:2*d.n], block[2*d.n:3*d.n], block[3*d.n:4*d.n], block[4*d.n:]
+	var pcg rand.PCG
+	rng := rand.New(&pcg)
+	for j := range d.n {
+		pcg.Seed(t.Seed, uint64(j))
+		d.set[j], d.res[j], d.one[j] = rng.Float64(), rng.Float64(), rng.Float64()
+		u := rng.Float64()
+		at := p.draw(rng, true, true, true)
+		in := d.point
+		in.sin, in.ratio = sinOf(at.lat), at.ratio
+		if at.age != p.age.Value {
+			in.state = stateAt(at.age)
+		}
+		d.donors.fill(f.frame, &in, u, true, true)
+		d.in[j], d.lat[j] = in, at.lat
+		d.f[j] = fUnit * 1e-4 * in.ratio * in.sin
+	}
+	f.outcomes(d)
+	return d
+}
+
+// outcomes turns the draws into sinuosities, explanation by explanation:
+// 1 + exp(x'b* + s r*), or 1 with the share of rows that hold P = 1.
+func (f *Fits) outcomes(d *draws) {
+	d.p = make([][]float64, len(f.fits))
+	for k, t := range f.fits {
+		if t.failure != "" {
+			continue
+		}
+		out := make([]float64, d.n)
+		for j := range out {
+			if d.one[j] < f.frame.ones {
+				out[j] = 1
+				continue
+			}
+			b := int(d.set[j] * float64(t.sets))
+			y := t.value(&d.in[j], t.boot[b*t.p:(b+1)*t.p]) + t.s*t.pool[int(d.res[j]*float64(len(t.pool)))]
+			out[j] = 1 + math.Exp(math.Min(y, 12))
+		}
+		slices.Sort(out)
+		d.p[k] = out
+		if f.weights[k] > 0 {
+			d.mix.add(out, f.weights[k])
+		}
+	}
+}
+
+// explain fills in the explanations and their combination.
+func (f *Fits) explain(d *draws, res *Result) {
+	parts := map[string]float64{}
+	var mean, meanSquare float64
+	for k, t := range f.fits {
+		e := Explanation{Name: t.name, Text: t.text, Weight: f.weights[k], Failure: t.failure,
+			Rows: t.rows, Clusters: t.clusters, Score: f.scores[k]}
+		if t.failure == "" {
+			m := mixture{}
+			m.add(d.p[k], 1)
+			e.Sinuosity, e.Coverage = m.quantiles(), f.alone[k]
+			e.Jackknife = f.jackknife(d, func(j int) float64 {
+				if j == k {
+					return 1
+				}
+				return 0
+			})
+			v := f.variances(t, d)
+			e.Parts = shares(v)
+			e.Coefficients = t.coefficients()
+			y := t.value(&d.point, t.beta)
+			mean, meanSquare = mean+f.weights[k]*y, meanSquare+f.weights[k]*y*y
+			for name, x := range v {
+				parts[name] += f.weights[k] * x
+			}
+		}
+		res.Explanations = append(res.Explanations, e)
+	}
+	c := Explanation{Name: "combined", Text: "All explanations together, by their weights.", Weight: 1, Score: math.NaN(),
+		Rows: len(f.frame.obs), Clusters: len(f.frame.clusters)}
+	if len(d.mix.draws) == 0 {
+		c.Failure, c.Weight = "No explanation could be fitted on the chosen rows. Widen the filter.", 0
+		res.Combined = c
+		return
+	}
+	c.Sinuosity, c.Coverage = d.mix.quantiles(), f.together
+	c.Jackknife = f.jackknife(d, func(j int) float64 { return f.weights[j] })
+	parts["explanation"] = math.Max(0, meanSquare-mean*mean)
+	c.Parts = shares(parts)
+	res.Combined = c
+}
+
+// variances are the parts of the variance of ln(P - 1) of a new system: by the
+// parameters, by the residual and by the inputs, each with the others at their
+// point values.
+func (f *Fits) variances(t *fitted, d *draws) map[string]float64 {
+	var par, res, inp moments
+	for b := range t.sets {
+		par.add(t.value(&d.point, t.boot[b*t.p:(b+1)*t.p]))
+	}
+	for _, r := range t.pool[:] {
+		res.add(t.s * r)
+	}
+	for j := range d.in {
+		inp.add(t.value(&d.in[j], t.beta))
+	}
+	return map[string]float64{"parameters": par.variance(), "residual": res.variance(), "inputs": inp.variance()}
+}
+
+// shares scales parts to a sum of 1.
+func shares(v map[string]float64) map[string]float64 {
+	var sum float64
+	for _, name := range sortedKeys(v) {
+		sum += v[name]
+	}
+	out := map[string]float64{}
+	for name, x := range v {
+		if sum > 0 {
+			out[name] = x / sum
+		}
+	}
+	return out
+}
+
+func sortedKeys(m map[string]float64) []string {
+	var out []string
+	for k := range m {
+		out = append(out, k)
+	}
+	slices.Sort(out)
+	return out
+}
+
+// moments accumulates a mean and a variance (Welford).
+type moments struct{ n, mean, ss float64 }
+
+func (m *moments) add(x float64) {
+	m.n++
+	d := x - m.mean
+	m.mean += d / m.n
+	m.ss += d * (x - m.mean)
+}
+
+func (m *moments) variance() float64 {
+	if m.n < 2 {
+		return 0
+	}
+	return m.ss / (m.n - 1)
+}
+
+func (t *fitted) coefficients() []Coefficient {
+	out := make([]Coefficient, t.p)
+	for k := range out {
+		var m moments
+		for b := range t.sets {
+			m.add(t.boot[b*t.p+k])
+		}
+		out[k] = Coefficient{Name: t.names[k], Estimate: t.beta[k], StandardError: math.Sqrt(m.variance())}
+	}
+	return out
+}
+
+// jackknife is the jackknife+ interval over clusters at 90 % (Barber, Candes,
+// Ramdas & Tibshirani, Ann. Stat. 49:486 (2021), doi 10.1214/20-AOS1965): it
+// guarantees 80 %, and only if clusters are exchangeable. Each cluster, and in
+// it each system, counts alike; nil with too few clusters for limits to exist.
+func (f *Fits) jackknife(d *draws, weight func(int) float64) *[2]float64 {
+	var low, high []weighted
+	var total float64
+	for c := range f.frame.clusters {
+		var at float64
+		ok := true
+		for k, t := range f.fits {
+			if w := weight(k); w > 0 {
+				if t.failure != "" || t.loo[c] == nil {
+					ok = false
+					break
+				}
+				at += w * t.value(&d.point, t.loo[c])
+			}
+		}
+		if !ok {
+			continue
+		}
+		for i := f.frame.start[c]; i < f.frame.start[c+1]; i++ {
+			ob := &f.frame.obs[i]
+			if math.IsInf(ob.y, 0) {
+				continue
+			}
+			var own float64
+			for k, t := range f.fits {
+				if w := weight(k); w > 0 {
+					if !t.usable[i] {
+						own = math.NaN()
+						break
+					}
+					own += w * t.mean(i, t.loo[c])
+				}
+			}
+			if r := math.Abs(ob.y - own); !math.IsNaN(r) {
+				low, high, total = append(low, weighted{at - r, ob.weight}), append(high, weighted{at + r, ob.weight}), total+ob.weight
+			}
+		}
+	}
+	const alpha = 0.1
+	up := (1 - alpha) * (total + 1) / total
+	if total == 0 || up > 1 {
+		return nil
+	}
+	lo, hi := weightedQuantiles(low, 1-up), weightedQuantiles(high, up)
+	return &[2]float64{1 + math.Exp(lo[0]), 1 + math.Exp(math.Min(hi[0], 12))}
+}
+
+// classes fills in the class probabilities beside their base rates.
+func (f *Fits) classes(d *draws, res *Result) {
+	limits := f.options.ClassLimits
+	below := 0.0
+	for k := range len(limits) + 1 {
+		c := Class{Name: className(limits, k), From: 1, Probability: math.NaN(), BaseRate: math.NaN()}
+		if k > 0 {
+			c.From = limits[k-1]
+		}
+		if len(d.mix.draws) > 0 {
+			upTo := 1.0
+			if k < len(limits) {
+				upTo = d.mix.below(limits[k])
+			}
+			c.Probability, below = upTo-below, upTo
+		}
+		if len(f.frame.clusters) > 0 {
+			c.BaseRate = f.base[k]
+		}
+		res.Classes = append(res.Classes, c)
+	}
+}
+
+// sensitivity is the first-order share of each input in the variance of
+// ln(P - 1): one input drawn, the others at their point values, averaged over
+// the explanations by their weights.
+func (f *Fits) sensitivity(t *Target, p *place, d *draws) []Sensitivity {
+	if len(d.mix.draws) == 0 {
+		return nil
+	}
+	total := map[string]float64{}
+	var mean, square float64
+	for k, ft := range f.fits {
+		if w := f.weights[k]; w > 0 {
+			v := f.variances(ft, d)
+			total["parameters of the fit"] += w * v["parameters"]
+			total["scatter between systems"] += w * v["residual"]
+			y := ft.value(&d.point, ft.beta)
+			mean, square = mean+w*y, square+w*y*y
+		}
+	}
+	total["choice of explanation"] = math.Max(0, square-mean*mean)
+	for name, which := range map[string]moves{"palaeolatitude": {lat: d.moves.lat}, "age": {age: d.moves.age}, "day length": {day: d.moves.day},
+		"slope not given": {slope: d.moves.slope}, "supply not given": {supply: d.moves.supply}} {
+		if which != (moves{}) {
+			total[name] = f.oneInput(t, p, d, which)
+		}
+	}
+	var out []Sensitivity
+	for name, share := range shares(total) {
+		out = append(out, Sensitivity{name, share})
+	}
+	slices.SortFunc(out, func(a, b Sensitivity) int {
+		return cmp.Or(cmp.Compare(b.Share, a.Share), cmp.Compare(a.Input, b.Input))
+	})
+	return out
+}
+
+// oneInput is the variance of ln(P - 1) when only the inputs in which move.
+func (f *Fits) oneInput(t *Target, p *place, d *draws, which moves) float64 {
+	const n = 400
+	all := make([]moments, len(f.fits))
+	var pcg rand.PCG
+	rng := rand.New(&pcg)
+	for j := range min(n, d.n) {
+		pcg.Seed(t.Seed, uint64(j))
+		u := rng.Float64()
+		at := p.draw(rng, which.age, which.day, which.lat)
+		in := d.point
+		in.sin, in.ratio = sinOf(at.lat), at.ratio
+		if at.age != p.age.Value {
+			in.state = stateAt(at.age)
+		}
+		d.donors.fill(f.frame, &in, u, which.slope, which.supply)
+		for k, ft := range f.fits {
+			if f.weights[k] > 0 {
+				all[k].add(ft.value(&in, ft.beta))
+			}
+		}
+	}
+	var v float64
+	for k := range all {
+		v += f.weights[k] * all[k].variance()
+	}
+	return v
+}

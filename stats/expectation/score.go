@@ -1,0 +1,210 @@
+package expectation
+
+import (
+	"math"
+	"math/rand/v2"
+	"slices"
+)
+
+// checkDraws is the number of draws for each left-out row when coverage is
+// checked.
+const checkDraws = 400
+
+// leftOutSamples are draws of P for one left-out row under one explanation,
+// made as a target's are, from fits that have not seen the row's cluster:
+// resamples that happen not to hold it, and residuals of the other clusters.
+func (t *fitted) leftOutSamples(i int, pool []float64, sets []int, rng *rand.Rand, out []float64) {
+	c := t.frame.obs[i].cluster
+	ones := t.frame.onesWithout(c)
+	for k := range out {
+		if ones > 0 && rng.Float64() < ones {
+			out[k] = 1
+			continue
+		}
+		beta := t.loo[c]
+		if len(sets) > 0 {
+			b := sets[rng.IntN(len(sets))]
+			beta = t.boot[b*t.p : (b+1)*t.p]
+		}
+		out[k] = 1 + math.Exp(t.mean(i, beta)+t.looS[c]*pool[rng.IntN(len(pool))])
+	}
+}
+
+// mean of row i: from its columns where it is used in the fit, else from its
+// inputs (a row with P = 1).
+func (t *fitted) mean(i int, beta []float64) float64 {
+	if t.x[i] == nil {
+		return t.value(&t.frame.obs[i].inputs, beta)
+	}
+	var m float64
+	for k, x := range t.x[i] {
+		m += x * beta[k]
+	}
+	return m
+}
+
+// onesWithout is the share of P = 1 in the clusters other than c.
+func (f *frame) onesWithout(c int) float64 {
+	if f.ones == 0 || len(f.clusters) < 2 {
+		return 0
+	}
+	g := float64(len(f.clusters))
+	var own float64
+	for i := f.start[c]; i < f.start[c+1]; i++ {
+		if f.obs[i].p == 1 {
+			own += f.obs[i].weight
+		}
+	}
+	return math.Max(0, (f.ones*g-own)/(g-1))
+}
+
+// setsWithout lists the parameter sets whose resample does not hold cluster c.
+func (t *fitted) setsWithout(c int, r *resampling) []int {
+	var out []int
+	for k, b := range t.setOf {
+		if r.counts[b][c] == 0 {
+			out = append(out, k)
+		}
+	}
+	return out
+}
+
+// nestedPool is the residual pool for cluster c from fits without c and,
+// where there are few clusters, without the residual's own cluster at once.
+func (t *fitted) nestedPool(c int, s *solver, without *cross) []float64 {
+	f := t.frame
+	resid := t.resid
+	if len(f.clusters) <= nestedClusters && t.loo[c] != nil {
+		resid = slices.Clone(t.resid)
+		beta := make([]float64, t.p)
+		for d := range f.clusters {
+			if d == c || t.per[d].n == 0 {
+				continue
+			}
+			without.reset()
+			without.sum(&t.total, 1)
+			without.sum(&t.per[c], -1)
+			without.sum(&t.per[d], -1)
+			if !s.factor(without, t.fixed) {
+				continue
+			}
+			s.solve(without.b, beta)
+			sd, _ := t.spread(without, s, beta, t.clusters-2)
+			for i := f.start[d]; i < f.start[d+1]; i++ {
+				if t.usable[i] && sd > 0 {
+					resid[i] = (f.obs[i].y - t.mean(i, beta)) / math.Sqrt(sd*sd+quadratic(t.looV[c], t.x[i]))
+				}
+			}
+		}
+	}
+	return t.poolOf(resid, c, make([]float64, 0, poolSize))
+}
+
+// checks are the left-out draws of all explanations, by explanation and row;
+// nil where the row cannot be predicted.
+type checks struct {
+	p  [][][]float64 // [explanation][row] sorted draws
+	in []*fitted
+}
+
+// leaveOutAll draws for every row and every fitted explanation.
+func leaveOutAll(f *frame, fits []*fitted, r *resampling, seed uint64) *checks {
+	ch := &checks{in: fits, p: make([][][]float64, len(fits))}
+	for k, t := range fits {
+		ch.p[k] = make([][]float64, len(f.obs))
+		if t.failure != "" {
+			continue
+		}
+		s, without := newSolver(t.p), newCross(t.p)
+		for c := range f.clusters {
+			if t.loo[c] == nil || t.looS[c] == 0 {
+				continue
+			}
+			pool, sets := t.nestedPool(c, s, &without), t.setsWithout(c, r)
+			if len(pool) == 0 {
+				continue
+			}
+			for i := f.start[c]; i < f.start[c+1]; i++ {
+				if !t.predictable(i) {
+					continue
+				}
+				out := make([]float64, checkDraws)
+				t.leftOutSamples(i, pool, sets, rand.New(rand.NewPCG(seed+1, uint64(i))), out)
+				slices.Sort(out)
+				ch.p[k][i] = out
+			}
+		}
+	}
+	return ch
+}
+
+// predictable is true for the rows an explanation can be checked on: those it
+// uses, and rows with P = 1 that hold what it looks at.
+func (t *fitted) predictable(i int) bool {
+	if t.usable[i] {
+		return true
+	}
+	ob := &t.frame.obs[i]
+	return ob.p == 1 && t.uses(ob) && t.columns(&ob.inputs, make([]float64, t.p))
+}
+
+// coverageOf is the share of left-out rows inside the 80 and 95 % limits,
+// each cluster and in it each system counted alike.
+func (ch *checks) coverageOf(f *frame, limits func(i int) (in80, in95, ok bool)) *Coverage {
+	var c80, c95, n float64
+	for i := range f.obs {
+		in80, in95, ok := limits(i)
+		if !ok {
+			continue
+		}
+		w := f.obs[i].weight
+		n += w
+		if in80 {
+			c80 += w
+		}
+		if in95 {
+			c95 += w
+		}
+	}
+	if n == 0 {
+		return nil
+	}
+	return &Coverage{C80: c80 / n, C95: c95 / n}
+}
+
+// alone is the coverage of one explanation by itself.
+func (ch *checks) alone(f *frame, k int) *Coverage {
+	return ch.coverageOf(f, func(i int) (bool, bool, bool) {
+		d := ch.p[k][i]
+		if d == nil {
+			return false, false, false
+		}
+		p := f.obs[i].p
+		return inside(p, quantileOf(d, 0.1), quantileOf(d, 0.9)), inside(p, quantileOf(d, 0.025), quantileOf(d, 0.975)), true
+	})
+}
+
+// together is the coverage of the combined expectation, each cluster's rows
+// checked with the weights found without it.
+func (ch *checks) together(f *frame, weights [][]float64) *Coverage {
+	return ch.coverageOf(f, func(i int) (bool, bool, bool) {
+		var m mixture
+		for k := range ch.in {
+			w := weights[f.obs[i].cluster][k]
+			if w == 0 {
+				continue
+			}
+			if ch.p[k][i] == nil {
+				return false, false, false
+			}
+			m.add(ch.p[k][i], w)
+		}
+		if len(m.draws) == 0 {
+			return false, false, false
+		}
+		p := f.obs[i].p
+		return inside(p, m.quantile(0.1), m.quantile(0.9)), inside(p, m.quantile(0.025), m.quantile(0.975)), true
+	})
+}
+
+func inside(p, lo, hi float64) bool { return p >= lo && p <= hi }
