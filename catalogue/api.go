@@ -1,14 +1,9 @@
 package catalogue
 
-import (
-	"context"
-	"io"
-	"net/url"
-	"time"
-)
+import "time"
 
-// This file fixes the outline other rooms build against; bodies live beside
-// their nouns.
+// This file holds the types other rooms build against; the methods of Store
+// live beside their nouns.
 
 // System is one channel system with its measurements.
 type System struct {
@@ -87,16 +82,34 @@ type Account struct {
 // Submission is a contributed change waiting for a curator.
 type Submission struct {
 	ID         int64
-	By         Account
+	By         Account // zero for the command line
 	At         time.Time
+	UpdatedAt  time.Time
 	State      string // draft, submitted, returned, accepted, withdrawn
+	Batch      int64  // the imported file it came with, 0 for a form
 	Row        Row    // as proposed
 	Current    *Row   // the accepted record it would change, nil when new
 	Changes    []FieldChange
 	Overrides  map[string]string // warning key -> reason
 	Comment    string            // the curator's latest word
-	Messages   []Message
-	Centreline string // GeoJSON, "" if none
+	Messages   []Message         // filled for one submission, not in lists
+	Centreline string            // GeoJSON, "" if none
+
+	// Typed keeps the cells of a draft that cannot be read yet, as typed:
+	// column -> text.
+	Typed map[string]string
+	// Settings and window sinuosities of Centreline, as in Centreline.
+	CentrelineSettings    string
+	CentrelineSinuosities []float64
+	// BaseRevision is the revision of the record the author saw (given to Submit
+	// so that a change made in between is noticed; 0 = the present one);
+	// CurrentRevision that of Current.
+	BaseRevision    int64
+	CurrentRevision int64
+	// Base is the record as the author saw it, nil when new.
+	Base *Row
+	// Since are the changes others made to the record after the author saw it.
+	Since []FieldChange
 }
 
 // FieldChange is one field before and after, as text.
@@ -124,6 +137,8 @@ type ImportOptions struct {
 	By      int64 // account, 0 = the command line
 	Partial bool  // keep the good rows although others are bad
 	Why     string
+	// Progress, if set, is told the number of rows read so far, now and then.
+	Progress func(rows int)
 }
 
 // ImportReport says what an import did.
@@ -134,6 +149,7 @@ type ImportReport struct {
 	Warnings                []RowProblem
 	Conversions             []RowProblem // units converted, visibly
 	UnknownColumns          []string
+	Batch                   int64 // the batch waiting for review, 0 when published
 }
 
 // RowProblem is one remark on one cell of an imported file.
@@ -144,57 +160,3 @@ type RowProblem struct {
 	Message  string
 	Expected string
 }
-
-// Catalogue is the outline of *Store. It exists to be read: nothing takes it
-// as a parameter.
-type Catalogue interface {
-	Close() error
-	// Revision grows with every accepted change: the key of every cache.
-	Revision(ctx context.Context) (int64, error)
-	// Rows returns all accepted measurements under the filter (no paging),
-	// sorted; RowsPage one page of them with the total.
-	Rows(ctx context.Context, f Filter) ([]Row, error)
-	EachRow(ctx context.Context, f Filter, visit func(Row) error) error
-	// Systems returns one page of systems with the total number of systems.
-	Systems(ctx context.Context, f Filter) ([]System, int, error)
-	Facets(ctx context.Context, f Filter) ([]Facet, error)
-	System(ctx context.Context, slug string) (*Detail, error)
-	Invented(ctx context.Context) (rows int, err error)
-
-	Import(ctx context.Context, r io.Reader, o ImportOptions) (*ImportReport, error)
-	Export(ctx context.Context, w io.Writer, f Filter) (rows int, err error)
-
-	AddAccount(ctx context.Context, name, credit, role, password string) (*Account, error)
-	SetPassword(ctx context.Context, name, password string) error
-	SetRole(ctx context.Context, name, role string) error
-	Accounts(ctx context.Context) ([]Account, error)
-	Account(ctx context.Context, id int64) (*Account, error)
-	Authenticate(ctx context.Context, name, password string) (*Account, error)
-
-	Check(ctx context.Context, row Row) ([]Finding, error)
-	SaveDraft(ctx context.Context, by int64, s Submission) (id int64, err error)
-	Submit(ctx context.Context, by int64, s Submission) (id int64, err error)
-	Submissions(ctx context.Context, state string, by int64) ([]Submission, error)
-	Submission(ctx context.Context, id int64) (*Submission, error)
-	Comment(ctx context.Context, id, by int64, text string) error
-	Return(ctx context.Context, id, by int64, comment string) error
-	Accept(ctx context.Context, id, by int64, comment string) error
-	Withdraw(ctx context.Context, id, by int64) error
-
-	AddCentreline(ctx context.Context, c Centreline, by int64, why string) (int64, error)
-
-	// Session storage for scs: tokens are stored hashed.
-	SessionFind(ctx context.Context, token string) (data []byte, found bool, err error)
-	SessionCommit(ctx context.Context, token string, data []byte, expiry time.Time) error
-	SessionDelete(ctx context.Context, token string) error
-
-	Backup(ctx context.Context, path string) error
-}
-
-// ParseFilter reads the filter parameters of the contract out of a query and
-// returns the names it used. A bad value is an Invalid Error naming the
-// parameter and what was expected.
-//
-//	func ParseFilter(q url.Values) (Filter, error)
-//	func (f Filter) Values() url.Values // the way back, only what is set
-var _ url.Values

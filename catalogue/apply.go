@@ -3,8 +3,7 @@ package catalogue
 import (
 	"context"
 	"database/sql"
-	"strconv"
-	"strings"
+	"errors"
 )
 
 // applier writes accepted rows inside one transaction: one change set.
@@ -17,7 +16,8 @@ type applier struct {
 	from  int64 // submission, 0 = none
 	owner int64 // author of the submission, 0 = same or none
 
-	set   int64 // change set, made at the first change
+	agree *agreement // of the rows of one file about their systems, or nil
+	set   int64      // change set, made at the first change
 	stmts map[string]*sql.Stmt
 }
 
@@ -93,203 +93,126 @@ func (a *applier) revise(ctx context.Context, record, action, field, before, aft
 		a.set, record, action, field, before, after)
 }
 
+// examined is a row beside what is stored: where it belongs and what is odd.
+type examined struct {
+	current  *Row // the accepted measurement of that id, nil when new
+	meta     rowMeta
+	systemID int64 // 0 = a new system
+	named    bool  // the row named its system by slug
+	system   *Row  // columns of the system as stored, nil when new
+	findings []Finding
+	twin     string // id of an accepted measurement equal in all that is said
+}
+
 // apply writes one row: a new measurement, or the changed columns of a known
 // one. Columns of the system change the system. The row comes back as stored,
-// with its ids. Blank choices mean "not said".
+// with its ids. Blank choices mean "not said". Warnings do not stop it.
 func (a *applier) apply(ctx context.Context, p *Row) (outcome, error) {
-	current, meta, err := rowOf(ctx, a.tx, p.Measurement)
+	ex, err := a.locate(ctx, p)
 	if err != nil {
 		return 0, err
 	}
-	systemID, system, err := a.place(ctx, p, current)
-	if err != nil {
+	if err := hardError(append(ex.findings, CheckRow(p, nil)...)); err != nil {
 		return 0, err
 	}
-	if system != nil && (current == nil || current.System != p.System) {
-		inherit(p, system)
+	return a.put(ctx, p, ex)
+}
+
+// examine locates a row and looks for all that is odd about it. It writes
+// nothing.
+func (a *applier) examine(ctx context.Context, p *Row) (examined, error) {
+	ex, err := a.locate(ctx, p)
+	if err != nil {
+		return ex, err
+	}
+	ex.findings = append(ex.findings, CheckRow(p, a.s.onLand)...)
+	if hardError(ex.findings) != nil {
+		return ex, nil
+	}
+	if ex.current == nil {
+		for _, c := range systemChanges(ex.system, p) {
+			ex.findings = append(ex.findings, systemChangeFinding(c, ex.system, p))
+		}
+	}
+	near, err := a.neighbours(ctx, p)
+	if err != nil || len(near) == 0 {
+		return ex, err
+	}
+	if ex.current == nil {
+		if ex.twin, err = a.twin(ctx, p, near); err != nil {
+			return ex, err
+		}
+	}
+	ex.findings = append(ex.findings, nearDuplicate(near[0]))
+	return ex, nil
+}
+
+// locate finds what a row belongs to, fills in what it does not say and
+// normalises it.
+func (a *applier) locate(ctx context.Context, p *Row) (ex examined, err error) {
+	if ex.current, ex.meta, err = a.rowOf(ctx, p.Measurement); err != nil {
+		return ex, err
+	}
+	ex.named = p.System != ""
+	ex.systemID, ex.system, err = a.place(ctx, p, ex.current)
+	var refused *Error
+	if errors.As(err, &refused) && refused.Code == Invalid {
+		ex.findings = append(ex.findings, Finding{Column: refused.Field, Key: refused.Field + "_allowed", Message: refused.Message, Expected: refused.Expected, Hard: true})
+		err = nil
+	}
+	if err != nil {
+		return ex, err
+	}
+	if a.agree != nil {
+		ex.findings = append(ex.findings, a.agree.reconcile(p, &ex)...)
+	}
+	if ex.system != nil && (ex.current == nil || ex.current.System != p.System) {
+		inherit(p, ex.system)
 	}
 	p.Normalise()
-	if err := hardError(CheckRow(p, nil)); err != nil {
-		return 0, err
-	}
-	if systemID == 0 {
-		if systemID, err = a.createSystem(ctx, p); err != nil {
+	return ex, nil
+}
+
+// put writes an examined row.
+func (a *applier) put(ctx context.Context, p *Row, ex examined) (outcome, error) {
+	var err error
+	if ex.systemID == 0 {
+		if ex.systemID, err = a.createSystem(ctx, p); err != nil {
 			return 0, err
 		}
-	} else if err := a.changeSystem(ctx, systemID, system, p); err != nil {
+	} else if err := a.changeSystem(ctx, ex.systemID, ex.system, p); err != nil {
 		return 0, err
 	}
-	if current == nil {
-		return rowNew, a.createMeasurement(ctx, p, systemID)
+	if ex.current == nil {
+		return rowNew, a.createMeasurement(ctx, p, ex.systemID)
 	}
-	changed, err := a.changeMeasurement(ctx, meta, current, p, systemID)
+	changed, err := a.changeMeasurement(ctx, ex.meta, ex.current, p, ex.systemID)
 	if err != nil {
 		return 0, err
 	}
-	if !changed && len(systemChanges(system, p)) == 0 {
+	if !changed && len(systemChanges(ex.system, p)) == 0 {
 		return rowIdentical, nil
 	}
 	return rowChanged, nil
 }
 
-// place finds the system a row belongs to: named by its slug, else that of the
-// known measurement, else by equal name. It sets p.System; id 0 = new system.
-// The returned row holds the system's columns.
-func (a *applier) place(ctx context.Context, p, current *Row) (int64, *Row, error) {
-	if p.System == "" && current != nil {
-		p.System = current.System
+// rowOf is the function of that name with a kept statement.
+func (a *applier) rowOf(ctx context.Context, measurement string) (*Row, rowMeta, error) {
+	if measurement == "" {
+		return nil, rowMeta{}, nil
 	}
-	if p.System != "" {
-		if slug := Slug(p.System); slug != p.System {
-			p.System = slug
-		}
-		id, err := a.number(ctx, `SELECT id FROM systems WHERE slug = ?`, p.System)
-		if err != nil {
-			return 0, nil, err
-		}
-		if id == 0 && reservedSlugs[p.System] {
-			p.System, err = freeSlug(ctx, a.tx, p.System)
-		}
-		if err != nil || id == 0 {
-			return 0, nil, err
-		}
-		y, err := a.systemRow(ctx, id)
-		return id, y, err
-	}
-	name := CleanText(p.SystemName)
-	count, err := a.number(ctx, `SELECT count(*) FROM systems WHERE system_name = ?`, name)
+	return a.oneRow(ctx, "m.measurement", measurement)
+}
+
+func (a *applier) oneRow(ctx context.Context, column string, key any) (*Row, rowMeta, error) {
+	st, err := a.prepared(ctx, "SELECT "+rowColumns+fromRows+" WHERE "+column+" = ?")
 	if err != nil {
-		return 0, nil, err
-	}
-	switch {
-	case count > 1:
-		return 0, nil, &Error{Code: Invalid, Field: "system", Message: "there are several systems named " + strconv.Quote(Clip(name)), Expected: "the slug of one of them in the column system"}
-	case count == 0:
-		p.System, err = freeSlug(ctx, a.tx, name)
-		return 0, nil, err
-	}
-	id, err := a.number(ctx, `SELECT id FROM systems WHERE system_name = ?`, name)
-	if err != nil {
-		return 0, nil, err
-	}
-	y, err := a.systemRow(ctx, id)
-	if err == nil {
-		p.System, p.SystemName = y.System, y.SystemName
-	}
-	return id, y, err
-}
-
-// systemColumns are the columns of the whole system but its slug.
-var systemColumns = columnsOf(TableSystems)
-
-// measurementColumns are those of one measurement but its id.
-var measurementColumns = columnsOf(TableMeasurements)
-
-func columnsOf(table string) []*Column {
-	var out []*Column
-	for i := range Columns {
-		if c := &Columns[i]; c.Table == table && c.Name != "system" && c.Name != "measurement" {
-			out = append(out, c)
-		}
-	}
-	return out
-}
-
-func names(cols []*Column) []string {
-	out := make([]string, len(cols))
-	for i, c := range cols {
-		out[i] = c.Name
-	}
-	return out
-}
-
-// value is what the column of a row is in SQL.
-func (c *Column) value(r *Row) any {
-	if c.num != nil {
-		if n := *c.num(r); n.Valid {
-			return n.V
-		}
-		return nil
-	}
-	return *c.text(r)
-}
-
-var selectSystem = `SELECT slug, ` + strings.Join(names(systemColumns), ", ") + ` FROM systems WHERE id = ?`
-
-func (a *applier) systemRow(ctx context.Context, id int64) (*Row, error) {
-	st, err := a.prepared(ctx, selectSystem)
-	if err != nil {
-		return nil, err
+		return nil, rowMeta{}, err
 	}
 	var r Row
-	dest := []any{&r.System}
-	for _, c := range systemColumns {
-		if c.num != nil {
-			dest = append(dest, c.num(&r))
-		} else {
-			dest = append(dest, c.text(&r))
-		}
+	meta, err := newRowScanner().scan(st.QueryRowContext(ctx, key), &r)
+	if errors.Is(err, sql.ErrNoRows) {
+		return nil, rowMeta{}, nil
 	}
-	return &r, st.QueryRowContext(ctx, id).Scan(dest...)
-}
-
-// inherit fills what a new row of a known system does not say.
-func inherit(p, system *Row) {
-	for _, c := range systemColumns {
-		if c.num != nil {
-			if !c.num(p).Valid {
-				*c.num(p) = *c.num(system)
-			}
-			continue
-		}
-		if v := *c.text(p); v == "" || (v == "unknown" && c.Kind == KindChoice) {
-			*c.text(p) = *c.text(system)
-		}
-	}
-}
-
-func systemChanges(before, after *Row) []*Column {
-	var out []*Column
-	if before == nil {
-		return nil
-	}
-	for _, c := range systemColumns {
-		if !c.same(before, after) {
-			out = append(out, c)
-		}
-	}
-	return out
-}
-
-var insertSystem = `INSERT INTO systems (slug, ` + strings.Join(names(systemColumns), ", ") + `, created_at, updated_at, revision) VALUES (?` + strings.Repeat(", ?", len(systemColumns)+3) + `)`
-
-func (a *applier) createSystem(ctx context.Context, p *Row) (int64, error) {
-	rev, err := a.revise(ctx, "system:"+p.System, "create", "", "", p.SystemName)
-	if err != nil {
-		return 0, err
-	}
-	args := []any{p.System}
-	for _, c := range systemColumns {
-		args = append(args, c.value(p))
-	}
-	return a.exec(ctx, insertSystem, append(args, a.at, a.at, rev)...)
-}
-
-func (a *applier) changeSystem(ctx context.Context, id int64, before, after *Row) error {
-	changes := systemChanges(before, after)
-	if len(changes) == 0 {
-		return nil
-	}
-	var rev int64
-	sets, args := []string{}, []any{}
-	for _, c := range changes {
-		var err error
-		if rev, err = a.revise(ctx, "system:"+before.System, "change", c.Name, c.Get(before), c.Get(after)); err != nil {
-			return err
-		}
-		sets = append(sets, c.Name+" = ?")
-		args = append(args, c.value(after))
-	}
-	_, err := a.tx.ExecContext(ctx, `UPDATE systems SET `+strings.Join(sets, ", ")+`, updated_at = ?, revision = ? WHERE id = ?`, append(args, a.at, rev, id)...)
-	return err
+	return &r, meta, err
 }

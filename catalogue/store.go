@@ -21,7 +21,6 @@ import (
 
 // Store is an open catalogue. Its methods may be called from many goroutines.
 type Store struct {
-	Catalogue
 	path   string
 	w      *sql.DB // one connection, immediate transactions; nil when read only
 	r      *sql.DB // a pool of read-only connections
