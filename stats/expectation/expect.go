@@ -95,7 +95,7 @@ func Fit(ctx context.Context, rows []stats.Row, o Options) (*Fits, error) {
 		func(r *stats.Row) bool { return above0(r.ValleySlope) },
 		func(r *stats.Row) bool { return above0(r.ChannelWidthM) && above0(r.RadiusM) },
 	} {
-		out.sized[k] = sizesOf(rows, o.Cluster, has)
+		out.sized[k] = sizesOf(f.all, o.Cluster, has)
 	}
 	return out, ctx.Err()
 }
