@@ -77,7 +77,7 @@ func latitudePredictor(r *Row, name, time string) derived {
 	omega := earth.Omega
 	if isOld(r, time) {
 		var err error
-		if omega, err = omegaAt(r.AgeMa); err != nil {
+		if omega, err = earth.OmegaAt(r.AgeMa); err != nil {
 			return derived{why: "age outside the history of the Earth's rotation"}
 		}
 	}
