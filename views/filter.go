@@ -13,7 +13,7 @@ type filterRange struct{ name, label, min, max, from, to string }
 
 func filterRanges(f catalogue.Filter) []filterRange {
 	r := func(name, label string, lo, hi catalogue.Number) filterRange {
-		return filterRange{name, label, name + "_min", name + "_max", numberText(lo), numberText(hi)}
+		return filterRange{name, label, name + "_min", name + "_max", typedNumber(lo), typedNumber(hi)}
 	}
 	return []filterRange{
 		r("lat", "Latitude (degrees, north positive)", f.LatMin, f.LatMax),
@@ -25,8 +25,8 @@ func filterRanges(f catalogue.Filter) []filterRange {
 	}
 }
 
-// numberText writes a number so that reading it gives the same double.
-func numberText(n catalogue.Number) string {
+// typedNumber writes a number so that reading it gives the same double.
+func typedNumber(n catalogue.Number) string {
 	if !n.Valid {
 		return ""
 	}
