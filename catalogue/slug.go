@@ -42,7 +42,8 @@ func Slug(name string) string {
 	if b.Len() == 0 {
 		return "system"
 	}
-	return strings.Trim(b.String(), "-")
+	s := b.String()
+	return strings.Trim(s[:min(len(s), maxSlug-10)], "-") // room for a number
 }
 
 // freeSlug returns the slug of name, numbered when it is taken. Slugs are given

@@ -3,7 +3,7 @@
 -- change ever accepted. Times are RFC 3339 text in UTC.
 
 CREATE TABLE accounts (
-  id INTEGER PRIMARY KEY,
+  id INTEGER PRIMARY KEY, -- internal number
   name TEXT NOT NULL UNIQUE COLLATE NOCASE CHECK (length(name) BETWEEN 1 AND 64), -- sign-in name
   credit TEXT NOT NULL CHECK (length(credit) BETWEEN 1 AND 200), -- public credit line
   role TEXT NOT NULL CHECK (role IN ('contributor', 'curator', 'keeper')), -- what the person may do; each includes the one before
@@ -29,14 +29,14 @@ CREATE TABLE one_time_tokens (
 ) STRICT, WITHOUT ROWID;
 
 CREATE TABLE sources (
-  id INTEGER PRIMARY KEY,
+  id INTEGER PRIMARY KEY, -- internal number
   citation TEXT NOT NULL CHECK (length(citation) BETWEEN 1 AND 4000), -- the paper or survey, as cited
   doi TEXT NOT NULL DEFAULT '' CHECK (length(doi) <= 300), -- its DOI without a resolver, '' if none
   UNIQUE (citation, doi)
 ) STRICT;
 
 CREATE TABLE systems (
-  id INTEGER PRIMARY KEY,
+  id INTEGER PRIMARY KEY, -- internal number
   slug TEXT NOT NULL UNIQUE CHECK (length(slug) BETWEEN 1 AND 80 AND slug NOT GLOB '*[^a-z0-9-]*'), -- stable short name, used in addresses
   system_name TEXT NOT NULL COLLATE NOCASE CHECK (length(system_name) BETWEEN 1 AND 200), -- Name of the channel system.
   other_names TEXT NOT NULL DEFAULT '' CHECK (length(other_names) <= 500), -- Other names in use, separated by semicolons.
@@ -57,7 +57,7 @@ CREATE INDEX systems_name ON systems (system_name);
 CREATE INDEX systems_parent ON systems (parent_deposit);
 
 CREATE TABLE measurements (
-  id INTEGER PRIMARY KEY,
+  id INTEGER PRIMARY KEY, -- internal number
   measurement TEXT NOT NULL UNIQUE CHECK (length(measurement) BETWEEN 1 AND 64 AND measurement NOT GLOB '*[^A-Za-z0-9_.-]*'), -- stable public id, as m000123
   system_id INTEGER NOT NULL REFERENCES systems (id), -- the system it belongs to
   source_id INTEGER NOT NULL REFERENCES sources (id), -- where sinuosity comes from
@@ -129,7 +129,7 @@ CREATE INDEX measurements_system ON measurements (system_id, grade_rank, id DESC
 CREATE INDEX measurements_near ON measurements (source_id, sinuosity, latitude_deg);
 
 CREATE TABLE centrelines (
-  id INTEGER PRIMARY KEY,
+  id INTEGER PRIMARY KEY, -- internal number
   system_id INTEGER NOT NULL REFERENCES systems (id), -- the system the line runs along
   measurement_id INTEGER REFERENCES measurements (id), -- the measurement made from it, NULL if none
   line TEXT NOT NULL CHECK (json_valid(line)), -- GeoJSON LineString, upstream to downstream; third coordinate elevation in m, up positive
@@ -141,14 +141,14 @@ CREATE INDEX centrelines_system ON centrelines (system_id);
 CREATE INDEX centrelines_measurement ON centrelines (measurement_id);
 
 CREATE TABLE batches (
-  id INTEGER PRIMARY KEY,
+  id INTEGER PRIMARY KEY, -- internal number
   account_id INTEGER REFERENCES accounts (id), -- who sent it, NULL for the command line
   why TEXT NOT NULL DEFAULT '', -- what the file is, in the sender's words
   created_at TEXT NOT NULL -- when it arrived
 ) STRICT;
 
 CREATE TABLE submissions (
-  id INTEGER PRIMARY KEY,
+  id INTEGER PRIMARY KEY, -- internal number
   batch_id INTEGER REFERENCES batches (id), -- the imported file it came with, NULL for a form
   account_id INTEGER REFERENCES accounts (id), -- whose it is, NULL for the command line
   state TEXT NOT NULL CHECK (state IN ('draft', 'submitted', 'returned', 'accepted', 'withdrawn')), -- where it stands
@@ -172,7 +172,7 @@ CREATE INDEX submissions_batch ON submissions (batch_id);
 CREATE INDEX submissions_fingerprint ON submissions (fingerprint) WHERE state = 'submitted';
 
 CREATE TABLE messages (
-  id INTEGER PRIMARY KEY,
+  id INTEGER PRIMARY KEY, -- internal number
   submission_id INTEGER NOT NULL REFERENCES submissions (id) ON DELETE CASCADE, -- what it is about
   account_id INTEGER REFERENCES accounts (id), -- who wrote it, NULL for the command line
   at TEXT NOT NULL, -- when
@@ -182,7 +182,7 @@ CREATE INDEX messages_submission ON messages (submission_id, id);
 
 -- One change set is what was accepted in one transaction.
 CREATE TABLE change_sets (
-  id INTEGER PRIMARY KEY,
+  id INTEGER PRIMARY KEY, -- internal number
   at TEXT NOT NULL, -- when it was accepted
   account_id INTEGER REFERENCES accounts (id), -- who accepted it, NULL for the command line
   why TEXT NOT NULL DEFAULT '', -- the reason given

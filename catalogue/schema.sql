@@ -1,0 +1,277 @@
+-- The whole schema as the migrations leave it. Generated: go test ./catalogue -run Schema -update
+
+CREATE TABLE accounts (
+  id INTEGER PRIMARY KEY, -- internal number
+  name TEXT NOT NULL UNIQUE COLLATE NOCASE CHECK (length(name) BETWEEN 1 AND 64), -- sign-in name
+  credit TEXT NOT NULL CHECK (length(credit) BETWEEN 1 AND 200), -- public credit line
+  role TEXT NOT NULL CHECK (role IN ('contributor', 'curator', 'keeper')), -- what the person may do; each includes the one before
+  orcid TEXT NOT NULL DEFAULT '' CHECK (length(orcid) IN (0, 19)), -- 0000-0000-0000-000X, '' if not given
+  password_hash TEXT NOT NULL, -- argon2id in PHC form
+  disabled INTEGER NOT NULL DEFAULT 0 CHECK (disabled IN (0, 1)), -- 1 = may not sign in
+  created_at TEXT NOT NULL -- when the account was made
+) STRICT;
+
+CREATE TABLE batches (
+  id INTEGER PRIMARY KEY, -- internal number
+  account_id INTEGER REFERENCES accounts (id), -- who sent it, NULL for the command line
+  why TEXT NOT NULL DEFAULT '', -- what the file is, in the sender's words
+  created_at TEXT NOT NULL -- when it arrived
+) STRICT;
+
+CREATE TABLE centrelines (
+  id INTEGER PRIMARY KEY, -- internal number
+  system_id INTEGER NOT NULL REFERENCES systems (id), -- the system the line runs along
+  measurement_id INTEGER REFERENCES measurements (id), -- the measurement made from it, NULL if none
+  line TEXT NOT NULL CHECK (json_valid(line)), -- GeoJSON LineString, upstream to downstream; third coordinate elevation in m, up positive
+  settings TEXT NOT NULL DEFAULT '' CHECK (settings = '' OR json_valid(settings)), -- planform settings the numbers were made with, JSON
+  sinuosities TEXT NOT NULL DEFAULT '[]' CHECK (json_valid(sinuosities)), -- sinuosity of each window, JSON array
+  created_at TEXT NOT NULL -- when it was stored
+) STRICT;
+
+CREATE INDEX centrelines_measurement ON centrelines (measurement_id);
+
+CREATE INDEX centrelines_system ON centrelines (system_id);
+
+CREATE TABLE change_sets (
+  id INTEGER PRIMARY KEY, -- internal number
+  at TEXT NOT NULL, -- when it was accepted
+  account_id INTEGER REFERENCES accounts (id), -- who accepted it, NULL for the command line
+  why TEXT NOT NULL DEFAULT '', -- the reason given
+  submission_id INTEGER REFERENCES submissions (id), -- what it came from, NULL for a direct import
+  author_id INTEGER REFERENCES accounts (id) -- whose contribution it was, NULL if the same or unknown
+) STRICT;
+
+CREATE TABLE counters (
+  name TEXT PRIMARY KEY, -- what is counted
+  value INTEGER NOT NULL -- last number given out
+) STRICT, WITHOUT ROWID;
+
+CREATE TABLE measurements (
+  id INTEGER PRIMARY KEY, -- internal number
+  measurement TEXT NOT NULL UNIQUE CHECK (length(measurement) BETWEEN 1 AND 64 AND measurement NOT GLOB '*[^A-Za-z0-9_.-]*'), -- stable public id, as m000123
+  system_id INTEGER NOT NULL REFERENCES systems (id), -- the system it belongs to
+  source_id INTEGER NOT NULL REFERENCES sources (id), -- where sinuosity comes from
+  setting TEXT NOT NULL CHECK (setting IN ('fan', 'slope', 'rise', 'trench', 'foredeep', 'minibasin', 'deep_ocean', 'non_margin', 'river_valley', 'unknown')), -- Physiographic setting of the measured reach.
+  burial TEXT NOT NULL CHECK (burial IN ('seafloor', 'buried', 'outcrop')), -- On today's sea floor, buried, or in outcrop.
+  activity TEXT NOT NULL CHECK (activity IN ('active', 'relict', 'unknown')), -- Whether flows use it today.
+  confinement TEXT NOT NULL CHECK (confinement IN ('confined', 'levee_confined', 'unconfined', 'unknown')), -- What keeps the channel in place.
+  aggradation TEXT NOT NULL CHECK (aggradation IN ('aggrading', 'stable', 'incising', 'unknown')), -- Whether the channel floor was rising or cutting down.
+  structural_deflection TEXT NOT NULL CHECK (structural_deflection IN ('yes', 'no', 'unknown')), -- Whether structures steer the course.
+  grain TEXT NOT NULL CHECK (grain IN ('mud', 'mud_sand', 'sand', 'gravel', 'unknown')), -- Dominant grain size class.
+  latitude_deg REAL NOT NULL CHECK (latitude_deg BETWEEN -90 AND 90), -- degrees; Latitude of the measured reach, WGS84, north positive.
+  longitude_deg REAL NOT NULL CHECK (longitude_deg BETWEEN -180 AND 360), -- degrees; Longitude of the measured reach, WGS84, east positive.
+  start_latitude_deg REAL CHECK (start_latitude_deg BETWEEN -90 AND 90), -- degrees; Latitude of the upstream end of the reach.
+  start_longitude_deg REAL CHECK (start_longitude_deg BETWEEN -180 AND 360), -- degrees; Longitude of the upstream end of the reach.
+  end_latitude_deg REAL CHECK (end_latitude_deg BETWEEN -90 AND 90), -- degrees; Latitude of the downstream end of the reach.
+  end_longitude_deg REAL CHECK (end_longitude_deg BETWEEN -180 AND 360), -- degrees; Longitude of the downstream end of the reach.
+  water_depth_m REAL CHECK (water_depth_m BETWEEN -1e12 AND 1e12), -- m; Water depth over the reach, positive down.
+  age_ma REAL CHECK (age_ma BETWEEN 0 AND 4600), -- Ma; Age of the channel; empty = today's sea floor.
+  age_min_ma REAL CHECK (age_min_ma BETWEEN 0 AND 4600), -- Ma; Youngest age allowed by the data.
+  age_max_ma REAL CHECK (age_max_ma BETWEEN 0 AND 4600), -- Ma; Oldest age allowed by the data.
+  unit TEXT NOT NULL DEFAULT '' CHECK (length(unit) <= 100), -- Chronostratigraphic unit, as Maastrichtian.
+  age_basis TEXT NOT NULL DEFAULT '' CHECK (length(age_basis) <= 500), -- What the age rests on: biostratigraphy, seismic tie, dating.
+  palaeolatitude_deg REAL CHECK (palaeolatitude_deg BETWEEN -90 AND 90), -- degrees; Latitude at the time of deposition, north positive.
+  palaeolatitude_se_deg REAL CHECK (palaeolatitude_se_deg BETWEEN 0 AND 180), -- degrees; One standard error of the palaeolatitude.
+  palaeolatitude_method TEXT NOT NULL CHECK (palaeolatitude_method IN ('', 'given', 'inclination', 'pole', 'rotation')), -- How the palaeolatitude was found; empty when there is none.
+  plate TEXT NOT NULL DEFAULT '' CHECK (length(plate) <= 100), -- Plate whose pole or rotation was used.
+  pole_table TEXT NOT NULL DEFAULT '' CHECK (length(pole_table) <= 200), -- Table of poles or rotations that was used.
+  reach TEXT NOT NULL DEFAULT '' CHECK (length(reach) <= 200), -- Name of the measured reach.
+  measured_line TEXT NOT NULL CHECK (measured_line IN ('thalweg', 'centreline', 'levee_crest', 'unknown')), -- Which line was measured: levee crests read straighter than thalwegs.
+  valley_line TEXT NOT NULL CHECK (valley_line IN ('end_to_end', 'inflections', 'axis', 'unknown')), -- How the valley length was taken.
+  sinuosity REAL NOT NULL CHECK (sinuosity BETWEEN 1 AND 1e12), -- Channel length over valley length, 1 or more.
+  sinuosity_kind TEXT NOT NULL CHECK (sinuosity_kind IN ('peak', 'p90', 'mean', 'bend', 'reach', 'unknown')), -- Peak, 90th percentile or mean of windows, one bend, or the whole reach.
+  sinuosity_se REAL CHECK (sinuosity_se BETWEEN 0 AND 1e12), -- One standard error of the sinuosity.
+  window_m REAL CHECK (window_m > 0 AND window_m <= 1e12), -- m; Length of the window the sinuosity was taken in.
+  windows REAL CHECK (windows BETWEEN 1 AND 1e9 AND windows = round(windows)), -- Number of windows the value was picked from: a peak grows with it.
+  vertex_spacing_m REAL CHECK (vertex_spacing_m > 0 AND vertex_spacing_m <= 1e12), -- m; Spacing of the vertices of the measured line.
+  wavelength_m REAL CHECK (wavelength_m > 0 AND wavelength_m <= 1e12), -- m; Meander wavelength, two bends.
+  amplitude_m REAL CHECK (amplitude_m > 0 AND amplitude_m <= 1e12), -- m; Meander amplitude.
+  radius_m REAL CHECK (radius_m > 0 AND radius_m <= 1e12), -- m; Radius of curvature of the bends.
+  reach_length_m REAL CHECK (reach_length_m > 0 AND reach_length_m <= 1e12), -- m; Length of the measured reach along the channel.
+  valley_slope REAL CHECK (valley_slope BETWEEN -1e12 AND 1e12), -- m/m; Slope of the valley floor over the same reach, down positive.
+  valley_slope_se REAL CHECK (valley_slope_se BETWEEN 0 AND 1e12), -- m/m; One standard error of the valley slope.
+  slope_kind TEXT NOT NULL CHECK (slope_kind IN ('valley', 'regional', 'unknown')), -- Slope of the valley beside the channel, or of the region.
+  slope_state TEXT NOT NULL CHECK (slope_state IN ('present', 'restored')), -- Slope as it is today, or restored to the time of deposition.
+  channel_slope REAL CHECK (channel_slope BETWEEN -1e12 AND 1e12), -- m/m; Slope along the channel; not used as a predictor.
+  channel_width_m REAL CHECK (channel_width_m > 0 AND channel_width_m <= 1e12), -- m; Bankfull width, levee crest to levee crest.
+  channel_depth_m REAL CHECK (channel_depth_m > 0 AND channel_depth_m <= 1e12), -- m; Bankfull depth, levee crest to thalweg.
+  levee_left_m REAL CHECK (levee_left_m BETWEEN -1e12 AND 1e12), -- m; Height of the left levee above the channel floor, looking downstream.
+  levee_right_m REAL CHECK (levee_right_m BETWEEN -1e12 AND 1e12), -- m; Height of the right levee above the channel floor, looking downstream.
+  net_to_gross REAL CHECK (net_to_gross BETWEEN 0 AND 1), -- Sand thickness over total thickness, 0 to 1.
+  stacking TEXT NOT NULL CHECK (stacking IN ('vertical', 'lateral', 'mixed', 'unknown')), -- How channel fills stack.
+  lateral_accretion TEXT NOT NULL CHECK (lateral_accretion IN ('yes', 'no', 'unknown')), -- Whether lateral accretion packages are seen.
+  survey TEXT NOT NULL CHECK (survey IN ('multibeam', 'sidescan', 'seismic_3d', 'seismic_2d', 'sub_bottom', 'satellite', 'dem', 'outcrop', 'unknown')), -- What the channel was imaged with.
+  extraction TEXT NOT NULL CHECK (extraction IN ('centreline', 'grid', 'figure', 'table', 'unknown')), -- What the number was taken from.
+  pixel_m REAL CHECK (pixel_m > 0 AND pixel_m <= 1e12), -- m; Ground size of a pixel or bin of the image.
+  grade TEXT NOT NULL CHECK (grade IN ('remeasured', 'surveyed', 'traced', 'quoted')), -- Remeasured here, surveyed by the source, traced from a figure, or quoted with the method unknown.
+  source_locator TEXT NOT NULL DEFAULT '' CHECK (length(source_locator) <= 500), -- Page, figure or table in the source.
+  slope_source TEXT NOT NULL DEFAULT '' CHECK (length(slope_source) <= 4000), -- Source of the slope, when it is another paper.
+  size_source TEXT NOT NULL DEFAULT '' CHECK (length(size_source) <= 4000), -- Source of width and depth, when it is another paper.
+  contributor TEXT NOT NULL DEFAULT '' CHECK (length(contributor) <= 200), -- Credit line of who contributed the row.
+  licence TEXT NOT NULL DEFAULT '' CHECK (length(licence) <= 100), -- Licence of the contribution, as CC BY 4.0 or CC0.
+  notes TEXT NOT NULL DEFAULT '' CHECK (length(notes) <= 20000), -- Anything else.
+  grade_rank INTEGER GENERATED ALWAYS AS (CASE grade WHEN 'remeasured' THEN 0 WHEN 'surveyed' THEN 1 WHEN 'traced' THEN 2 ELSE 3 END) VIRTUAL, -- order of grades, best first
+  revision INTEGER NOT NULL DEFAULT 0, -- id of the latest revision of this row
+  created_at TEXT NOT NULL, -- when it was accepted
+  updated_at TEXT NOT NULL -- when one of these columns last changed
+) STRICT;
+
+CREATE INDEX measurements_near ON measurements (source_id, sinuosity, latitude_deg);
+
+CREATE INDEX measurements_system ON measurements (system_id, grade_rank, id DESC);
+
+CREATE TRIGGER places_delete AFTER DELETE ON measurements BEGIN
+  DELETE FROM places WHERE id = old.id;
+END;
+
+CREATE TRIGGER places_insert AFTER INSERT ON measurements BEGIN
+  INSERT INTO places VALUES (new.id, new.longitude_deg - 360 * (new.longitude_deg > 180), new.longitude_deg - 360 * (new.longitude_deg > 180), new.latitude_deg, new.latitude_deg);
+END;
+
+CREATE TRIGGER places_update AFTER UPDATE OF longitude_deg, latitude_deg ON measurements BEGIN
+  UPDATE places SET west = new.longitude_deg - 360 * (new.longitude_deg > 180), east = new.longitude_deg - 360 * (new.longitude_deg > 180), south = new.latitude_deg, north = new.latitude_deg WHERE id = new.id;
+END;
+
+CREATE TRIGGER search_after AFTER UPDATE OF measurement, system_id, source_id, reach, unit, plate, slope_source, size_source, contributor, notes ON measurements BEGIN
+  INSERT INTO search (rowid, names, places, reach, source, notes) SELECT id, names, places, reach, source, notes FROM words WHERE id = new.id;
+END;
+
+CREATE TRIGGER search_before BEFORE UPDATE OF measurement, system_id, source_id, reach, unit, plate, slope_source, size_source, contributor, notes ON measurements BEGIN
+  INSERT INTO search (search, rowid, names, places, reach, source, notes) SELECT 'delete', id, names, places, reach, source, notes FROM words WHERE id = old.id;
+END;
+
+CREATE TRIGGER search_delete BEFORE DELETE ON measurements BEGIN
+  INSERT INTO search (search, rowid, names, places, reach, source, notes) SELECT 'delete', id, names, places, reach, source, notes FROM words WHERE id = old.id;
+END;
+
+CREATE TRIGGER search_insert AFTER INSERT ON measurements BEGIN
+  INSERT INTO search (rowid, names, places, reach, source, notes) SELECT id, names, places, reach, source, notes FROM words WHERE id = new.id;
+END;
+
+CREATE TABLE messages (
+  id INTEGER PRIMARY KEY, -- internal number
+  submission_id INTEGER NOT NULL REFERENCES submissions (id) ON DELETE CASCADE, -- what it is about
+  account_id INTEGER REFERENCES accounts (id), -- who wrote it, NULL for the command line
+  at TEXT NOT NULL, -- when
+  text TEXT NOT NULL CHECK (length(text) BETWEEN 1 AND 20000) -- the comment
+) STRICT;
+
+CREATE INDEX messages_submission ON messages (submission_id, id);
+
+CREATE TABLE one_time_tokens (
+  token_hash BLOB PRIMARY KEY, -- SHA-256 of the token in the address
+  purpose TEXT NOT NULL CHECK (purpose IN ('first_account', 'invitation', 'reset')), -- what it allows, once
+  account_id INTEGER REFERENCES accounts (id), -- whose password it resets; NULL for the others
+  created_at TEXT NOT NULL, -- when it was made
+  expires_at TEXT NOT NULL -- when it ends unused
+) STRICT, WITHOUT ROWID;
+
+CREATE VIRTUAL TABLE places USING rtree (id, west, east, south, north);
+
+CREATE TABLE revisions (
+  id INTEGER PRIMARY KEY AUTOINCREMENT, -- grows with every accepted change: the catalogue's revision
+  change_set_id INTEGER NOT NULL REFERENCES change_sets (id), -- when, who and why
+  record TEXT NOT NULL, -- system:SLUG, measurement:ID or centreline:ID
+  action TEXT NOT NULL CHECK (action IN ('create', 'change', 'accept', 'return', 'withdraw')), -- what happened
+  field TEXT NOT NULL DEFAULT '', -- the column, '' for the whole record
+  before TEXT NOT NULL DEFAULT '', -- its text before
+  after TEXT NOT NULL DEFAULT '' -- its text after
+) STRICT;
+
+CREATE INDEX revisions_change_set ON revisions (change_set_id);
+
+CREATE INDEX revisions_record ON revisions (record, id);
+
+CREATE TRIGGER revisions_last BEFORE DELETE ON revisions BEGIN SELECT RAISE (ABORT, 'revisions are never deleted'); END;
+
+CREATE TRIGGER revisions_stay BEFORE UPDATE ON revisions BEGIN SELECT RAISE (ABORT, 'revisions are never changed'); END;
+
+CREATE VIRTUAL TABLE search USING fts5 (names, places, reach, source, notes, content = 'words', content_rowid = 'id', tokenize = 'unicode61 remove_diacritics 2', prefix = '2 3');
+
+CREATE TABLE sessions (
+  token_hash BLOB PRIMARY KEY, -- SHA-256 of the cookie's token: a copy of the file signs nobody in
+  data BLOB NOT NULL, -- what the session holds, encoded by the session manager
+  expires_at TEXT NOT NULL -- when it ends
+) STRICT, WITHOUT ROWID;
+
+CREATE INDEX sessions_expiry ON sessions (expires_at);
+
+CREATE TABLE sources (
+  id INTEGER PRIMARY KEY, -- internal number
+  citation TEXT NOT NULL CHECK (length(citation) BETWEEN 1 AND 4000), -- the paper or survey, as cited
+  doi TEXT NOT NULL DEFAULT '' CHECK (length(doi) <= 300), -- its DOI without a resolver, '' if none
+  UNIQUE (citation, doi)
+) STRICT;
+
+CREATE TRIGGER search_source_after AFTER UPDATE OF citation, doi ON sources BEGIN
+  INSERT INTO search (rowid, names, places, reach, source, notes) SELECT w.id, names, places, w.reach, source, w.notes FROM words w JOIN measurements m ON m.id = w.id WHERE m.source_id = new.id;
+END;
+
+CREATE TRIGGER search_source_before BEFORE UPDATE OF citation, doi ON sources BEGIN
+  INSERT INTO search (search, rowid, names, places, reach, source, notes) SELECT 'delete', w.id, names, places, w.reach, source, w.notes FROM words w JOIN measurements m ON m.id = w.id WHERE m.source_id = old.id;
+END;
+
+CREATE TABLE submissions (
+  id INTEGER PRIMARY KEY, -- internal number
+  batch_id INTEGER REFERENCES batches (id), -- the imported file it came with, NULL for a form
+  account_id INTEGER REFERENCES accounts (id), -- whose it is, NULL for the command line
+  state TEXT NOT NULL CHECK (state IN ('draft', 'submitted', 'returned', 'accepted', 'withdrawn')), -- where it stands
+  measurement TEXT NOT NULL DEFAULT '', -- public id of the record it changes; '' when new
+  proposed TEXT NOT NULL CHECK (json_valid(proposed)), -- the row as proposed: column -> text, JSON
+  typed TEXT NOT NULL DEFAULT '{}' CHECK (json_valid(typed)), -- cells of a draft that cannot be read yet, as typed, JSON
+  base TEXT NOT NULL DEFAULT '' CHECK (base = '' OR json_valid(base)), -- the accepted row the author saw, JSON; '' when new
+  base_revision INTEGER NOT NULL DEFAULT 0, -- revision of that row
+  overrides TEXT NOT NULL DEFAULT '{}' CHECK (json_valid(overrides)), -- warning key -> reason, JSON
+  comment TEXT NOT NULL DEFAULT '', -- the curator's latest word
+  line TEXT NOT NULL DEFAULT '' CHECK (line = '' OR json_valid(line)), -- centreline as GeoJSON LineString, '' if none
+  line_settings TEXT NOT NULL DEFAULT '' CHECK (line_settings = '' OR json_valid(line_settings)), -- planform settings of that line, JSON
+  line_sinuosities TEXT NOT NULL DEFAULT '[]' CHECK (json_valid(line_sinuosities)), -- its window sinuosities, JSON array
+  fingerprint BLOB NOT NULL, -- SHA-256 of the proposed row: the same row sent twice waits once
+  created_at TEXT NOT NULL, -- first saved
+  updated_at TEXT NOT NULL -- last saved or decided
+) STRICT;
+
+CREATE INDEX submissions_account ON submissions (account_id, state);
+
+CREATE INDEX submissions_batch ON submissions (batch_id);
+
+CREATE INDEX submissions_fingerprint ON submissions (fingerprint) WHERE state = 'submitted';
+
+CREATE INDEX submissions_state ON submissions (state, id);
+
+CREATE TABLE systems (
+  id INTEGER PRIMARY KEY, -- internal number
+  slug TEXT NOT NULL UNIQUE CHECK (length(slug) BETWEEN 1 AND 80 AND slug NOT GLOB '*[^a-z0-9-]*'), -- stable short name, used in addresses
+  system_name TEXT NOT NULL COLLATE NOCASE CHECK (length(system_name) BETWEEN 1 AND 200), -- Name of the channel system.
+  other_names TEXT NOT NULL DEFAULT '' CHECK (length(other_names) <= 500), -- Other names in use, separated by semicolons.
+  parent_deposit TEXT NOT NULL DEFAULT '' CHECK (length(parent_deposit) <= 200), -- Fan, drift or other deposit the system is part of: systems of one deposit are not independent.
+  basin TEXT NOT NULL DEFAULT '' CHECK (length(basin) <= 200), -- Ocean or sedimentary basin.
+  kind TEXT NOT NULL CHECK (kind IN ('submarine', 'river', 'lacustrine')), -- Where the channel was made.
+  margin TEXT NOT NULL CHECK (margin IN ('passive', 'active', 'transform', 'intraplate', 'unknown')), -- Tectonic kind of the margin.
+  feeder TEXT NOT NULL CHECK (feeder IN ('river', 'shelf', 'glacial', 'volcanic', 'failure', 'unknown')), -- What fed the system when it was active.
+  feeder_geometry TEXT NOT NULL CHECK (feeder_geometry IN ('point', 'multiple', 'linear', 'unknown')), -- One point, several, or a line source.
+  large_river TEXT NOT NULL CHECK (large_river IN ('yes', 'no', 'unknown')), -- Whether a large river feeds it, as the source says.
+  catchment_area_km2 REAL CHECK (catchment_area_km2 > 0 AND catchment_area_km2 <= 1e12), -- km2; Area of the river catchment behind it.
+  catchment_latitude_deg REAL CHECK (catchment_latitude_deg BETWEEN -90 AND 90), -- degrees; Latitude of the middle of the catchment, north positive.
+  revision INTEGER NOT NULL DEFAULT 0, -- id of the latest revision of these columns
+  created_at TEXT NOT NULL, -- when it was accepted
+  updated_at TEXT NOT NULL -- when one of these columns last changed
+) STRICT;
+
+CREATE INDEX systems_name ON systems (system_name);
+
+CREATE INDEX systems_parent ON systems (parent_deposit);
+
+CREATE TRIGGER search_system_after AFTER UPDATE OF slug, system_name, other_names, parent_deposit, basin ON systems BEGIN
+  INSERT INTO search (rowid, names, places, reach, source, notes) SELECT w.id, names, places, w.reach, source, w.notes FROM words w JOIN measurements m ON m.id = w.id WHERE m.system_id = new.id;
+END;
+
+CREATE TRIGGER search_system_before BEFORE UPDATE OF slug, system_name, other_names, parent_deposit, basin ON systems BEGIN
+  INSERT INTO search (search, rowid, names, places, reach, source, notes) SELECT 'delete', w.id, names, places, w.reach, source, w.notes FROM words w JOIN measurements m ON m.id = w.id WHERE m.system_id = old.id;
+END;
+
+CREATE VIEW words AS
+  SELECT m.id AS id, s.slug || ' ' || s.system_name || ' ' || s.other_names AS names, s.parent_deposit || ' ' || s.basin AS places,
+    m.measurement || ' ' || m.reach || ' ' || m.unit || ' ' || m.plate AS reach, c.citation || ' ' || c.doi AS source,
+    m.slope_source || ' ' || m.size_source || ' ' || m.contributor || ' ' || m.notes AS notes
+  FROM measurements m JOIN systems s ON s.id = m.system_id JOIN sources c ON c.id = m.source_id;
