@@ -154,16 +154,23 @@ func (r *replicates) degenerate(e int) int {
 func jackknife(est estimator, groups int) [][]float64 {
 	_, w := est.shape()
 	fit, d := est.worker(), newDraw(groups)
+	d.without(groups, -1)
+	last := groups - 1
+	d.wt, d.size = d.wt[:last], float64(last)
+	all := d.id
 	out := make([][]float64, groups)
 	flat := make([]float64, groups*w)
 	for g := range out {
 		out[g] = flat[g*w : (g+1)*w : (g+1)*w]
-		d.without(groups, g)
+		// The group left out changes places with the last one for this fit.
+		all[g], all[last] = all[last], all[g]
+		d.id = all[:last]
 		if !fit(d, out[g], false) {
 			for k := range out[g] {
 				out[g][k] = nan
 			}
 		}
+		all[g], all[last] = all[last], all[g]
 	}
 	return out
 }

@@ -3,9 +3,13 @@ package stats
 import "math"
 
 // decayDegree is the degree of the Chebyshev series by which every group's sums
-// follow the decay rate. With |c u| <= 8 the first term left out is below 1e-12
-// of the sum.
-const decayDegree = 30
+// follow the decay rate. exp(-2 b x) runs over exp(+-2 decayReach) within the
+// series, whose first term left out is then below 2^-20 (2 decayReach)^21/21!,
+// 1e-13 of the sum.
+const (
+	decayDegree = 20
+	decayReach  = 2.0
+)
 
 // decay is the fall to the floor, P = 1 + a exp(-b x), by least squares in
 // sinuosity units. Given b the best a is B/A with
@@ -34,6 +38,10 @@ type decay struct {
 }
 
 const decaySeries = 2 * (decayDegree + 1)
+
+// decayGrid is half the number of steps in which the best decay rate is looked
+// for before it is refined.
+const decayGrid = 3
 
 // fitDecay fits P = 1 + a exp(-b x) to all rows by damped Gauss-Newton from the
 // best of a grid of decay rates.
@@ -72,7 +80,7 @@ func newDecay(p *plan, g *grouping, fit *NonlinearFit) *decay {
 	}
 	d := &decay{mid: (lo + hi) / 2, half: (hi - lo) / 2, centre: fit.Coef[1], start: g.start,
 		coef: [2]float64(fit.Coef), se: [2]float64(fit.SE), rss: fit.RSS, sigma: fit.Sigma}
-	d.reach = 4 / d.half
+	d.reach = decayReach / d.half
 	for _, y := range p.y {
 		d.vMean += (y - 1) / float64(len(p.y))
 	}
@@ -86,8 +94,8 @@ func newDecay(p *plan, g *grouping, fit *NonlinearFit) *decay {
 		d.vSums[3*k+2] += (v - d.vMean) * (v - d.vMean)
 	}
 	d.fillSeries()
-	for k := -5; k <= 5; k++ {
-		u := float64(k) / 5
+	for k := -decayGrid; k <= decayGrid; k++ {
+		u := float64(k) / decayGrid
 		t := make([]float64, decayDegree+1)
 		chebyshev(u, t, nil, nil)
 		d.gridAt, d.grid = append(d.gridAt, u), append(d.grid, t)
@@ -245,19 +253,9 @@ func (d *decay) fit(s *decayScratch, w *draw, out []float64, se bool) bool {
 // maximise finds the decay rate with the largest B^2/A: the best point of a
 // grid, then Newton steps on the logarithm kept between its neighbours.
 func (d *decay) maximise(s *decayScratch, w *draw) (u float64, p profile, inside, ok bool) {
-	best, at := -1.0, 0
-	for k, t := range d.grid {
-		var a, b float64
-		for m, tm := range t {
-			a += s.sum[m] * tm
-			b += s.sum[decayDegree+1+m] * tm
-		}
-		if f := b * b / a; f > best {
-			best, at = f, k
-		}
-	}
+	at, start := d.startingPoint(s)
 	if at > 0 && at < len(d.grid)-1 {
-		u, p, ok = newton(s.at, d.gridAt[at-1], d.gridAt[at], d.gridAt[at+1])
+		u, p, ok = newton(s.at, d.gridAt[at-1], start, d.gridAt[at+1])
 		return u, p, true, ok
 	}
 	// The optimum lies at the edge of the series or beyond: look by rows, in
@@ -276,6 +274,31 @@ func (d *decay) maximise(s *decayScratch, w *draw) (u float64, p profile, inside
 		u += step
 	}
 	return 0, p, false, false
+}
+
+// startingPoint is the best point of the grid, refined by the parabola through
+// the logarithms of it and its neighbours.
+func (d *decay) startingPoint(s *decayScratch) (at int, u float64) {
+	best := -1.0
+	var f [2*decayGrid + 1]float64
+	for k, t := range d.grid {
+		var a, b float64
+		for m, tm := range t {
+			a += s.sum[m] * tm
+			b += s.sum[decayDegree+1+m] * tm
+		}
+		if f[k] = b * b / a; f[k] > best {
+			best, at = f[k], k
+		}
+	}
+	u = d.gridAt[at]
+	if at > 0 && at < len(f)-1 {
+		l, m, r := math.Log(f[at-1]), math.Log(f[at]), math.Log(f[at+1])
+		if c := l - 2*m + r; c < 0 {
+			u += 0.5 * (l - r) / c / decayGrid
+		}
+	}
+	return at, u
 }
 
 // newton maximises 2 ln|B| - ln A between lo and hi, starting at u.
@@ -298,7 +321,13 @@ func newton(at func(float64) profile, lo, u, hi float64) (float64, profile, bool
 		if !(h < 0) || !(next > lo && next < hi) {
 			next = (lo + hi) / 2
 		}
-		if math.Abs(next-u) <= 1e-12*(1+math.Abs(u)) {
+		// Newton doubles the digits: after a step of 1e-7 the next would be of
+		// 1e-14. The profile is carried along by its derivatives.
+		if d := next - u; math.Abs(d) <= 1e-7 {
+			p.a += d * (p.a1 + d*p.a2/2)
+			p.b += d * (p.b1 + d*p.b2/2)
+			p.a1 += d * p.a2
+			p.b1 += d * p.b2
 			return next, p, true
 		}
 		u = next

@@ -254,21 +254,12 @@ func (t decayTest) statistic() func(w []float64) float64 {
 
 // best is the largest B^2/A within the reach of the series.
 func (d *decay) best(s *decayScratch) float64 {
-	best, at := -1.0, 0
-	for k, t := range d.grid {
-		var a, b float64
-		for m, tm := range t {
-			a += s.sum[m] * tm
-			b += s.sum[decayDegree+1+m] * tm
-		}
-		if f := b * b / a; f > best {
-			best, at = f, k
-		}
-	}
+	at, u := d.startingPoint(s)
 	if at > 0 && at < len(d.grid)-1 {
-		if _, p, ok := newton(s.at, d.gridAt[at-1], d.gridAt[at], d.gridAt[at+1]); ok {
-			return math.Max(best, p.b*p.b/p.a)
+		if _, p, ok := newton(s.at, d.gridAt[at-1], u, d.gridAt[at+1]); ok {
+			return p.b * p.b / p.a
 		}
 	}
-	return best
+	p := s.at(d.gridAt[at])
+	return p.b * p.b / p.a
 }

@@ -64,10 +64,11 @@ func entryWeights(m int) []float64 {
 	return w
 }
 
-// resamples: 64 subsets of a wide model in every resample are the slowest part
-// of a page, and their ends need fewer digits.
+// resamples: all subsets of a wide model in every resample are the slowest part
+// of a page, as are the triangles of very many clusters; the ends of shares need
+// fewer digits.
 func (e *sharesEstimator) resamples(asked int) int {
-	if len(e.members) > 4 {
+	if len(e.members) > 4 || e.groups*e.moments.width > 10_000 {
 		return min(asked, 1999)
 	}
 	return asked

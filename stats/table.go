@@ -171,7 +171,7 @@ func consider(rows []Row, req *Request) []UsedRow {
 	for i := range rows {
 		u := &used[i]
 		*u = UsedRow{Row: rows[i], Kept: true, Response: math.NaN(),
-			PredictorOf: map[string]float64{}, ResidualOf: map[string]float64{}, PredictedOf: map[string]float64{}}
+			PredictorOf: make(map[string]float64, len(predictors)), ResidualOf: map[string]float64{}, PredictedOf: map[string]float64{}}
 		u.ClusterID = clusterLabel(&u.Row, req.Cluster)
 		if req.Cluster == "none" {
 			u.ClusterID = u.ID
