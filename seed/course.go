@@ -99,11 +99,15 @@ func step(lat, lon, east, north float64) (float64, float64) {
 // end in metres, positive down (rivers: negative).
 func (d *drawer) draw(rs []reach, lat, lon, bearing, depth float64) course {
 	var c course
-	for i := range rs {
+	side := 1.0
+	if d.lineRand.IntN(2) == 1 {
+		side = -1
+	}
+	for i := range rs { // an even number of bends each, so that all begin alike
 		r := &rs[i]
 		first := &r.rows[0]
 		t := target{kind: first.SinuosityKind, sinuosity: first.Sinuosity.V, window: first.WindowM.V}
-		c.shapes = append(c.shapes, bendLine(d.lineRand, r.bends, r.axis(), t))
+		c.shapes = append(c.shapes, bendLine(d.lineRand, r.bends, r.axis(), side, t))
 	}
 	x, y := 0.0, 0.0
 	for i := range c.shapes { // one after the other, in the plane

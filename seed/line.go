@@ -29,8 +29,9 @@ type target struct {
 // bendLine draws a reach of sine-generated bends (Langbein & Leopold 1966, USGS
 // Prof. Pap. 422-H) whose angles differ from bend to bend by the scatter of
 // windows, on a gently wandering axis, and scales the angles so that the line
-// has the target's sinuosity. axis is the length of the valley in metres.
-func bendLine(r *rand.Rand, bends int, axis float64, t target) shape {
+// has the target's sinuosity. axis is the length of the valley in metres; side is 1
+// where the first limb runs to the left, -1 to the right.
+func bendLine(r *rand.Rand, bends int, axis, side float64, t target) shape {
 	n := bends * perBend
 	theta, wander, step := make([]float64, n), make([]float64, n), make([]float64, n)
 	arcs, total := make([]float64, bends), 0.0
@@ -44,7 +45,7 @@ func bendLine(r *rand.Rand, bends int, axis float64, t target) shape {
 	}
 	length := axis * (1 + excess)
 	swing := min(0.12, 0.8*math.Sqrt(t.sinuosity-1))
-	phase, side := 2*math.Pi*r.Float64(), 1.0
+	phase := 2 * math.Pi * r.Float64()
 	jitter := 0.8
 	if bends < 6 { // a part of a longer line, whose parts differ already
 		jitter = 0.3
