@@ -23,6 +23,7 @@ type draws struct {
 	mix    mixture // of the weighted explanations
 	donors donors
 	moves  moves
+	parts  []map[string]float64 // of the variance of ln(P - 1), by explanation
 }
 
 // moves says which inputs of a target are uncertain.
@@ -135,7 +136,8 @@ func (f *Fits) draw(t *Target, p *place) *draws {
 // outcomes turns the draws into sinuosities, explanation by explanation:
 // 1 + exp(x'b* + s r*), or 1 with the share of rows that hold P = 1.
 func (f *Fits) outcomes(d *draws) {
-	d.p = make([][]float64, len(f.fits))
+	d.mix.alpha = f.alpha
+	d.p, d.parts = make([][]float64, len(f.fits)), make([]map[string]float64, len(f.fits))
 	for k, t := range f.fits {
 		if t.failure != "" {
 			continue
@@ -151,7 +153,7 @@ func (f *Fits) outcomes(d *draws) {
 			out[j] = 1 + math.Exp(math.Min(y, 12))
 		}
 		slices.Sort(out)
-		d.p[k] = out
+		d.p[k], d.parts[k] = out, t.variances(d)
 		if f.weights[k] > 0 {
 			d.mix.add(out, f.weights[k])
 		}
@@ -175,9 +177,9 @@ func (f *Fits) explain(d *draws, res *Result) {
 				}
 				return 0
 			})
-			v := f.variances(t, d)
+			v := d.parts[k]
 			e.Parts = shares(v)
-			e.Coefficients = t.coefficients()
+			e.Coefficients = t.coefficients
 			y := t.value(&d.point, t.beta)
 			mean, meanSquare = mean+f.weights[k]*y, meanSquare+f.weights[k]*y*y
 			for name, x := range v {
@@ -186,7 +188,7 @@ func (f *Fits) explain(d *draws, res *Result) {
 		}
 		res.Explanations = append(res.Explanations, e)
 	}
-	c := Explanation{Name: "combined", Text: "All explanations together, by their weights.", Weight: 1, Score: math.NaN(),
+	c := Explanation{Name: "combined", Text: "All explanations together, by their weights; the spread of the mixture is set by what it held when each deposit was left out, because a mixture of rival forecasts is wider than it should be (Gneiting & Ranjan, Electron. J. Stat. 7:1747 (2013)).", Weight: 1, Score: math.NaN(),
 		Rows: len(f.frame.obs), Clusters: len(f.frame.clusters)}
 	if len(d.mix.draws) == 0 {
 		c.Failure, c.Weight = "No explanation could be fitted on the chosen rows. Widen the filter.", 0
@@ -203,18 +205,15 @@ func (f *Fits) explain(d *draws, res *Result) {
 // variances are the parts of the variance of ln(P - 1) of a new system: by the
 // parameters, by the residual and by the inputs, each with the others at their
 // point values.
-func (f *Fits) variances(t *fitted, d *draws) map[string]float64 {
-	var par, res, inp moments
+func (t *fitted) variances(d *draws) map[string]float64 {
+	var par, inp moments
 	for b := range t.sets {
 		par.add(t.value(&d.point, t.boot[b*t.p:(b+1)*t.p]))
 	}
-	for _, r := range t.pool[:] {
-		res.add(t.s * r)
-	}
-	for j := range d.in {
+	for j := range min(d.n, 1000) {
 		inp.add(t.value(&d.in[j], t.beta))
 	}
-	return map[string]float64{"parameters": par.variance(), "residual": res.variance(), "inputs": inp.variance()}
+	return map[string]float64{"parameters": par.variance(), "residual": t.s * t.s * t.poolVariance, "inputs": inp.variance()}
 }
 
 // shares scales parts to a sum of 1.
@@ -258,7 +257,8 @@ func (m *moments) variance() float64 {
 	return m.ss / (m.n - 1)
 }
 
-func (t *fitted) coefficients() []Coefficient {
+// estimates are the coefficients with their cluster-bootstrap errors.
+func (t *fitted) estimates() []Coefficient {
 	out := make([]Coefficient, t.p)
 	for k := range out {
 		var m moments
@@ -355,7 +355,7 @@ func (f *Fits) sensitivity(t *Target, p *place, d *draws) []Sensitivity {
 	var mean, square float64
 	for k, ft := range f.fits {
 		if w := f.weights[k]; w > 0 {
-			v := f.variances(ft, d)
+			v := d.parts[k]
 			total["parameters of the fit"] += w * v["parameters"]
 			total["scatter between systems"] += w * v["residual"]
 			y := ft.value(&d.point, ft.beta)

@@ -19,10 +19,12 @@ type Fits struct {
 	weights  []float64
 	alone    []*Coverage
 	together *Coverage
+	alpha    float64
 	scores   []float64 // on the rows common to all; NaN = none
 	common   int       // such rows
 	base     []float64 // base rate of each class, deposits alike
 	hull     [][2]float64
+	systems  []*system
 	sized    [4]sizes // rows with a width, a depth, a slope, a radius and width
 }
 
@@ -82,13 +84,14 @@ func Fit(ctx context.Context, rows []stats.Row, o Options) (*Fits, error) {
 	ch := leaveOutAll(f, out.fits, r, o.Seed)
 	weights, without, common := stack(f, out.fits, ch)
 	out.weights, out.common = weights, len(common)
-	out.together = ch.together(f, without)
+	p := ch.pits(f, without)
+	out.together, out.alpha = ch.together(f, p), p.alpha(f, -1)
 	for k := range list {
 		out.alone[k] = ch.alone(f, k)
 		out.scores[k] = out.scoreOn(common, k, ch)
 	}
 	out.baseRates()
-	out.hull = hullOf(f)
+	out.hull, out.systems = hullOf(f), systemsOf(f)
 	for k, has := range []func(*stats.Row) bool{
 		func(r *stats.Row) bool { return above0(r.ChannelWidthM) },
 		func(r *stats.Row) bool { return above0(r.ChannelDepthM) },

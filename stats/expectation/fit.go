@@ -48,6 +48,9 @@ type fitted struct {
 	logDens []float64 // log density of P of the row when its cluster is left out
 	pool    []float64
 	score   float64
+
+	poolVariance float64
+	coefficients []Coefficient
 }
 
 // resampling is shared by all explanations of a frame, so that parameter set b
@@ -130,6 +133,11 @@ func fitModel(ctx context.Context, m model, f *frame, r *resampling) *fitted {
 		t.leaveOut()
 	}
 	t.pool = t.poolOf(t.resid, -1, make([]float64, 0, poolSize))
+	var pool moments
+	for _, r := range t.pool {
+		pool.add(r)
+	}
+	t.poolVariance, t.coefficients = pool.variance(), t.estimates()
 	if t.failure == "" && (len(t.pool) == 0 || t.sets == 0) {
 		t.failure = "No deposit can be left out without losing the fit. Widen the filter."
 	}

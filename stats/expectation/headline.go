@@ -24,7 +24,7 @@ func (f *Fits) frameOf(t *Target, p *place, d *draws) *Result {
 		Settings: map[string]any{
 			"seed": t.Seed, "draws": t.Draws, "fit_seed": f.options.Seed, "resamples": resamples, "cluster": f.options.Cluster,
 			"class_limits": f.options.ClassLimits, "day": orDefault(t.Day), "solar_tide": t.SolarTide,
-			"scale": "ln_excess", "rotation_of_rows": earth.TidalHistory, "common_rows_for_weights": f.common,
+			"scale": "ln_excess", "rotation_of_rows": earth.TidalHistory, "common_rows_for_weights": f.common, "spread_alpha": f.alpha,
 		},
 	}
 	sorted := slices.Sorted(slices.Values(d.f))

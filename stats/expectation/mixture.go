@@ -5,6 +5,8 @@ import (
 	"math"
 	"slices"
 	"sort"
+
+	"gonum.org/v1/gonum/mathext"
 )
 
 // mixture is a weighted mixture of sorted draws.
@@ -12,6 +14,23 @@ type mixture struct {
 	draws   [][]float64
 	weights []float64
 	total   float64
+	alpha   float64 // exponent of the beta transform; 0 or 1 = none
+}
+
+// outer turns a share of the plain mixture into one of the transformed
+// mixture, inner the other way.
+func (m *mixture) outer(share float64) float64 {
+	if m.alpha == 0 || m.alpha == 1 {
+		return share
+	}
+	return mathext.RegIncBeta(m.alpha, m.alpha, math.Max(0, math.Min(1, share)))
+}
+
+func (m *mixture) inner(share float64) float64 {
+	if m.alpha == 0 || m.alpha == 1 {
+		return share
+	}
+	return mathext.InvRegIncBeta(m.alpha, m.alpha, share)
 }
 
 func (m *mixture) add(sorted []float64, weight float64) {
@@ -29,10 +48,10 @@ func (m *mixture) below(p float64) float64 {
 		}
 		sum += m.weights[k] * float64(under+upTo) / 2 / float64(len(d))
 	}
-	return sum / m.total
+	return m.outer(sum / m.total)
 }
 
-// atMost is the share of outcomes at or below p.
+// atMost is the share of the plain mixture at or below p.
 func (m *mixture) atMost(p float64) float64 {
 	var sum float64
 	for k, d := range m.draws {
@@ -44,6 +63,7 @@ func (m *mixture) atMost(p float64) float64 {
 // quantile is the value below which the share q of the outcomes lies, by
 // bisection.
 func (m *mixture) quantile(q float64) float64 {
+	q = m.inner(q)
 	if len(m.draws) == 1 {
 		return quantileOf(m.draws[0], q)
 	}

@@ -20,11 +20,11 @@ type system struct {
 	sinuosity  moments
 }
 
-func (f *Fits) systems() []*system {
+func systemsOf(f *frame) []*system {
 	index := map[string]*system{}
 	var out []*system
-	for i := range f.frame.all {
-		r := &f.frame.all[i]
+	for i := range f.all {
+		r := &f.all[i]
 		s, ok := index[r.System]
 		if !ok {
 			s = &system{slug: r.System, name: r.SystemName}
@@ -33,8 +33,8 @@ func (f *Fits) systems() []*system {
 		}
 		s.rows = append(s.rows, r)
 	}
-	for i := range f.frame.obs {
-		index[f.frame.obs[i].row.System].sinuosity.add(f.frame.obs[i].p)
+	for i := range f.obs {
+		index[f.obs[i].row.System].sinuosity.add(f.obs[i].p)
 	}
 	return out
 }
@@ -122,7 +122,7 @@ func (f *Fits) attributes(t *Target, all []*system) []attribute {
 // logarithm apart); not known counts a half (Gower, Biometrics 27:857 (1971),
 // doi 10.2307/2528823, but for the half).
 func (f *Fits) nearest(t *Target) []Nearest {
-	all := f.systems()
+	all := f.systems
 	attributes := f.attributes(t, all)
 	out := []Nearest{}
 	if len(attributes) == 0 {

@@ -20,6 +20,40 @@ type place struct {
 	plate   string
 	pole    earth.Pole
 	notes   []string
+	days    []float64 // solar hours on a grid of ages over the errors of the age
+	grid    [2]float64
+}
+
+// gridNodes is the number of ages at which the day length is looked up for the
+// draws of the age.
+const gridNodes = 65
+
+// setGrid tabulates the day length over five standard errors of the age (or
+// the unit); beyond a history's end its last value stands.
+func (p *place) setGrid() {
+	if p.age.SE == 0 || p.options.History == earth.Given {
+		return
+	}
+	lo, hi := math.Max(0, p.age.Value-5*p.age.SE), p.age.Value+5*p.age.SE
+	p.grid = [2]float64{lo, (hi - lo) / (gridNodes - 1)}
+	last := float64(p.day.Value)
+	for k := range gridNodes {
+		if d, err := earth.DayLengthAt(lo+float64(k)*p.grid[1], p.options); err == nil {
+			last = float64(d.Value)
+		}
+		p.days = append(p.days, last)
+	}
+}
+
+// dayAt is the day length at a drawn age, solar hours.
+func (p *place) dayAt(age float64) float64 {
+	if p.days == nil {
+		return float64(p.day.Value)
+	}
+	x := (age - p.grid[0]) / p.grid[1]
+	x = math.Max(0, math.Min(gridNodes-1, x))
+	k := min(int(x), gridNodes-2)
+	return p.days[k] + (x-float64(k))*(p.days[k+1]-p.days[k])
 }
 
 // locate turns a target into a palaeolatitude, an age and a day length.
@@ -56,6 +90,7 @@ func locate(t *Target) (*place, error) {
 	if err := p.latitudeOf(t); err != nil {
 		return nil, err
 	}
+	p.setGrid()
 	if t.Day == earth.Locked && p.age.Value >= 500 && p.age.Value <= 2300 {
 		p.notes = append(p.notes, "The locked day of 19.5 h is taken as a solar day.")
 	}
@@ -158,29 +193,25 @@ func (p *place) draw(rng *rand.Rand, withAge, withDay, withLat bool) drawn {
 	zAge, zDay, zLat := rng.NormFloat64(), rng.NormFloat64(), rng.NormFloat64()
 	uAge := rng.Float64()
 	d := drawn{lat: p.lat.Value, ratio: p.ratio, age: p.age.Value}
-	day, moved := p.day, false
+	hours, moved := float64(p.day.Value), false
 	if withAge && p.age.SE > 0 {
 		d.age = p.age.Value + p.age.SE*zAge
 		if p.age.Unit != "" {
 			d.age = p.age.Low + uAge*(p.age.High-p.age.Low)
 		}
 		d.age = math.Abs(d.age)
-		if at, err := earth.DayLengthAt(d.age, p.options); err == nil {
-			day, moved = at, true
-		}
+		hours, moved = p.dayAt(d.age), true
 		if p.table != nil {
 			if pole, err := p.table.Pole(p.plate, d.age); err == nil {
 				d.lat = earth.LatitudeFromPole(p.site[0], p.site[1], pole)
 			}
 		}
 	}
-	hours := day.Value
-	if withDay && day.High > day.Low {
-		hours += earth.SolarHours(day.SE() * zDay)
-		moved = true
+	if withDay && p.day.High > p.day.Low {
+		hours, moved = hours+p.day.SE()*zDay, true
 	}
 	if moved && p.options.Rotation == 0 {
-		d.ratio = hours.RotationRatio()
+		d.ratio = earth.SolarHours(hours).RotationRatio()
 	}
 	if withLat {
 		d.lat = foldLatitude(d.lat + p.lat.SE*zLat)

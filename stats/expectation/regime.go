@@ -97,10 +97,14 @@ type flow struct {
 	roW, roR, froude, u, tilt, adding, opposing, river float64
 }
 
+// flowDraws is the most draws of the flow numbers: their ranges are wide and
+// settle early.
+const flowDraws = 2000
+
 // regime estimates the flow numbers by Monte Carlo over the stated ranges.
 func (f *Fits) regime(t *Target, d *draws) Regime {
 	width, depth, slope := f.quantities(t)
-	n := d.n
+	n := min(d.n, flowDraws)
 	all := make([]flow, n)
 	var pcg rand.PCG
 	rng := rand.New(&pcg)
