@@ -26,7 +26,9 @@ func Analyse(ctx context.Context, rows []Row, req Request, progress func(float64
 	if err != nil {
 		return nil, err
 	}
-	report(a, studies, all, &req)
+	if err := report(ctx, a, studies, &req); err != nil {
+		return nil, err
+	}
 	return a, nil
 }
 
@@ -65,7 +67,7 @@ func runStudies(ctx context.Context, used []UsedRow, all *table, req *Request, p
 // report writes the studies into the answer. Comparisons, shares, influence and
 // headline are about the first study: all rows, or with group=kind the kind
 // with most rows.
-func report(a *Analysis, studies []*study, all *table, req *Request) {
+func report(ctx context.Context, a *Analysis, studies []*study, req *Request) (err error) {
 	main := studies[0]
 	for _, s := range studies {
 		a.Models = append(a.Models, s.out...)
@@ -80,6 +82,9 @@ func report(a *Analysis, studies []*study, all *table, req *Request) {
 	if k := leading(main.out); k >= 0 {
 		a.LeadingModel, a.Influence = main.out[k].Model, main.out[k].Influence
 	}
+	if a.Breakpoint, err = main.breakpoint(ctx); err != nil {
+		return err
+	}
 	a.Headline = main.headline(main.out)
 	for _, s := range studies {
 		sub := *a
@@ -92,6 +97,7 @@ func report(a *Analysis, studies []*study, all *table, req *Request) {
 	for _, s := range studies {
 		s.predictions(a.Used)
 	}
+	return nil
 }
 
 // predictions puts fitted values and residuals beside their rows.

@@ -8,9 +8,10 @@ import (
 
 // rowBudget and workBudget keep long work within bounds; what is cut is said.
 const (
-	rowBudget  = 2_000_000  // rows x resamples of the row bootstrap shown beside
-	flipBudget = 2_000_000  // clusters x sign flips of one test
-	backBudget = 20_000_000 // rows x resamples of a transformed response
+	rowBudget  = 2_000_000   // rows x resamples of the row bootstrap shown beside
+	flipBudget = 2_000_000   // clusters x sign flips of one test
+	backBudget = 20_000_000  // rows x resamples of a transformed response, or of a form without cross-products
+	pairBudget = 400_000_000 // pairs x resamples of Theil-Sen
 )
 
 // study is one table (all rows, or the rows of one kind) with its models, their
@@ -81,6 +82,12 @@ func (f *fitted) resamples(asked int) int {
 	if isLeastSquares(f.form) && f.scale != "raw" {
 		return min(asked, max(999, backBudget/max(f.t.n(), 1)))
 	}
+	if t, ok := f.cluster.(*theilSen); ok {
+		return min(asked, max(199, pairBudget/max(len(t.slope), 1)))
+	}
+	if f.robust == nil {
+		return min(asked, max(199, backBudget/max(f.t.n(), 1)))
+	}
 	return asked
 }
 
@@ -130,7 +137,7 @@ func (s *study) assess(ctx context.Context) error {
 			AkaikeWeight: nan, PermutationP: nan, Kendall: nan, Spearman: nan, Sigma: nan}
 		if f.failure == "" {
 			m.RSquared, m.RSquaredFitted, m.Sigma = f.r2, f.r2Fitted, f.sigma
-			if f.robust != nil {
+			if f.likelihood {
 				m.AICc = aicc(f.rss, s.t.n(), len(f.coef))
 			}
 			if f.x != nil {
@@ -225,6 +232,11 @@ func (s *study) bootIntervals(c *Coefficient, k, j int) {
 		}
 	}
 	v := s.boot.column(e, j)
+	if f.se == nil && len(v) > 1 {
+		// No formula holds for clustered rows: the spread over the resamples.
+		_, length := centreScale(v)
+		c.StandardError = length / math.Sqrt(float64(len(v)-1))
+	}
 	sortFloats(v)
 	c.Intervals["bca"] = bcaInterval(v, f.coef[j], columnOf(s.jack[k], j), s.req.Level)
 	c.Intervals["percentile"] = percentileInterval(v, s.req.Level)
@@ -338,6 +350,12 @@ func (s *study) test(ctx context.Context, m *Model, f *fitted) error {
 	case f.form == "floor_decay":
 		d := f.cluster.(*decay)
 		m.PermutationP, err = run(decayTest{d, d.vMean})
+	case f.form == "broken_line":
+		m.PermutationP, err = run(newBrokenTest(f.cluster.(*broken), false))
+	case f.form == "theil_sen":
+		m.PermutationP, err = run(newKendallTest(f, &s.t.cluster))
+	default:
+		m.PermutationP, err = run(newScoreTest(f, &s.t.cluster, quantileTau(f.form)))
 	}
 	return err
 }

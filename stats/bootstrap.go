@@ -165,8 +165,9 @@ func jackknife(est estimator, groups int) [][]float64 {
 		// The group left out changes places with the last one for this fit.
 		all[g], all[last] = all[last], all[g]
 		d.id = all[:last]
-		if !fit(d, out[g], false) {
-			for k := range out[g] {
+		ok := fit(d, out[g], false)
+		for k, v := range out[g] {
+			if !ok || !finite(v) {
 				out[g][k] = nan
 			}
 		}

@@ -11,8 +11,8 @@ import (
 func leading(models []Model) int {
 	best, at := math.Inf(-1), -1
 	for i, m := range models {
-		if m.Failure != "" {
-			continue
+		if m.Failure != "" || m.Form == "quantile_10" || m.Form == "quantile_90" {
+			continue // a line at the edge is not meant to predict the middle
 		}
 		v := m.OutOfSampleR2
 		if !finite(v) {

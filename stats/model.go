@@ -24,7 +24,12 @@ type fitted struct {
 	compile func(g *grouping) estimator
 	robust  func(e estimator) robust // nil where no linearisation is defined
 	failure string
+
+	likelihood bool // residuals have a Gaussian likelihood: AICc is defined
 }
+
+// maxRowFormRows bounds the forms whose resamples go through the rows.
+const maxRowFormRows = 20_000
 
 // robust is the linearised model on one grouping.
 type robust struct {
@@ -46,8 +51,14 @@ func fitPlan(t *table, p *plan) *fitted {
 		f.leastSquares()
 	case p.form == "floor_decay":
 		f.decay()
+	case t.n() > maxRowFormRows:
+		f.failure = fmt.Sprintf("%s goes through the rows in every resample and takes at most %d of them; there are %d. Narrow the filter, or use a straight line.", upperFirst(p.form), maxRowFormRows, t.n())
+	case p.form == "broken_line":
+		f.broken()
+	case p.form == "theil_sen":
+		f.theilSen()
 	default:
-		f.failure = fmt.Sprintf("The form %s is not known.", p.form)
+		f.quantile()
 	}
 	if f.failure != "" {
 		return f
@@ -75,6 +86,7 @@ func (f *fitted) leastSquares() {
 	if f.r2 = ls.R2; f.scale != "raw" {
 		f.r2 = backR2(f.plan, ls.Fitted)
 	}
+	f.likelihood = true
 	f.compile = func(g *grouping) estimator {
 		m := newMoments(f.plan, g)
 		if m.q == 1 {
@@ -117,10 +129,7 @@ func (f *fitted) decay() {
 	_, length := centreScale(f.y)
 	f.r2 = 1 - nl.RSS/(length*length)
 	f.r2Fitted = f.r2
-	f.resid = make([]float64, len(f.y))
-	for i, y := range f.y {
-		f.resid[i] = y - f.at(f.coef, i)
-	}
+	f.resid, f.likelihood = f.residuals(), true
 	f.compile = func(g *grouping) estimator { return newDecay(f.plan, g, nl) }
 	f.robust = func(e estimator) robust {
 		d := e.(*decay)
@@ -131,6 +140,15 @@ func (f *fitted) decay() {
 				return []float64{b[0] - a[0], b[1] - a[1]}
 			}}
 	}
+}
+
+// residuals on the scale fitted, of a model with one predictor.
+func (f *fitted) residuals() []float64 {
+	out := make([]float64, len(f.z))
+	for i, z := range f.z {
+		out[i] = z - f.level(f.coef, f.x[i])
+	}
+	return out
 }
 
 // at is the fitted sinuosity of row i under a set of coefficients.
@@ -148,8 +166,16 @@ func (f *fitted) at(coef []float64, i int) float64 {
 // curve is the fitted sinuosity at x (in the predictor's own unit) of a model
 // with one predictor.
 func (f *fitted) curve(coef []float64, x float64) float64 {
-	if f.form == "floor_decay" {
+	return fromScale(f.scale, f.level(coef, x))
+}
+
+// level is curve on the scale fitted.
+func (f *fitted) level(coef []float64, x float64) float64 {
+	switch f.form {
+	case "floor_decay":
 		return 1 + coef[0]*math.Exp(-coef[1]*x)
+	case "broken_line":
+		return coef[0] + coef[1]*math.Min(x, coef[3]) + coef[2]*math.Max(0, x-coef[3])
 	}
-	return fromScale(f.scale, coef[0]+coef[1]*transform(f.form, f.predictor, x).value)
+	return coef[0] + coef[1]*transform(f.form, f.predictor, x).value
 }

@@ -314,6 +314,8 @@ type Overturning struct {
 type Breakpoint struct {
 	At       float64      `json:"at"`
 	Interval Interval     `json:"interval"`
-	P        float64      `json:"p"`
-	Profile  []CurvePoint `json:"profile"`
+	P        float64      `json:"p"`       // sup-F against a straight line, by sign flips
+	Profile  []CurvePoint `json:"profile"` // R2 (y) of the best broken line at breakpoint x; low and high are not used
+	Model    string       `json:"model"`
+	Text     string       `json:"text"`
 }
