@@ -29,8 +29,6 @@ const accountHelp = `People who sign in to a catalogue.
 The password is asked for on a terminal; otherwise it is the first line of
 standard input; when that is empty one is made up and printed once.`
 
-var roles = []string{"contributor", "curator", "keeper"}
-
 func runAccount(args []string, in io.Reader, out, errOut io.Writer) int {
 	c := newCall("account", "account -catalogue FILE add|password|role|list [NAME] [ROLE]", accountHelp, in, out, errOut)
 	c.withCatalogue()
@@ -49,10 +47,10 @@ func runAccount(args []string, in io.Reader, out, errOut io.Writer) int {
 		return c.bad("%q is not one of add, password, role, list", words[0])
 	case len(words) != want:
 		return c.bad("%s takes %d more words, not %d", words[0], want-1, len(words)-1)
-	case !slices.Contains(roles, *role):
-		return c.bad("%q is not a role. Expected one of: %s", *role, strings.Join(roles, ", "))
-	case words[0] == "role" && !slices.Contains(roles, words[2]):
-		return c.bad("%q is not a role. Expected one of: %s", words[2], strings.Join(roles, ", "))
+	case !slices.Contains(catalogue.Roles, *role):
+		return c.bad("%q is not a role. Expected one of: %s", *role, strings.Join(catalogue.Roles, ", "))
+	case words[0] == "role" && !slices.Contains(catalogue.Roles, words[2]):
+		return c.bad("%q is not a role. Expected one of: %s", words[2], strings.Join(catalogue.Roles, ", "))
 	}
 	ctx := context.Background()
 	s, cleanup, code := c.open(ctx)
@@ -90,13 +88,30 @@ func (c *call) account(ctx context.Context, s *catalogue.Store, words []string, 
 		}
 		fmt.Fprintf(c.out, "%s can sign in as a %s.\n", words[1], role)
 	} else {
-		if err := s.SetPassword(ctx, words[1], password); err != nil {
+		if err := setPasswordOf(ctx, s, words[1], password); err != nil {
 			return err
 		}
 		fmt.Fprintf(c.out, "%s has a new password.\n", words[1])
 	}
 	if made {
 		fmt.Fprintf(c.out, "Password (shown this once): %s\n", password)
+	}
+	return nil
+}
+
+// setPasswordOf sets the password of the account named and ends its sessions.
+func setPasswordOf(ctx context.Context, s *catalogue.Store, name, password string) error {
+	if err := s.SetPassword(ctx, name, password); err != nil {
+		return err
+	}
+	people, err := s.Accounts(ctx)
+	if err != nil {
+		return err
+	}
+	for _, p := range people {
+		if strings.EqualFold(p.Name, strings.TrimSpace(name)) {
+			return endSessions(ctx, s, p.ID)
+		}
 	}
 	return nil
 }
@@ -133,8 +148,11 @@ func readPassword(in io.Reader, prompt io.Writer) (password string, made bool, e
 	if err != nil || password != "" {
 		return password, false, err
 	}
-	return rand.Text(), true, nil
+	return madePassword(), true, nil
 }
+
+// madePassword is a password nobody chose: 26 letters and digits, 130 bits.
+func madePassword() string { return rand.Text() }
 
 func askTwice(f *os.File, prompt io.Writer) (string, error) {
 	fmt.Fprint(prompt, "Password (empty: one is made up): ")

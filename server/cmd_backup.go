@@ -2,11 +2,8 @@ package main
 
 import (
 	"context"
-	"errors"
 	"fmt"
 	"io"
-	"os"
-	"path/filepath"
 
 	"fathombend/catalogue"
 )
@@ -28,7 +25,13 @@ func runBackup(args []string, in io.Reader, out, errOut io.Writer) int {
 	if len(rest) != 1 {
 		return c.bad("name one new file for the copy, not %d", len(rest))
 	}
-	if err := copyCatalogue(context.Background(), *c.catalogue, rest[0]); err != nil {
+	ctx := context.Background()
+	s, cleanup, _, err := openCatalogue(ctx, *c.catalogue, true)
+	if err != nil {
+		return c.failed(err)
+	}
+	defer cleanup()
+	if err := s.Backup(ctx, rest[0]); err != nil {
 		return c.failed(err)
 	}
 	fmt.Fprintf(out, "%s holds a checked copy of %s.\n", rest[0], *c.catalogue)
@@ -48,68 +51,14 @@ func runRestore(args []string, in io.Reader, out, errOut io.Writer) int {
 	if len(rest) != 2 {
 		return c.bad("name the backup and the new catalogue file: restore IN FILE")
 	}
-	if err := copyCatalogue(context.Background(), rest[0], rest[1]); err != nil {
+	if err := mustBeFile(rest[0]); err != nil {
+		return c.failed(err)
+	}
+	if err := catalogue.Restore(context.Background(), rest[0], rest[1]); err != nil {
 		return c.failed(err)
 	}
 	fmt.Fprintf(out, "%s is restored from %s.\n", rest[1], rest[0])
 	return exitOK
-}
-
-// copyCatalogue copies the catalogue at from into the new file at to: first to
-// a name beside it, checked there, so that a file called to is always whole.
-func copyCatalogue(ctx context.Context, from, to string) error {
-	if err := mustBeFile(from); err != nil {
-		return err
-	}
-	if _, err := os.Lstat(to); !errors.Is(err, os.ErrNotExist) {
-		if err != nil {
-			return err
-		}
-		return fmt.Errorf("%s exists already; give a new name", to)
-	}
-	dir, err := os.MkdirTemp(filepath.Dir(to), ".fathombend-copy-")
-	if err != nil {
-		return err
-	}
-	defer os.RemoveAll(dir)
-	src, err := catalogue.Open(ctx, from, catalogue.Options{ReadOnly: true})
-	if err != nil {
-		return err
-	}
-	defer src.Close()
-	part := filepath.Join(dir, "copy.db")
-	if err := src.Backup(ctx, part); err != nil {
-		return err
-	}
-	if err := checkFile(ctx, part); err != nil {
-		return err
-	}
-	// A hard link fails where the name has been taken in the meantime, which a
-	// rename would overwrite; file systems without hard links get the rename.
-	if err := os.Link(part, to); err != nil {
-		if errors.Is(err, os.ErrExist) {
-			return fmt.Errorf("%s exists already; give a new name", to)
-		}
-		return os.Rename(part, to)
-	}
-	return nil
-}
-
-// checkFile opens the catalogue at path and fails when it is not sound.
-func checkFile(ctx context.Context, path string) error {
-	s, err := catalogue.Open(ctx, path, catalogue.Options{ReadOnly: true})
-	if err != nil {
-		return err
-	}
-	defer s.Close()
-	faults, err := s.Integrity(ctx)
-	if err != nil {
-		return err
-	}
-	if len(faults) > 0 {
-		return fmt.Errorf("the copy is not sound: %s", faults[0])
-	}
-	return nil
 }
 
 const checkHelp = `Checks a catalogue file: that the database is whole, that every reference leads

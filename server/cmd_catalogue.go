@@ -10,6 +10,7 @@ import (
 	"path/filepath"
 
 	"fathombend/catalogue"
+	"fathombend/catalogue/land"
 	"fathombend/seed"
 )
 
@@ -29,11 +30,16 @@ func openCatalogue(ctx context.Context, path string, readOnly bool) (s *catalogu
 			return nil, nil, false, err
 		}
 	}
-	s, err = catalogue.Open(ctx, path, catalogue.Options{ReadOnly: readOnly})
+	s, err = catalogue.Open(ctx, path, openOptions(readOnly))
 	if err != nil {
 		return nil, nil, false, err
 	}
 	return s, func() { s.Close() }, false, nil
+}
+
+// openOptions are those of every catalogue this program opens.
+func openOptions(readOnly bool) catalogue.Options {
+	return catalogue.Options{ReadOnly: readOnly, OnLand: land.Contains}
 }
 
 // openDemo fills the demo drawn from law into a temporary folder of its own.
@@ -42,7 +48,9 @@ func openDemo(ctx context.Context, law seed.Law) (*catalogue.Store, func(), erro
 	if err != nil {
 		return nil, nil, fmt.Errorf("no temporary folder for the demo catalogue: %w", err)
 	}
-	s, err := catalogue.Open(ctx, filepath.Join(dir, "demo.db"), catalogue.Options{})
+	o := openOptions(false)
+	o.Throwaway = true
+	s, err := catalogue.Open(ctx, filepath.Join(dir, "demo.db"), o)
 	if err != nil {
 		os.RemoveAll(dir)
 		return nil, nil, err

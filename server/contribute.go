@@ -1,5 +1,393 @@
 package main
 
-import "github.com/labstack/echo/v4"
+import (
+	"context"
+	"errors"
+	"net/http"
+	"net/url"
+	"strconv"
+	"strings"
+	"unicode/utf8"
 
-func (a *App) routesContribute(e *echo.Echo) {}
+	"github.com/labstack/echo/v4"
+
+	"fathombend/catalogue"
+	"fathombend/views"
+)
+
+// contributions are the pages of a contributor.
+type contributions struct {
+	*App
+	forms *formBook
+}
+
+func (a *App) routesContribute(e *echo.Echo) {
+	p := &contributions{App: a, forms: newFormBook()}
+	get(e, "/contribute", p.blank)
+	e.POST("/contribute", p.post)
+	get(e, "/contribute/upload", p.uploadPage)
+	e.POST("/contribute/upload", p.upload)
+	get(e, "/contribute/:id", p.saved)
+	e.POST("/contribute/:id", p.post)
+	e.POST("/contribute/:id/withdraw", p.withdraw)
+}
+
+// blank is an empty form; with ?system= for another measurement of a system,
+// with ?measurement= for a change to an accepted one.
+func (p *contributions) blank(c echo.Context) error {
+	q, err := params(c)
+	if err != nil {
+		return err
+	}
+	if err := allow(q, []string{"system", "measurement"}); err != nil {
+		return err
+	}
+	u := p.user(c)
+	v := url.Values{}
+	switch {
+	case q.Get("measurement") != "":
+		row, revision, err := p.store.Measurement(c.Request().Context(), q.Get("measurement"))
+		if err != nil {
+			return err
+		}
+		v = formOfRow(*row, nil)
+		v.Set("base_revision", strconv.FormatInt(revision, 10))
+	default:
+		row := catalogue.NewRow()
+		row.Contributor = u.Credit
+		if slug := q.Get("system"); slug != "" {
+			if err := p.ofSystem(c.Request().Context(), slug, &row); err != nil {
+				return err
+			}
+		}
+		v = formOfRow(row, nil)
+		for _, name := range []string{"sinuosity_kind", "measured_line", "licence"} {
+			v.Set(name, "")
+		}
+	}
+	r := readRecord(v)
+	r.shown = map[string]string{}
+	return p.show(c, http.StatusOK, r, views.ContributeForm{})
+}
+
+// ofSystem fills the columns of the whole system.
+func (p *contributions) ofSystem(ctx context.Context, slug string, row *catalogue.Row) error {
+	d, err := p.store.System(ctx, slug)
+	if err != nil {
+		return err
+	}
+	best := d.Best()
+	for _, c := range catalogue.Columns {
+		if c.Table == catalogue.TableSystems && c.Name != "measurement" {
+			if e := c.Set(row, c.Get(&best)); e != nil {
+				return e
+			}
+		}
+	}
+	return nil
+}
+
+// saved is a submission of one's own: a form while it can still change.
+func (p *contributions) saved(c echo.Context) error {
+	s, err := p.own(c)
+	if err != nil {
+		return err
+	}
+	if s.State == "accepted" || s.State == "withdrawn" {
+		return render(c, http.StatusOK, views.SettledPage(p.page(c, s.Row.SystemName, "contribute"), reviewOf(s)))
+	}
+	r := recordOf(s)
+	if s.State == "returned" {
+		if err := p.check(c.Request().Context(), r); err != nil {
+			return err
+		}
+	}
+	return p.show(c, http.StatusOK, r, p.formState(s))
+}
+
+// recordOf is a stored submission as its form holds it.
+func recordOf(s *catalogue.Submission) *record {
+	v := formOfRow(s.Row, s.Typed)
+	v.Set("base_revision", strconv.FormatInt(s.BaseRevision, 10))
+	v.Set("centreline", s.Centreline)
+	if s.State == "draft" {
+		for _, name := range []string{"sinuosity_kind", "measured_line"} {
+			// A draft keeps what was not chosen yet as the default; asking again
+			// is safer than taking it for an answer.
+			if c, ok := catalogue.ColumnByName(name); ok && c.Get(&s.Row) == c.Default && s.Row.Measurement == "" {
+				v.Set(name, "")
+			}
+		}
+	}
+	for key, reason := range s.Overrides {
+		v.Set("override."+key, reason)
+	}
+	r := readRecord(v)
+	r.shown = map[string]string{}
+	return r
+}
+
+func (p *contributions) formState(s *catalogue.Submission) views.ContributeForm {
+	return views.ContributeForm{ID: s.ID, State: s.State, Comment: s.Comment, Messages: s.Messages}
+}
+
+// own finds the submission of the address; another person's is not there.
+func (p *contributions) own(c echo.Context) (*catalogue.Submission, error) {
+	id, err := idOf(c)
+	if err != nil {
+		return nil, err
+	}
+	s, err := p.store.Submission(c.Request().Context(), id)
+	if err != nil {
+		return nil, err
+	}
+	if s.By.ID != p.user(c).ID {
+		return nil, &catalogue.Error{Code: catalogue.NotFound, Message: "There is no such record of yours. A curator finds what others sent under Review."}
+	}
+	return s, nil
+}
+
+// check runs the checks of the import on what could be read.
+func (a *App) check(ctx context.Context, r *record) error {
+	findings, err := a.store.Check(ctx, r.row)
+	if err != nil {
+		return err
+	}
+	r.take(findings)
+	return nil
+}
+
+// show renders the form. f holds what the record itself does not.
+func (p *contributions) show(c echo.Context, status int, r *record, f views.ContributeForm) error {
+	f.Action = "/contribute"
+	if f.ID != 0 {
+		f.Action += "/" + strconv.FormatInt(f.ID, 10)
+	}
+	p.fill(r, &f)
+	if err := p.changes(c.Request().Context(), r, &f); err != nil {
+		return err
+	}
+	var mine []views.Submitted
+	if f.ID == 0 && f.Measurement == "" {
+		var err error
+		if mine, err = p.mine(c); err != nil {
+			return err
+		}
+	}
+	title := "Contribute"
+	if f.Measurement != "" {
+		title = "Change " + f.Measurement
+	} else if f.ID != 0 {
+		title = r.row.SystemName
+	}
+	return render(c, status, views.ContributePage(p.page(c, title, "contribute"), f, mine))
+}
+
+// fill puts the record into its form.
+func (a *App) fill(r *record, f *views.ContributeForm) {
+	f.Groups = r.groups()
+	f.Errors, f.Warned = r.summary()
+	f.Measurement, f.System = r.row.Measurement, r.row.System
+	f.BaseRevision = r.typed.Get("base_revision")
+	if f.Measurement != "" || f.System != "" {
+		f.SystemName = r.row.SystemName
+	}
+	f.Centreline, f.Message = r.typed.Get("centreline"), r.typed.Get("message")
+	if f.Line != nil && f.Line.Error != "" {
+		f.Errors = append(f.Errors, views.FormError{Field: "centreline", Label: "Centreline", Message: f.Line.Error})
+	}
+	if f.Token = r.typed.Get("form_token"); f.Token == "" {
+		f.Token = newFormToken()
+	}
+}
+
+// changes lists what the form would change of an accepted record.
+func (p *contributions) changes(ctx context.Context, r *record, f *views.ContributeForm) error {
+	if r.row.Measurement == "" {
+		return nil
+	}
+	current, _, err := p.store.Measurement(ctx, r.row.Measurement)
+	if catalogue.CodeOf(err) == catalogue.NotFound {
+		return nil
+	}
+	if err != nil {
+		return err
+	}
+	row := r.row
+	row.Normalise()
+	f.Changes = catalogue.Diff(current, &row)
+	return nil
+}
+
+func (p *contributions) mine(c echo.Context) ([]views.Submitted, error) {
+	all, err := p.store.Submissions(c.Request().Context(), "", p.user(c).ID)
+	if err != nil {
+		return nil, err
+	}
+	out := make([]views.Submitted, 0, len(all))
+	for i := range all {
+		out = append(out, submitted(&all[len(all)-1-i]))
+	}
+	return out, nil
+}
+
+func submitted(s *catalogue.Submission) views.Submitted {
+	name := s.Row.SystemName
+	if name == "" {
+		name = s.Typed["system_name"]
+	}
+	return views.Submitted{ID: s.ID, SystemName: name, Sinuosity: num(s.Row.Sinuosity), State: s.State, At: s.UpdatedAt, Changes: s.Current != nil, Comment: s.Comment}
+}
+
+// post takes the form: check, measure, fill, save or submit, as the button
+// pressed says.
+func (p *contributions) post(c echo.Context) error {
+	form, err := formOf(c)
+	if err != nil {
+		return err
+	}
+	var before *catalogue.Submission
+	if c.Param("id") != "" {
+		if before, err = p.own(c); err != nil {
+			return err
+		}
+	}
+	action, err := oneOf(form, "action", "check", []string{"check", "measure", "fill", "save", "submit"})
+	if err != nil {
+		return err
+	}
+	r := readRecord(form)
+	line, report := measureLine(c, r)
+	f := views.ContributeForm{Line: report}
+	if before != nil {
+		f = p.formState(before)
+		f.Line = report
+	}
+	if action == "fill" && line != nil {
+		report.Filled = r.fillFrom(line)
+		r = readRecord(r.typed)
+	}
+	if action == "save" || action == "submit" {
+		return p.keep(c, r, line, f, action)
+	}
+	if action == "check" {
+		r.need()
+	}
+	if err := p.check(c.Request().Context(), r); err != nil {
+		return err
+	}
+	f.Checked = action == "check" && len(r.errors) == 0 && r.unanswered() == 0 && (report == nil || report.Error == "")
+	return p.show(c, http.StatusOK, r, f)
+}
+
+// keep saves a draft or sends the record to the curators.
+func (p *contributions) keep(c echo.Context, r *record, line *measuredLine, f views.ContributeForm, action string) error {
+	ctx, u := c.Request().Context(), p.user(c)
+	refused := f.Line != nil && f.Line.Error != ""
+	if action == "submit" {
+		r.need()
+		if err := p.check(ctx, r); err != nil {
+			return err
+		}
+		refused = refused || len(r.errors) > 0 || r.unanswered() > 0
+	} else {
+		refused = refused || r.tooLong()
+	}
+	if refused {
+		return p.show(c, http.StatusUnprocessableEntity, r, f)
+	}
+	s := r.submission(line)
+	key := strconv.FormatInt(u.ID, 10) + " " + r.typed.Get("form_token")
+	id, err := p.forms.once(key, contentOf(r.typed), func(made int64) (int64, error) {
+		if s.ID = f.ID; s.ID == 0 {
+			s.ID = made
+		}
+		if action == "save" {
+			return p.store.SaveDraft(ctx, u.ID, s)
+		}
+		id, err := p.store.Submit(ctx, u.ID, s)
+		if message := r.typed.Get("message"); err == nil && strings.TrimSpace(message) != "" {
+			err = p.store.Comment(ctx, id, u.ID, message)
+		}
+		return id, err
+	})
+	if err != nil {
+		return p.refused(c, r, f, err)
+	}
+	if action == "save" {
+		p.notice(c, "The draft is saved.")
+	} else {
+		p.notice(c, "Sent. A curator reads it before it joins the catalogue; you can still change it until then.")
+	}
+	return c.Redirect(http.StatusSeeOther, "/contribute/"+strconv.FormatInt(id, 10))
+}
+
+// refused shows what the catalogue did not take, beside its field where it has
+// one, with everything typed.
+func (p *contributions) refused(c echo.Context, r *record, f views.ContributeForm, err error) error {
+	var e *catalogue.Error
+	if !errors.As(err, &e) || (e.Code != catalogue.Invalid && e.Code != catalogue.Conflict) {
+		return err
+	}
+	var found catalogue.Findings
+	if errors.As(err, &found) {
+		r.take(found)
+	}
+	status := http.StatusUnprocessableEntity
+	if e.Code == catalogue.Conflict {
+		status = http.StatusConflict
+	}
+	if _, ok := catalogue.ColumnByName(e.Field); ok && e.Field != "measurement" && e.Field != "system" {
+		if r.errors[e.Field] == "" && len(found) == 0 {
+			r.errors[e.Field] = sentence(e.Message, e.Expected)
+		}
+	} else {
+		f.Refusal = sentence(e.Message, e.Expected)
+	}
+	return p.show(c, status, r, f)
+}
+
+// tooLong marks texts that are longer than their column: a draft keeps what is
+// unreadable, not what has no end.
+func (r *record) tooLong() (found bool) {
+	for _, c := range formColumns {
+		most := c.MaxLen
+		if c.Numeric() {
+			most = 200
+		}
+		if n := utf8.RuneCountInString(r.typed.Get(c.Name)); n > most {
+			r.errors[c.Name] = sentence("the text is "+strconv.Itoa(n)+" characters long", "at most "+strconv.Itoa(most)+" characters")
+			found = true
+		}
+	}
+	return found
+}
+
+// submission is the record as the catalogue keeps it.
+func (r *record) submission(line *measuredLine) catalogue.Submission {
+	s := catalogue.Submission{Row: r.row, Overrides: r.overrides, Typed: r.unread}
+	if r.checkedAll {
+		// A reason for what is no longer odd would only puzzle the curator.
+		s.Overrides = map[string]string{}
+		for _, f := range r.findings {
+			s.Overrides[f.Key] = r.overrides[f.Key]
+		}
+	}
+	s.BaseRevision, _ = strconv.ParseInt(r.typed.Get("base_revision"), 10, 64)
+	if line != nil {
+		s.Centreline, s.CentrelineSettings, s.CentrelineSinuosities = line.geoJSON, line.settings, line.sinuosities()
+	}
+	return s
+}
+
+func (p *contributions) withdraw(c echo.Context) error {
+	s, err := p.own(c)
+	if err != nil {
+		return err
+	}
+	if err := p.store.Withdraw(c.Request().Context(), s.ID, p.user(c).ID); err != nil {
+		return err
+	}
+	p.notice(c, "Taken back. It is kept in your list.")
+	return c.Redirect(http.StatusSeeOther, "/contribute#mine")
+}

@@ -148,11 +148,11 @@ func (a *App) page(c echo.Context, title, nav string) views.Page {
 		p.User = &views.User{Name: u.Name, Credit: u.Credit, Role: u.Role}
 	}
 	if p.User.Curates() {
-		waiting, err := a.store.Submissions(ctx, "submitted", 0)
+		waiting, err := a.store.CountSubmissions(ctx, "submitted", 0)
 		if err != nil {
 			a.log.Error("counting submissions failed", "err", err)
 		}
-		p.Pending = len(waiting)
+		p.Pending = waiting
 	}
 	return p
 }

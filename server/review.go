@@ -1,5 +1,393 @@
 package main
 
-import "github.com/labstack/echo/v4"
+import (
+	"context"
+	"errors"
+	"net/http"
+	"net/url"
+	"strconv"
+	"strings"
 
-func (a *App) routesReview(e *echo.Echo) {}
+	"github.com/labstack/echo/v4"
+
+	"fathombend/catalogue"
+	"fathombend/views"
+)
+
+// reviews are the pages of a curator.
+type reviews struct{ *App }
+
+// queuePage is how many waiting records one page of the queue shows.
+const queuePage = 50
+
+func (a *App) routesReview(e *echo.Echo) {
+	p := &reviews{a}
+	get(e, "/review", p.queue)
+	get(e, "/review/activity", p.activity)
+	e.POST("/review/batch/:id", p.acceptBatch)
+	get(e, "/review/:id", p.one)
+	e.POST("/review/:id", p.decide)
+	get(e, "/review/:id/edit", p.edit)
+	e.POST("/review/:id/edit", p.acceptEdits)
+}
+
+func (p *reviews) queue(c echo.Context) error {
+	ctx := c.Request().Context()
+	q, err := params(c)
+	if err != nil {
+		return err
+	}
+	if err := allow(q, []string{"page"}); err != nil {
+		return err
+	}
+	n, err := whole(q, "page", 1, 1, 1_000_000)
+	if err != nil {
+		return err
+	}
+	total, err := p.store.CountSubmissions(ctx, "submitted", 0)
+	if err != nil {
+		return err
+	}
+	waiting, err := p.store.SubmissionsPage(ctx, "submitted", 0, queuePage, (n-1)*queuePage)
+	if err != nil {
+		return err
+	}
+	v := views.Queue{Total: total, Page: n, Pages: (total + queuePage - 1) / queuePage}
+	for i := range waiting {
+		one, err := p.queued(ctx, &waiting[i])
+		if err != nil {
+			return err
+		}
+		v.Add(one, waiting[i].Batch)
+	}
+	return render(c, http.StatusOK, views.QueuePage(p.page(c, "Review", "review"), v))
+}
+
+func (p *reviews) queued(ctx context.Context, s *catalogue.Submission) (views.Queued, error) {
+	findings, err := p.store.Check(ctx, s.Row)
+	if err != nil {
+		return views.Queued{}, err
+	}
+	q := views.Queued{ID: s.ID, SystemName: s.Row.SystemName, Sinuosity: num(s.Row.Sinuosity), By: s.By.Credit, At: s.At, Odd: len(findings), Source: s.Row.Source}
+	if s.Current != nil {
+		q.Measured, q.Changes = s.Current.Measurement, len(s.Changes)
+	}
+	return q, nil
+}
+
+// acceptBatch accepts all that waits of one imported file.
+func (p *reviews) acceptBatch(c echo.Context) error {
+	form, err := formOf(c)
+	if err != nil {
+		return err
+	}
+	id, err := idOf(c)
+	if err != nil {
+		return err
+	}
+	n, err := p.store.AcceptBatch(c.Request().Context(), id, p.user(c).ID, form.Get("comment"))
+	if err != nil {
+		return err
+	}
+	p.notice(c, strconv.Itoa(n)+" records accepted.")
+	return c.Redirect(http.StatusSeeOther, "/review")
+}
+
+func (p *reviews) submission(c echo.Context) (*catalogue.Submission, error) {
+	id, err := idOf(c)
+	if err != nil {
+		return nil, err
+	}
+	s, err := p.store.Submission(c.Request().Context(), id)
+	if err != nil {
+		return nil, err
+	}
+	if s.State == "draft" {
+		return nil, &catalogue.Error{Code: catalogue.NotFound, Message: "There is no such record to review: it is a draft, which only its author sees."}
+	}
+	return s, nil
+}
+
+func (p *reviews) one(c echo.Context) error {
+	s, err := p.submission(c)
+	if err != nil {
+		return err
+	}
+	return p.show(c, http.StatusOK, s, views.Review{})
+}
+
+// show renders one submission; v holds what was typed and what went wrong.
+func (p *reviews) show(c echo.Context, status int, s *catalogue.Submission, v views.Review) error {
+	ctx := c.Request().Context()
+	full := reviewOf(s)
+	full.Comment, full.Errors, full.Conflict, full.ConflictNote = v.Comment, v.Errors, v.Conflict, v.ConflictNote
+	findings, err := p.store.Check(ctx, s.Row)
+	if err != nil {
+		return err
+	}
+	for _, f := range findings {
+		full.Findings = append(full.Findings, views.ReviewFinding{Column: f.Column, Message: sentence(f.Message, f.Expected), Reason: s.Overrides[f.Key], Hard: f.Hard})
+	}
+	if full.Slug, err = p.slugOf(ctx, s); err != nil {
+		return err
+	}
+	full.NewSystem = full.Slug == ""
+	if full.Next, err = p.next(ctx, s.ID); err != nil {
+		return err
+	}
+	return render(c, status, views.ReviewPage(p.page(c, s.Row.SystemName, "review"), full))
+}
+
+// reviewOf is a submission as its page shows it.
+func reviewOf(s *catalogue.Submission) views.Review {
+	row := s.Row
+	row.Normalise()
+	v := views.Review{
+		ID: s.ID, State: s.State, Row: row, Sinuosity: num(row.Sinuosity), By: s.By.Name, Credit: s.By.Credit, ORCID: s.By.ORCID,
+		At: s.At, Messages: s.Messages, Changes: s.Changes, Groups: recordGroups(&row),
+	}
+	if v.By == "" {
+		v.By = s.By.Credit
+	}
+	if s.Current != nil {
+		v.Measurement = s.Current.Measurement
+	}
+	if s.Centreline != "" {
+		v.Line = storedLine(s)
+	}
+	return v
+}
+
+// recordGroups lists what a row says, by group.
+func recordGroups(row *catalogue.Row) []views.RecordGroup {
+	var out []views.RecordGroup
+	for _, title := range catalogue.Groups {
+		g := views.RecordGroup{Title: strings.ToUpper(title[:1]) + title[1:]}
+		for _, c := range catalogue.Columns {
+			if text := c.Get(row); c.Group == title && text != "" {
+				g.Fields = append(g.Fields, views.RecordField{Column: c.Name, Value: text, Unit: c.Unit, Choice: len(c.Choices) > 0})
+			}
+		}
+		if len(g.Fields) > 0 {
+			out = append(out, g)
+		}
+	}
+	return out
+}
+
+// slugOf is the accepted system a submission belongs to, "" when it is new.
+func (p *reviews) slugOf(ctx context.Context, s *catalogue.Submission) (string, error) {
+	if s.Current != nil {
+		return s.Current.System, nil
+	}
+	slug := s.Row.System
+	if slug == "" {
+		slug = catalogue.Slug(s.Row.SystemName)
+	}
+	d, err := p.store.System(ctx, slug)
+	switch {
+	case catalogue.CodeOf(err) == catalogue.NotFound:
+		return "", nil
+	case err != nil:
+		return "", err
+	case s.Row.System == "" && !strings.EqualFold(d.Name, s.Row.SystemName):
+		return "", nil
+	}
+	return slug, nil
+}
+
+// next is the record that waits longest beside this one.
+func (p *reviews) next(ctx context.Context, id int64) (int64, error) {
+	waiting, err := p.store.SubmissionsPage(ctx, "submitted", 0, 2, 0)
+	if err != nil {
+		return 0, err
+	}
+	for _, s := range waiting {
+		if s.ID != id {
+			return s.ID, nil
+		}
+	}
+	return 0, nil
+}
+
+// decide takes the curator's word on one submission.
+func (p *reviews) decide(c echo.Context) error {
+	form, err := formOf(c)
+	if err != nil {
+		return err
+	}
+	action, err := oneOf(form, "action", "comment", []string{"accept", "return", "comment"})
+	if err != nil {
+		return err
+	}
+	s, err := p.submission(c)
+	if err != nil {
+		return err
+	}
+	ctx, by, comment := c.Request().Context(), p.user(c).ID, form.Get("comment")
+	done, to := "", "/review"
+	switch action {
+	case "accept":
+		done, err = s.Row.SystemName+" is accepted and part of the catalogue.", p.store.Accept(ctx, s.ID, by, comment)
+	case "return":
+		done, err = s.Row.SystemName+" is returned to its contributor.", p.store.Return(ctx, s.ID, by, comment)
+	case "comment":
+		done, to, err = "Your comment is kept.", "/review/"+strconv.FormatInt(s.ID, 10), p.store.Comment(ctx, s.ID, by, comment)
+	}
+	if err != nil {
+		return p.refused(c, s, comment, err)
+	}
+	p.notice(c, done)
+	return c.Redirect(http.StatusSeeOther, to)
+}
+
+// refused shows the submission again with what went wrong: a missing comment
+// beside its field, a conflict with both versions. The comment typed is kept.
+func (p *reviews) refused(c echo.Context, s *catalogue.Submission, comment string, err error) error {
+	var e *catalogue.Error
+	if !errors.As(err, &e) || (e.Code != catalogue.Invalid && e.Code != catalogue.Conflict) {
+		return err
+	}
+	v := views.Review{Comment: comment}
+	if e.Code == catalogue.Invalid {
+		v.Errors = map[string]string{"comment": sentence(e.Message, e.Expected)}
+		return p.show(c, http.StatusUnprocessableEntity, s, v)
+	}
+	v.ConflictNote = sentence(e.Message, "")
+	var two *catalogue.VersionConflict
+	if errors.As(err, &two) {
+		v.Conflict = threeWays(two)
+	}
+	// Someone else may have decided on it: show it as it stands now.
+	now, err := p.submission(c)
+	if err != nil {
+		return err
+	}
+	return p.show(c, http.StatusConflict, now, v)
+}
+
+// threeWays lines both versions up with what their author saw.
+func threeWays(v *catalogue.VersionConflict) []views.ThreeWay {
+	var out []views.ThreeWay
+	touched := map[string]bool{}
+	for _, ch := range append(append([]catalogue.FieldChange{}, v.Since...), v.Proposal...) {
+		touched[ch.Column] = true
+	}
+	for _, c := range catalogue.Columns {
+		if touched[c.Name] {
+			out = append(out, views.ThreeWay{Column: c.Name, Base: c.Get(&v.Base), Now: c.Get(&v.Current), Proposed: c.Get(&v.Proposed)})
+		}
+	}
+	return out
+}
+
+// edit is the form in a curator's hands: the record as proposed.
+func (p *reviews) edit(c echo.Context) error {
+	s, err := p.submission(c)
+	if err != nil {
+		return err
+	}
+	if s.State != "submitted" {
+		return &catalogue.Error{Code: catalogue.Conflict, Message: "This record is " + s.State + " by now; there is nothing to edit before accepting."}
+	}
+	r := recordOf(s)
+	r.typed.Set("base_revision", strconv.FormatInt(s.CurrentRevision, 10))
+	if err := p.check(c.Request().Context(), r); err != nil {
+		return err
+	}
+	return p.showEdit(c, http.StatusOK, s, r, "")
+}
+
+func (p *reviews) showEdit(c echo.Context, status int, s *catalogue.Submission, r *record, refusal string) error {
+	f := views.ContributeForm{Action: "/review/" + strconv.FormatInt(s.ID, 10) + "/edit", ID: s.ID, State: s.State, Curator: true, Refusal: refusal}
+	if s.Current != nil {
+		row := r.row
+		row.Normalise()
+		f.Changes = catalogue.Diff(s.Current, &row)
+	}
+	p.fill(r, &f)
+	return render(c, status, views.ReviewEditPage(p.page(c, "Accept with edits", "review"), f))
+}
+
+func (p *reviews) acceptEdits(c echo.Context) error {
+	form, err := formOf(c)
+	if err != nil {
+		return err
+	}
+	action, err := oneOf(form, "action", "check", []string{"check", "accept"})
+	if err != nil {
+		return err
+	}
+	s, err := p.submission(c)
+	if err != nil {
+		return err
+	}
+	ctx := c.Request().Context()
+	r := readRecord(keptByCurator(form, s))
+	r.lenient = true
+	r.need()
+	if err := p.check(ctx, r); err != nil {
+		return err
+	}
+	switch {
+	case action == "check":
+		return p.showEdit(c, http.StatusOK, s, r, "")
+	case len(r.errors) > 0:
+		return p.showEdit(c, http.StatusUnprocessableEntity, s, r, "")
+	}
+	seen, _ := strconv.ParseInt(form.Get("base_revision"), 10, 64)
+	err = p.store.AcceptEdits(ctx, s.ID, p.user(c).ID, r.row, seen, form.Get("message"))
+	if err == nil {
+		p.notice(c, r.row.SystemName+" is accepted with your edits.")
+		return c.Redirect(http.StatusSeeOther, "/review")
+	}
+	var e *catalogue.Error
+	if !errors.As(err, &e) || (e.Code != catalogue.Invalid && e.Code != catalogue.Conflict) {
+		return err
+	}
+	status, note := http.StatusUnprocessableEntity, sentence(e.Message, e.Expected)
+	if e.Code == catalogue.Conflict {
+		status = http.StatusConflict
+		// What the curator now sees beside the edits is the newest version, so
+		// sending the form again decides between the two knowingly.
+		if s, err = p.submission(c); err != nil {
+			return err
+		}
+		r.typed.Set("base_revision", strconv.FormatInt(s.CurrentRevision, 10))
+		note += " The fields below hold your edits; the table of changes compares them with what is accepted now."
+	}
+	return p.showEdit(c, status, s, r, note)
+}
+
+// keptByCurator lets a curator change the record but not which record it is.
+func keptByCurator(form url.Values, s *catalogue.Submission) url.Values {
+	form.Set("measurement", s.Row.Measurement)
+	form.Set("system", s.Row.System)
+	return form
+}
+
+func (p *reviews) activity(c echo.Context) error {
+	sets, err := p.store.Activity(c.Request().Context(), 100)
+	if err != nil {
+		return err
+	}
+	var items []views.Activity
+	for _, s := range sets {
+		items = append(items, activityOf(s))
+	}
+	return render(c, http.StatusOK, views.ActivityPage(p.page(c, "Activity", "review"), items))
+}
+
+func activityOf(s catalogue.ChangeSet) views.Activity {
+	a := views.Activity{At: s.At, Who: s.Who, Why: s.Why, Created: s.Created, Changed: s.Changed}
+	if s.Author != "" && s.Author != s.Who {
+		a.Author = s.Author
+	}
+	switch {
+	case s.Systems == 1:
+		a.What, a.Address = s.SystemName, "/systems/"+url.PathEscape(s.System)
+	case s.Systems > 1:
+		a.What = strconv.Itoa(s.Systems) + " systems"
+	}
+	return a
+}

@@ -151,7 +151,7 @@ func shownHost(asked, taken string) string {
 // openServed opens the file asked for, or the demo.
 func openServed(ctx context.Context, cfg serveConfig) (*catalogue.Store, func(), error) {
 	if strings.TrimSpace(cfg.Catalogue) != "" {
-		s, err := catalogue.Open(ctx, cfg.Catalogue, catalogue.Options{ReadOnly: cfg.ReadOnly})
+		s, err := catalogue.Open(ctx, cfg.Catalogue, openOptions(cfg.ReadOnly))
 		if err != nil {
 			return nil, nil, err
 		}

@@ -1,0 +1,203 @@
+package views
+
+import (
+	"net/url"
+	"strings"
+	"time"
+
+	"fathombend/catalogue"
+)
+
+// FormField is one column of the measurement table as a field of a form.
+type FormField struct {
+	Column   catalogue.Column
+	Value    string
+	Units    []UnitChoice // more than one = a choice of unit
+	Unit     string       // the unit chosen
+	Error    string
+	Warnings []FormWarning
+	Shown    string // a conversion that was made, in words
+}
+
+// UnitChoice is a unit a field can be typed in. Column is the name of the
+// imported column that takes this unit.
+type UnitChoice struct{ Column, Text string }
+
+// FormWarning is a check that finds the value odd; a reason overrides it.
+type FormWarning struct {
+	Key, Message, Expected string
+	Reason, ReasonError    string
+}
+
+// FormGroup is a fieldset. Folded ones start closed.
+type FormGroup struct {
+	Key, Title, Hint string
+	Fields           []FormField
+	Folded, Open     bool
+	Filled           int // fields that hold something
+}
+
+// FormError is one line of the summary on top of a form.
+type FormError struct{ Field, Label, Message string }
+
+// LineReport is what a pasted centreline measures.
+type LineReport struct {
+	Error  string
+	Facts  []LineFact
+	Notes  []string
+	Filled []string // columns that took their value from the line
+}
+
+// LineFact is one measured quantity of a line and the column it can fill.
+type LineFact struct{ Label, Value, Column string }
+
+// ContributeForm is the form for one measurement.
+type ContributeForm struct {
+	Action       string // where it posts to
+	ID           int64  // 0 = not saved yet
+	State        string
+	Token        string // names this filling-in of the form: sent twice, it counts once
+	Measurement  string // accepted record it changes, "" = new
+	SystemName   string // of the accepted system it adds to or changes, "" = new
+	System       string // its slug
+	BaseRevision string // revision of the record the author saw
+	Refusal      string // why it was not taken, when no field is to blame
+	Groups       []FormGroup
+	Errors       []FormError
+	Warned       int // warnings without a reason
+	Centreline   string
+	Line         *LineReport
+	Message      string // word to the curator
+	Changes      []catalogue.FieldChange
+	Comment      string // the curator's, when it was returned
+	Messages     []catalogue.Message
+	Curator      bool // a curator edits before accepting
+	Checked      bool // the checks ran and found nothing to mend
+}
+
+// Submitted is one line of a person's list.
+type Submitted struct {
+	ID         int64
+	SystemName string
+	Sinuosity  float64
+	State      string
+	At         time.Time
+	Changes    bool
+	Comment    string
+}
+
+var fieldLabels = map[string]string{
+	"system_name": "System name", "latitude_deg": "Latitude", "longitude_deg": "Longitude",
+	"start_latitude_deg": "Upstream end, latitude", "start_longitude_deg": "Upstream end, longitude",
+	"end_latitude_deg": "Downstream end, latitude", "end_longitude_deg": "Downstream end, longitude",
+	"water_depth_m": "Water depth", "age_ma": "Age", "age_min_ma": "Youngest age", "age_max_ma": "Oldest age",
+	"unit": "Chronostratigraphic unit", "palaeolatitude_deg": "Palaeolatitude",
+	"palaeolatitude_se_deg": "Its standard error", "palaeolatitude_method": "How the palaeolatitude was found",
+	"sinuosity_kind": "Which sinuosity", "sinuosity_se": "Standard error of sinuosity",
+	"window_m": "Window", "windows": "Number of windows", "vertex_spacing_m": "Vertex spacing",
+	"wavelength_m": "Wavelength", "amplitude_m": "Amplitude", "radius_m": "Radius of curvature",
+	"reach_length_m": "Reach length", "valley_slope_se": "Standard error of valley slope",
+	"slope_kind": "Which slope", "slope_state": "Slope today or restored", "channel_width_m": "Channel width",
+	"channel_depth_m": "Channel depth", "levee_left_m": "Left levee height", "levee_right_m": "Right levee height",
+	"pixel_m": "Pixel", "source_doi": "DOI of the source", "source_locator": "Page, figure or table",
+	"catchment_area_km2": "Catchment area", "catchment_latitude_deg": "Catchment latitude",
+	"measured_line": "Measured line", "net_to_gross": "Net to gross", "contributor": "Credit line",
+}
+
+// FieldLabel is the name of a column as a form and a difference show it.
+func FieldLabel(column string) string {
+	if l, ok := fieldLabels[column]; ok {
+		return l
+	}
+	s := strings.ReplaceAll(column, "_", " ")
+	if s == "" {
+		return ""
+	}
+	return strings.ToUpper(s[:1]) + s[1:]
+}
+
+// ChoiceText is a choice as a page shows it.
+func ChoiceText(v string) string {
+	switch v {
+	case "":
+		return "not given"
+	case "dem":
+		return "DEM"
+	case "p90":
+		return "90th percentile of windows"
+	case "peak", "mean":
+		return v + " of windows"
+	case "bend":
+		return "one bend"
+	case "reach":
+		return "whole reach"
+	case "seismic_3d":
+		return "seismic, 3D"
+	case "seismic_2d":
+		return "seismic, 2D"
+	}
+	return strings.ReplaceAll(v, "_", " ")
+}
+
+// stateText says where a submission stands, in the words of a contributor.
+func stateText(state string) string {
+	switch state {
+	case "draft":
+		return "draft, not sent"
+	case "submitted":
+		return "waiting for a curator"
+	case "returned":
+		return "returned to you"
+	}
+	return state
+}
+
+func dateText(t time.Time) string {
+	if t.IsZero() {
+		return unknownMark
+	}
+	return t.UTC().Format("2 January 2006")
+}
+
+func dateTimeText(t time.Time) string {
+	if t.IsZero() {
+		return unknownMark
+	}
+	return t.UTC().Format("2 January 2006, 15:04 UTC")
+}
+
+// systemAddress is the page of a system.
+func systemAddress(slug string) string { return "/systems/" + url.PathEscape(slug) }
+
+func (f FormField) long() bool {
+	return f.Column.Name == "notes" || f.Column.MaxLen >= 4000
+}
+
+func (f FormField) wide() bool { return f.long() || len(f.Warnings) > 0 }
+
+func (f FormField) describedBy() string {
+	ids := []string{}
+	if f.Error != "" {
+		ids = append(ids, f.Column.Name+"-error")
+	}
+	ids = append(ids, f.Column.Name+"-hint")
+	return strings.Join(ids, " ")
+}
+
+// Upload is the state of the page for a CSV file.
+type Upload struct {
+	Why     string
+	Partial bool
+	File    string
+	Errors  map[string]string
+	Report  *UploadReport
+}
+
+// UploadReport is what an import did.
+type UploadReport struct {
+	Stored                           bool
+	New, Changed, Identical, Refused int
+	Unknown                          []string
+	Problems, Warnings, Conversions  []catalogue.RowProblem
+	More                             []string
+}
