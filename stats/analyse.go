@@ -47,6 +47,7 @@ func runStudies(ctx context.Context, used []UsedRow, all *table, req *Request, p
 	var out []*study
 	for i, t := range tables {
 		s := newStudy(t, req, kinds[i])
+		s.seed ^= uint64(i) * groupSeeds
 		part := func(p float64) {
 			if progress != nil {
 				progress((float64(i) + p) / float64(len(tables)))
@@ -85,6 +86,13 @@ func report(ctx context.Context, a *Analysis, studies []*study, req *Request) (e
 	if a.Breakpoint, err = main.breakpoint(ctx); err != nil {
 		return err
 	}
+	if a.Overturning, err = main.overturning(ctx); err != nil {
+		return err
+	}
+	if a.Groups, err = groupDifferences(ctx, main, studies); err != nil {
+		return err
+	}
+	a.Selection = main.selection(leading(main.out))
 	a.Headline = main.headline(main.out)
 	for _, s := range studies {
 		sub := *a

@@ -8,10 +8,11 @@ import (
 
 // rowBudget and workBudget keep long work within bounds; what is cut is said.
 const (
-	rowBudget  = 2_000_000   // rows x resamples of the row bootstrap shown beside
-	flipBudget = 2_000_000   // clusters x sign flips of one test
-	backBudget = 20_000_000  // rows x resamples of a transformed response, or of a form without cross-products
-	pairBudget = 400_000_000 // pairs x resamples of Theil-Sen
+	rowBudget   = 2_000_000   // rows x resamples of the row bootstrap shown beside
+	flipBudget  = 2_000_000   // clusters x sign flips of one test
+	backBudget  = 20_000_000  // rows x resamples of a transformed response, or of a form without cross-products
+	noiseBudget = 2_000_000   // rows x resamples with errors of measurement
+	pairBudget  = 400_000_000 // pairs x resamples of Theil-Sen
 )
 
 // study is one table (all rows, or the rows of one kind) with its models, their
@@ -30,11 +31,12 @@ type study struct {
 	shareJack [][]float64
 	jobOf     []int // by model: its place among the jobs, or -1
 	shareJob  int
+	seed      uint64
 	out       []Model
 }
 
 func newStudy(t *table, req *Request, kind string) *study {
-	s := &study{req: req, t: t, kind: kind, shareJob: -1}
+	s := &study{req: req, t: t, kind: kind, shareJob: -1, seed: req.Seed}
 	for _, m := range req.Models {
 		s.models = append(s.models, fitPlan(t, newPlan(t, m, req.Scale)))
 	}
@@ -57,7 +59,11 @@ func (s *study) resample(ctx context.Context, progress func(float64)) error {
 			continue
 		}
 		s.jobOf = append(s.jobOf, len(jobs))
-		jobs = append(jobs, job{est: f.cluster, se: true, max: f.resamples(s.req.Resamples)})
+		j := job{est: f.cluster, se: true, max: f.resamples(s.req.Resamples)}
+		if s.req.MeasurementError {
+			j.est, j.max = s.withNoise(f), min(j.max, max(199, noiseBudget/max(s.t.n(), 1)))
+		}
+		jobs = append(jobs, j)
 		s.jack = append(s.jack, jackknife(f.cluster, s.t.cluster.count()))
 	}
 	if s.shares = newShares(s); s.shares != nil {
@@ -69,7 +75,7 @@ func (s *study) resample(ctx context.Context, progress func(float64)) error {
 		return nil
 	}
 	var err error
-	s.boot, err = bootstrap(ctx, s.t.cluster.count(), s.req.Resamples, s.req.Seed, s.req.Workers, jobs, progress)
+	s.boot, err = bootstrap(ctx, s.t.cluster.count(), s.req.Resamples, s.seed, s.req.Workers, jobs, progress)
 	if err != nil {
 		return err
 	}
@@ -213,23 +219,7 @@ func (s *study) coefficients(m *Model, k, rowJob int) {
 func (s *study) bootIntervals(c *Coefficient, k, j int) {
 	f, e := s.models[k], s.jobOf[k]
 	if f.robust != nil {
-		p, w := f.cluster.shape()
-		own := make([]float64, w)
-		d := newDraw(s.t.cluster.count())
-		d.without(s.t.cluster.count(), -1)
-		if f.cluster.worker()(d, own, true) {
-			se := own[p+1+j]
-			var t []float64
-			for i := range s.boot.done[e] {
-				v := s.boot.val[e][i*w : (i+1)*w]
-				if x := math.Abs(v[j]-own[j]) / v[p+1+j]; s.boot.ok[e][i] && finite(x) {
-					t = append(t, x)
-				}
-			}
-			c.Intervals["studentised"] = studentisedInterval(t, f.coef[j], se, s.req.Level)
-		} else {
-			c.Intervals["studentised"] = noInterval
-		}
+		c.Intervals["studentised"] = s.studentised(k, j)
 	}
 	v := s.boot.column(e, j)
 	if f.se == nil && len(v) > 1 {
@@ -240,6 +230,24 @@ func (s *study) bootIntervals(c *Coefficient, k, j int) {
 	sortFloats(v)
 	c.Intervals["bca"] = bcaInterval(v, f.coef[j], columnOf(s.jack[k], j), s.req.Level)
 	c.Intervals["percentile"] = percentileInterval(v, s.req.Level)
+}
+
+// studentised is the bootstrap-t interval of coefficient j of model k.
+func (s *study) studentised(k, j int) Interval {
+	f, e := s.models[k], s.jobOf[k]
+	own, ok := f.full()
+	if !ok {
+		return noInterval
+	}
+	w, at := s.boot.width[e], len(f.coef)+1+j
+	t := make([]float64, 0, s.boot.done[e])
+	for i := range s.boot.done[e] {
+		v := s.boot.val[e][i*w : (i+1)*w]
+		if x := math.Abs(v[j]-own[j]) / v[at]; s.boot.ok[e][i] && finite(x) {
+			t = append(t, x)
+		}
+	}
+	return studentisedInterval(t, f.coef[j], own[at], s.req.Level)
 }
 
 // statKind: R2, differences and shares are BCa unless percentile is asked.

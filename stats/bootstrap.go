@@ -53,7 +53,7 @@ func (s *sampler) draw(i int) *draw {
 			s.d.id, s.d.wt = append(s.d.id, int32(k)), append(s.d.wt, c)
 		}
 	}
-	s.d.size = float64(g)
+	s.d.size, s.d.index = float64(g), i
 	return s.d
 }
 

@@ -234,7 +234,6 @@ func (f *fitted) broken() {
 	f.resid, f.sigma = f.residuals(), math.Sqrt(f.rss/math.Max(1, float64(len(f.x)-4)))
 	f.se = f.brokenErrors()
 	f.likelihood = true
-	f.compile = func(g *grouping) estimator { return newBroken(f.plan, g) }
 }
 
 // brokenErrors are the errors of the model linearised at its breakpoint

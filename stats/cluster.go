@@ -6,6 +6,8 @@ type draw struct {
 	id   []int32
 	wt   []float64
 	size float64 // sum of wt
+
+	index int // of the resample
 }
 
 // fitter refits one model on a draw. It writes the coefficients, then R2 in

@@ -20,10 +20,9 @@ type fitted struct {
 	resid     []float64 // on the scale fitted
 
 	cluster, system, row estimator
-	// compile lays the model on other groups of the same rows.
-	compile func(g *grouping) estimator
-	robust  func(e estimator) robust // nil where no linearisation is defined
-	failure string
+	robust               func(e estimator) robust // nil where no linearisation is defined
+	nl                   *NonlinearFit            // of a decay
+	failure              string
 
 	likelihood bool // residuals have a Gaussian likelihood: AICc is defined
 }
@@ -87,13 +86,6 @@ func (f *fitted) leastSquares() {
 		f.r2 = backR2(f.plan, ls.Fitted)
 	}
 	f.likelihood = true
-	f.compile = func(g *grouping) estimator {
-		m := newMoments(f.plan, g)
-		if m.q == 1 {
-			return line{m}
-		}
-		return plane{m}
-	}
 	f.robust = func(e estimator) robust {
 		m := momentsOf(e)
 		return robust{terms: m.terms(ls), contrast: m.contrast, unit: f.sigma / m.zSD, shift: m.shift}
@@ -130,7 +122,7 @@ func (f *fitted) decay() {
 	f.r2 = 1 - nl.RSS/(length*length)
 	f.r2Fitted = f.r2
 	f.resid, f.likelihood = f.residuals(), true
-	f.compile = func(g *grouping) estimator { return newDecay(f.plan, g, nl) }
+	f.nl = nl
 	f.robust = func(e estimator) robust {
 		d := e.(*decay)
 		scaled := func(c []float64) [2]float64 { return [2]float64{c[0] * math.Exp(-c[1]*d.mid), c[1] * d.half} }
@@ -140,6 +132,27 @@ func (f *fitted) decay() {
 				return []float64{b[0] - a[0], b[1] - a[1]}
 			}}
 	}
+}
+
+// compile lays the model on groups of its rows.
+func (f *fitted) compile(g *grouping) estimator {
+	switch f.form {
+	case "floor_decay":
+		return newDecay(f.plan, g, f.nl)
+	case "broken_line":
+		return newBroken(f.plan, g)
+	case "theil_sen":
+		return newTheilSen(f.plan, g)
+	case "quantile_10", "quantile_50", "quantile_90":
+		q := newQuantileLine(f.plan, g, quantileTau(f.form))
+		q.warm = f.coef[1] * q.sx / q.sz
+		return q
+	}
+	m := newMoments(f.plan, g)
+	if m.q == 1 {
+		return line{m}
+	}
+	return plane{m}
 }
 
 // residuals on the scale fitted, of a model with one predictor.

@@ -284,12 +284,6 @@ func (f *fitted) quantile() {
 		return
 	}
 	f.simple(out)
-	warm := out[1] * q.sx / q.sz
-	f.compile = func(g *grouping) estimator {
-		q := newQuantileLine(f.plan, g, tau)
-		q.warm = warm
-		return q
-	}
 }
 
 // simple takes over intercept, slope and R2 of a line fitted otherwise than by

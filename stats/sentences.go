@@ -32,6 +32,9 @@ func (s *study) warnings(a *Analysis) []string {
 		}
 		out = append(out, s.modelWarnings(&m)...)
 	}
+	if s.req.MeasurementError && s.t.n() > 0 {
+		out = append(out, s.statedErrors())
+	}
 	if unlikeScales(s.out) {
 		add("AICc is not compared: the models are fitted on different response scales, and a likelihood of ln P is not one of P. Compare the out-of-sample R2, which is in sinuosity units for all, or fit all on one scale.")
 	}

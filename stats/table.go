@@ -17,6 +17,7 @@ type table struct {
 	kind      []string
 	label     []string // name of the system of each row
 	supply    map[string][]string
+	source    []*Row
 
 	sinuosityKind, measuredLine []string
 	cluster                     grouping
@@ -298,7 +299,7 @@ func newTable(used []UsedRow, req *Request, kind string) *table {
 	for k, i := range t.row {
 		u := &used[i]
 		t.y = append(t.y, u.Response)
-		t.kind = append(t.kind, u.Kind)
+		t.kind, t.source = append(t.kind, u.Kind), append(t.source, &u.Row)
 		name := u.SystemName
 		if name == "" {
 			name = u.System

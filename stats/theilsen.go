@@ -133,7 +133,6 @@ func (f *fitted) theilSen() {
 		return
 	}
 	f.simple(out)
-	f.compile = func(g *grouping) estimator { return newTheilSen(f.plan, g) }
 }
 
 // kendallTest tests Theil-Sen by Kendall's S = sum over pairs of the sign of

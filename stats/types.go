@@ -308,6 +308,8 @@ type Overturning struct {
 	Term    string `json:"term"`
 	Systems int    `json:"systems"`
 	Text    string `json:"text"`
+
+	MoreThan bool `json:"more_than"` // more than Systems would be needed
 }
 
 // Breakpoint is the broken line's breakpoint with its interval.
