@@ -1,5 +1,192 @@
 package main
 
-import "github.com/labstack/echo/v4"
+import (
+	"context"
+	"errors"
+	"fmt"
+	"math"
+	"net/http"
+	"slices"
 
-func (a *App) routesMeridian(e *echo.Echo) {}
+	"github.com/labstack/echo/v4"
+
+	"fathombend/catalogue"
+	"fathombend/stats"
+	"fathombend/stats/expectation"
+	"fathombend/views"
+)
+
+var meridianParameters = []string{"fold", "colour"}
+
+func (a *App) routesMeridian(e *echo.Echo) {
+	get(e, "/", a.meridian)
+}
+
+// meridian is the opening page.
+func (a *App) meridian(c echo.Context) error {
+	q, err := params(c)
+	if err != nil {
+		return err
+	}
+	if err := allow(q, meridianParameters, catalogue.FilterParameters); err != nil {
+		return err
+	}
+	f, err := filterOf(q)
+	if err != nil {
+		return err
+	}
+	fold, err := oneOf(q, "fold", "no", []string{"no", "yes"})
+	if err != nil {
+		return err
+	}
+	colour, err := oneOf(q, "colour", "slope", views.MeridianColours)
+	if err != nil {
+		return err
+	}
+	ctx := c.Request().Context()
+	held, err := a.meridianAnswer(ctx, f)
+	if err != nil {
+		return err
+	}
+	m := *held
+	m.Page = a.page(c, "Meridian", "meridian")
+	m.Wide = true
+	m.Filter, m.Folded, m.Colour = f, fold == "yes", colour
+	table := f.Values()
+	m.CSV, m.JSON, m.GeoJSON = withQuery("/systems.csv", table), withQuery("/systems.json", table), withQuery("/systems.geojson", table)
+	return render(c, http.StatusOK, views.Meridian(m))
+}
+
+// meridianAnswer computes what the opening page shows of one filter, once a
+// catalogue revision.
+func (a *App) meridianAnswer(ctx context.Context, f catalogue.Filter) (*views.MeridianPage, error) {
+	f.Page, f.PerPage, f.Sort = 0, 0, ""
+	rev, err := a.store.Revision(ctx)
+	if err != nil {
+		return nil, err
+	}
+	v, err := a.fits.do(ctx, fmt.Sprintf("meridian|%d|%s", rev, f.Values().Encode()), func(ctx context.Context) (any, error) {
+		return a.computeMeridian(ctx, f)
+	})
+	if err != nil {
+		return nil, err
+	}
+	return v.(*views.MeridianPage), nil
+}
+
+func (a *App) computeMeridian(ctx context.Context, f catalogue.Filter) (*views.MeridianPage, error) {
+	m := &views.MeridianPage{}
+	rows, err := a.store.Rows(ctx, f)
+	if err != nil {
+		return nil, err
+	}
+	for _, r := range bestOfSystems(rows) {
+		m.Items = append(m.Items, meridianItem(r))
+	}
+	if _, m.Total, err = a.store.Systems(ctx, catalogue.Filter{PerPage: 1}); err != nil {
+		return nil, err
+	}
+	if m.Total == 0 {
+		return m, nil
+	}
+	if m.Facets, err = a.store.Facets(ctx, f); err != nil {
+		return nil, err
+	}
+	if err := a.meridianHeadline(ctx, f, m); err != nil {
+		return nil, err
+	}
+	return m, a.meridianExpected(ctx, f, m)
+}
+
+// meridianHeadline asks the default question of the regression page. A refusal
+// (too few rows) is an answer too.
+func (a *App) meridianHeadline(ctx context.Context, f catalogue.Filter, m *views.MeridianPage) error {
+	analysis, err := a.analyse(ctx, f, stats.DefaultRequest())
+	var refused interface{ Input() (string, string) }
+	switch {
+	case errors.As(err, &refused):
+		_, why := refused.Input()
+		m.Headline = "No answer from these systems: " + why
+		return nil
+	case err != nil:
+		return err
+	}
+	m.Headline, m.Rows, m.Clusters = analysis.Headline, analysis.Rows, analysis.Clusters
+	return nil
+}
+
+// meridianExpected asks for one new system at each fifteen degrees today.
+func (a *App) meridianExpected(ctx context.Context, f catalogue.Filter, m *views.MeridianPage) error {
+	fits, err := a.expectationFits(ctx, f, "", "")
+	if err != nil {
+		return err
+	}
+	for lat := 0.0; lat <= 75; lat += 15 {
+		t := expectation.NewTarget()
+		t.Palaeolatitude, t.PalaeolatitudeSE, t.Age, t.AgeSE = lat, 0, 0, 0
+		e := views.MeridianExpected{AbsLatitude: lat}
+		r, err := fits.Expect(ctx, t)
+		if err != nil {
+			return err
+		}
+		m.Response = r.Response + " sinuosity"
+		if r.Response == "any" {
+			m.Response = "sinuosity (any kind)"
+		}
+		switch q := r.Combined.Sinuosity; {
+		case q == nil || !isFinite(q.P10+q.P50+q.P90):
+			e.Why = "Too few systems to expect from."
+		case !nearSystems(m.Items, lat):
+			e.Why = fmt.Sprintf("No submarine system within 7.5 degrees of %.0f degrees, north or south.", lat)
+		default:
+			e.P10, e.P50, e.P90 = q.P10, q.P50, q.P90
+		}
+		m.Expected = append(m.Expected, e)
+	}
+	if !slices.ContainsFunc(m.Expected, func(e views.MeridianExpected) bool { return e.Why == "" }) {
+		m.Expected = nil
+	}
+	return nil
+}
+
+// nearSystems says whether a submarine system stands in the fifteen degrees
+// around lat.
+func nearSystems(items []views.MeridianItem, lat float64) bool {
+	return slices.ContainsFunc(items, func(i views.MeridianItem) bool {
+		return i.Kind == "submarine" && math.Abs(math.Abs(i.Latitude)-lat) <= 7.5
+	})
+}
+
+// bestOfSystems picks the row that stands for each system: the best-graded,
+// then the newest, as catalogue.System.Best does.
+func bestOfSystems(rows []catalogue.Row) []catalogue.Row {
+	rank := map[string]int{"remeasured": 0, "surveyed": 1, "traced": 2, "quoted": 3}
+	place := map[string]int{}
+	var out []catalogue.Row
+	for _, r := range rows {
+		k, seen := place[r.System]
+		if !seen {
+			place[r.System] = len(out)
+			out = append(out, r)
+		} else if rank[r.Grade] <= rank[out[k].Grade] { // rows come oldest first
+			out[k] = r
+		}
+	}
+	return out
+}
+
+// presentMa: rows older than this sit at their palaeolatitude, as in the fits.
+const presentMa = 5.0
+
+func meridianItem(r catalogue.Row) views.MeridianItem {
+	i := views.MeridianItem{
+		Slug: r.System, Name: r.SystemName, P: num(r.Sinuosity), PKind: r.SinuosityKind, Line: r.MeasuredLine,
+		Latitude: num(r.LatitudeDeg), AgeMa: num(r.AgeMa), Slope: num(r.ValleySlope), WidthM: num(r.ChannelWidthM),
+		Kind: r.Kind, Feeder: r.Feeder, Grade: r.Grade,
+	}
+	i.Ancient = r.AgeMa.Valid && r.AgeMa.V > presentMa
+	if i.Ancient && r.PalaeolatitudeDeg.Valid {
+		i.Latitude, i.Restored = r.PalaeolatitudeDeg.V, true
+	}
+	return i
+}

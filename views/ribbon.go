@@ -100,6 +100,40 @@ func ribbonShape(p, axis float64) Shape {
 	return out
 }
 
+// ribbonBetween is the area between the ribbons of two sinuosities over
+// defsAxis, point by point of equal phase.
+func ribbonBetween(low, high float64) string {
+	a, b := ribbonPoints(low, 20), ribbonPoints(high, 20)
+	var s strings.Builder
+	s.WriteString("M0 0L")
+	for _, p := range b {
+		s.WriteString(nums(p[0], p[1]) + " ")
+	}
+	for i := len(a) - 1; i >= 0; i-- {
+		s.WriteString(nums(a[i][0], a[i][1]) + " ")
+	}
+	return s.String() + "z"
+}
+
+// ribbonPoints walks the ribbon over defsAxis with perWave points a wave.
+func ribbonPoints(p float64, perWave int) [][2]float64 {
+	p = min(max(p, 1), RibbonCap)
+	omega := planform.OmegaOf(p)
+	n := ribbonWaves * perWave
+	ds := p * defsAxis / float64(n)
+	out := make([][2]float64, n)
+	x, y := 0.0, 0.0
+	for i := range n {
+		const m = 4
+		for j := range m {
+			a := omega * math.Cos(2*math.Pi*(float64(i)+(float64(j)+.5)/m)/float64(perWave))
+			x, y = x+ds/m*math.Cos(a), y-ds/m*math.Sin(a)
+		}
+		out[i] = [2]float64{math.Round(x*10) / 10, math.Round(y*10) / 10}
+	}
+	return out
+}
+
 // nums writes page coordinates as short as two decimals allow.
 func nums(v ...float64) string {
 	var b []byte

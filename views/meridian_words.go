@@ -1,0 +1,115 @@
+package views
+
+import (
+	"fmt"
+	"net/url"
+	"strconv"
+)
+
+// colourName is what colour carries, in words.
+func colourName(c string) string {
+	return map[string]string{"slope": "valley slope", "feeder": "feeder", "grade": "grade of the record", "age": "age"}[c]
+}
+
+func usesStep(m MeridianPage, s colourClass) bool {
+	for _, i := range m.Items {
+		if i.Kind != "river" && colourOf(m.Colour, i).Class == s.Class {
+			return true
+		}
+	}
+	return false
+}
+
+func hasAncient(m MeridianPage) bool {
+	for _, i := range m.Items {
+		if i.Ancient {
+			return true
+		}
+	}
+	return false
+}
+
+func hasRiver(m MeridianPage) bool {
+	for _, i := range m.Items {
+		if i.Kind == "river" {
+			return true
+		}
+	}
+	return false
+}
+
+// meridianCaption could go to print.
+func meridianCaption(m MeridianPage) string {
+	s := fmt.Sprintf("%s of %s in the catalogue, each as a sine-generated curve of its own sinuosity over one fixed length: 1.05 is nearly straight, 2.1 crosses at right angles, 3 folds back. ",
+		plural(len(m.Items), "system", "systems"), strconv.Itoa(m.Total))
+	s += "A sinuosity past 5 is drawn at 5 with a double tick. "
+	if len(m.Expected) > 0 {
+		s += "Expected: " + m.Response + " of one new submarine system, median and the limits that hold 80 % of new systems"
+		if m.Rows > 0 {
+			s += fmt.Sprintf(", from %s", plural(m.Rows, "measurement", "measurements"))
+		}
+		s += "; drawn only where there are systems to expect from. "
+	}
+	if m.InventedRows > 0 {
+		s += "Invented data."
+	}
+	return s
+}
+
+func plural(n int, one, many string) string {
+	if n == 1 {
+		return "1 " + one
+	}
+	return strconv.Itoa(n) + " " + many
+}
+
+// tableAddress is the table of the systems shown, with a data suffix.
+func tableAddress(m MeridianPage, suffix string) string {
+	f := m.Filter
+	f.Page, f.PerPage = 0, 0
+	if q := f.Values().Encode(); q != "" {
+		return "/systems" + suffix + "?" + q
+	}
+	return "/systems" + suffix
+}
+
+func bandTable(m MeridianPage, b meridianBand) string {
+	q := m.Filter.Values()
+	if q == nil {
+		q = url.Values{}
+	}
+	q.Set("abs_lat_min", strconv.FormatFloat(b.From, 'f', 0, 64))
+	q.Set("abs_lat_max", strconv.FormatFloat(b.From+10, 'f', 0, 64))
+	return "/systems?" + q.Encode()
+}
+
+// smallRibbon is a ribbon of a row of the narrow page.
+func (m MeridianPage) smallRibbon(i MeridianItem) string {
+	step := colourOf(m.Colour, i)
+	class := step.Class + " " + WidthClass(i.WidthM)
+	if i.Kind == "river" {
+		class = "river " + WidthClass(i.WidthM)
+	}
+	s := RibbonShape(i.P, defsAxis)
+	half := max(s.Half, 14) + 6
+	box := fmt.Sprintf(`viewBox="%s %s %s %s"`, num2(min(s.Left, 0)-6), num2(-half), num2(s.Right-min(s.Left, 0)+12), num2(2*half))
+	out := `<svg class="row-ribbon" ` + box + ` aria-hidden="true" focusable="false">`
+	use := `<use href="#` + ribbonID(i.P) + `" class="`
+	if i.Ancient {
+		out += use + "ribbon twin " + class + `"/>` + use + `gap"/>`
+	} else {
+		out += use + "ribbon " + class + `"/>`
+	}
+	out += gradeMark(i.Grade, 0, 0, 5)
+	if step.Letter != "" && i.Kind != "river" {
+		out += `<text class="letter" x="104" y="-12">` + step.Letter + `</text>`
+	}
+	return out + "</svg>"
+}
+
+func smallExpected(e MeridianExpected) string {
+	s := RibbonShape(e.P90, defsAxis)
+	half := max(s.Half, 14) + 6
+	return fmt.Sprintf(`<svg class="row-ribbon expected" viewBox="%s %s %s %s" aria-hidden="true" focusable="false"><path class="between" d="%s"/><use class="limit" href="#%s"/><use class="limit" href="#%s"/><use class="middle" href="#%s"/></svg>`,
+		num2(min(s.Left, 0)-6), num2(-half), num2(s.Right-min(s.Left, 0)+12), num2(2*half), ribbonBetween(e.P10, e.P90), ribbonID(e.P90), ribbonID(e.P10), ribbonID(e.P50))
+}
