@@ -108,19 +108,20 @@ func (c *collector) giveAxes() {
 	c.lines = rest
 }
 
-// bankPoint is a point of a densified bank.
+// bankPoint is a point of a densified bank, in three dimensions (the plane as
+// z = 0).
 type bankPoint struct {
-	at       [3]float64
-	lat, lon float64
-	depth    float64
+	at    [3]float64
+	depth float64
 }
 
-// Centreline makes the line midway between two banks, with the width across at
-// each vertex. Both banks are resampled alike and walked along together, always
+// Centreline makes the line midway between two banks, with the width at each
+// vertex. Both banks are resampled alike and walked along together, always
 // taking the step that leaves the two feet nearer to each other, which costs
-// one pass; the middles of these rungs are the centreline, and the width at one
-// is the distance from each foot to the nearest point of the opposite bank,
-// averaged. A bank drawn against the other is turned round.
+// one pass. The middle of each rung is then moved to the middle between the
+// points of the two banks nearest to it, until it is as far from one as from the
+// other; the distance between those two points is the width. A bank drawn
+// against the other is turned round.
 func Centreline(left, right Line) (Line, error) {
 	if left.Plane != right.Plane {
 		return Line{}, &InputError{"lines", "one bank is in degrees and the other in plane metres; give both alike"}
@@ -133,31 +134,29 @@ func Centreline(left, right Line) (Line, error) {
 	if err != nil {
 		return Line{}, err
 	}
-	turned := false
-	ends := func(t *track) (Vertex, Vertex) { return t.v[0], t.v[len(t.v)-1] }
-	a0, a1 := ends(a)
-	b0, b1 := ends(b)
-	d := func(p, q Vertex) float64 { return a.distance(p.Lat, p.Lon, q.Lat, q.Lon) }
-	if !(d(a0, b0)+d(a1, b1) <= d(a0, b1)+d(a1, b0)) {
-		turned = true
+	first, last := 0, len(b.v)-1
+	d := func(i, j int) float64 {
+		return a.distance(a.v[i].Lat, a.v[i].Lon, b.v[j].Lat, b.v[j].Lon)
+	}
+	end := len(a.v) - 1
+	turned := !(d(0, first)+d(end, last) <= d(0, last)+d(end, first))
+	if turned {
 		if b, err = newTrack(right, true); err != nil {
 			return Line{}, err
 		}
-		b0, b1 = ends(b)
 	}
-	width := (d(a0, b0) + d(a1, b1)) / 2
+	width := (d(0, first) + d(end, last)) / 2
 	if !(width > 0) {
 		return Line{}, &InputError{"lines", "the two banks start and end at the same points, so there is no width between them"}
 	}
-	n := int(math.Round(math.Max(a.length, b.length) / math.Max(width/8, (a.length+b.length)/float64(MaxVertices))))
+	n := int(math.Min(8*math.Max(a.length, b.length)/width, MaxVertices/4))
 	n = min(max(n, len(a.v), len(b.v), 64), MaxVertices/2)
-	pa, pb := a.densify(n), b.densify(n)
 	line := Line{Name: strings.TrimSpace(orElse(bankName(left.Name), "channel")), Plane: left.Plane, Z: left.Z,
 		HasTime: left.HasTime || right.HasTime, Notes: left.Notes}
 	if turned {
 		line.Notes = append(line.Notes, "One bank was drawn against the other and was turned round.")
 	}
-	line.Vertices = zip(pa, pb, a)
+	line.Vertices = zip(a.densify(n), b.densify(n), left.Plane)
 	line.Notes = append(line.Notes, fmt.Sprintf("The centreline and the width were made from two bank lines (%q and %q).", clip(left.Name), clip(right.Name)))
 	return line, nil
 }
@@ -168,27 +167,31 @@ func (t *track) densify(n int) []bankPoint {
 	out := make([]bankPoint, n+1)
 	for i := range out {
 		s := t.length * float64(i) / float64(n)
-		p := &out[i]
-		p.lat, p.lon = t.at(s)
-		p.depth = z.at(s)
-		if t.plane {
-			p.at = [3]float64{p.lon, p.lat, 0}
-		} else {
-			p.at = solidAt(p.lat, p.lon)
+		lat, lon := t.at(s)
+		out[i] = bankPoint{[3]float64{lon, lat, 0}, z.at(s)}
+		if !t.plane {
+			out[i].at = solidAt(lat, lon)
 		}
 	}
 	return out
 }
 
-// zip walks along both banks together and returns the middles of the rungs.
-func zip(a, b []bankPoint, t *track) []Vertex {
-	out := make([]Vertex, 0, len(a)+len(b))
+// zip walks along both banks together and returns the centreline. Vertices
+// nearer to the last one than an eighth of the width are left out: on the inside
+// of a bend many feet share one middle.
+func zip(a, b []bankPoint, plane bool) []Vertex {
+	var out []Vertex
+	var kept [3]float64
 	i, j := 0, 0
 	for {
-		out = append(out, middle(a, b, i, j, t))
+		v, at := middle(a, b, i, j, plane)
+		done := i == len(a)-1 && j == len(b)-1
+		if len(out) == 0 || done || straight(kept, at) > v.Width/8 {
+			out, kept = append(out, v), at
+		}
 		switch {
-		case i == len(a)-1 && j == len(b)-1:
-			return thin(out)
+		case done:
+			return out
 		case i == len(a)-1:
 			j++
 		case j == len(b)-1:
@@ -203,41 +206,38 @@ func zip(a, b []bankPoint, t *track) []Vertex {
 	}
 }
 
-// thin takes off middles that stand where the last one stood.
-func thin(v []Vertex) []Vertex {
-	out := v[:1]
-	for _, p := range v[1:] {
-		if q := out[len(out)-1]; p.Lat != q.Lat || p.Lon != q.Lon {
-			out = append(out, p)
-		}
-	}
-	return out
-}
-
 // middle is the centreline vertex of the rung between foot i and foot j.
-func middle(a, b []bankPoint, i, j int, t *track) Vertex {
-	p, q := a[i], b[j]
-	v := Vertex{Depth: (p.depth + q.depth) / 2}
-	if t.plane {
-		v.Lat, v.Lon = (p.lat+q.lat)/2, (p.lon+q.lon)/2
-	} else {
-		v.Lat, v.Lon = along(p.lat, p.lon, q.lat, q.lon, 0.5)
+func middle(a, b []bankPoint, i, j int, plane bool) (Vertex, [3]float64) {
+	p, q := a[i].at, b[j].at
+	at := between3(p, q, 0.5)
+	for range 4 {
+		p, q = nearBank(at, a, i), nearBank(at, b, j)
+		at = between3(p, q, 0.5)
 	}
-	v.Width = (toBank(p.at, b, j) + toBank(q.at, a, i)) / 2
-	return v
+	v := Vertex{Lon: at[0], Lat: at[1], Depth: (a[i].depth + b[j].depth) / 2, Width: straight(p, q)}
+	if !plane {
+		const e2 = wgsF * (2 - wgsF)
+		v.Lon = math.Atan2(at[1], at[0]) / degree
+		v.Lat = math.Atan2(at[2], (1-e2)*math.Hypot(at[0], at[1])) / degree
+	}
+	return v, at
 }
 
-// toBank is the distance from a foot to the nearest point of the other bank
-// near the rung.
-func toBank(p [3]float64, bank []bankPoint, at int) float64 {
-	best := math.Inf(1)
-	for k := max(0, at-16); k < min(len(bank)-1, at+16); k++ {
-		f := project(bank[k].at, bank[k+1].at, p)
-		var c [3]float64
-		for m := range c {
-			c[m] = bank[k].at[m] + f*(bank[k+1].at[m]-bank[k].at[m])
-		}
-		best = math.Min(best, straight(p, c))
+func between3(p, q [3]float64, f float64) (c [3]float64) {
+	for k := range c {
+		c[k] = p[k] + f*(q[k]-p[k])
 	}
-	return best
+	return c
+}
+
+// nearBank is the point of a bank nearest to c, near the foot of the rung.
+func nearBank(c [3]float64, bank []bankPoint, foot int) (near [3]float64) {
+	best := math.Inf(1)
+	for k := max(0, foot-16); k < min(len(bank)-1, foot+16); k++ {
+		p := between3(bank[k].at, bank[k+1].at, project(bank[k].at, bank[k+1].at, c))
+		if d := straight(p, c); d < best {
+			best, near = d, p
+		}
+	}
+	return near
 }

@@ -40,7 +40,8 @@ func (r *samples) turn(c *curve, from, to float64) float64 {
 }
 
 // apex is the place farthest from the chord of a bend, with its distance from
-// it, m. Of several equally far (a flat-topped bend) the middle one counts.
+// it, m, read off the parabola through the farthest sample and its neighbours.
+// Of several equally far (a flat-topped bend) the middle one counts.
 func (r *samples) apex(from, to float64) (amplitude, place float64) {
 	x0, y0 := r.point(from)
 	x1, y1 := r.point(to)
@@ -48,28 +49,38 @@ func (r *samples) apex(from, to float64) (amplitude, place float64) {
 	d := math.Hypot(dx, dy)
 	first, last := int(math.Ceil(from)), int(math.Floor(to))
 	lo, hi := first, last
-	for i := first; i <= last; i++ {
-		var a float64
+	off := func(i int) float64 {
 		if d > 1e-9 {
-			a = math.Abs((r.x[i]-x0)*dy-(r.y[i]-y0)*dx) / d
-		} else { // closed loop: the farthest from its mouth
-			a = math.Hypot(r.x[i]-x0, r.y[i]-y0)
+			return math.Abs((r.x[i]-x0)*dy-(r.y[i]-y0)*dx) / d
 		}
-		switch tie := 1e-9 * (to - from) * r.step; {
+		return math.Hypot(r.x[i]-x0, r.y[i]-y0) // closed loop: the farthest from its mouth
+	}
+	tie := 1e-9 * (to - from) * r.step
+	for i := first; i <= last; i++ {
+		switch a := off(i); {
 		case a > amplitude+tie:
 			amplitude, lo, hi = a, i, i
 		case a >= amplitude-tie:
 			hi = i
 		}
 	}
-	return amplitude, float64(lo+hi) / 2
+	if lo != hi || lo == first || lo == last {
+		return amplitude, float64(lo+hi) / 2
+	}
+	before, after := off(lo-1), off(lo+1)
+	bow := before - 2*amplitude + after
+	if !(bow < 0) {
+		return amplitude, float64(lo)
+	}
+	shift := min(0.5, max(-0.5, (before-after)/(2*bow)))
+	return amplitude - (before-after)*shift/4, float64(lo) + shift
 }
 
 // radius is that of the circle fitted to the quarter of the bend about its
 // apex, m; NaN where there are not three distinct samples or they lie straight.
 // On a sine-generated curve it is 3 % more than the least radius.
 func (r *samples) radius(apex, from, to float64) float64 {
-	half := math.Max((to-from)/8, 1)
+	half := math.Max((to-from)/8, 1.5)
 	lo := max(int(math.Ceil(apex-half)), int(math.Ceil(from)), 0)
 	hi := min(int(math.Floor(apex+half)), int(math.Floor(to)), r.n)
 	if hi-lo < 2 {

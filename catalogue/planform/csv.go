@@ -90,11 +90,7 @@ func (c *collector) csv(data []byte) error {
 // csvRows gives the rows of a table one by one with their line numbers. The
 // slice is used again.
 func csvRows(data []byte) (next func() ([]string, int, error), sep rune, err error) {
-	head := data
-	if i := bytes.IndexByte(data, '\n'); i >= 0 {
-		head = data[:i]
-	}
-	sep = 0
+	head := firstRow(data)
 	for _, s := range ";\t," {
 		if bytes.ContainsRune(head, s) {
 			sep = s
@@ -107,18 +103,34 @@ func csvRows(data []byte) (next func() ([]string, int, error), sep rune, err err
 	r := csv.NewReader(bytes.NewReader(data))
 	r.Comma, r.FieldsPerRecord, r.ReuseRecord, r.LazyQuotes, r.TrimLeadingSpace = sep, -1, true, true, sep != '\t'
 	r.Comment = '#'
+	last := 0
 	return func() ([]string, int, error) {
 		f, err := r.Read()
+		if err != nil && !errors.Is(err, io.EOF) {
+			return nil, 0, &InputError{"body", "the table is broken after row " + strconv.Itoa(last) + "; export it again as plain CSV"}
+		}
 		if err != nil {
-			var pe *csv.ParseError
-			if errors.As(err, &pe) {
-				return nil, 0, &InputError{"body", fmt.Sprintf("row %d of the table is broken: a quotation mark is not closed", pe.Line)}
-			}
 			return nil, 0, err
 		}
-		line, _ := r.FieldPos(0)
-		return f, line, nil
+		last, _ = r.FieldPos(0)
+		return f, last, nil
 	}, sep, nil
+}
+
+// firstRow is the first row that is no comment.
+func firstRow(data []byte) []byte {
+	for len(data) > 0 {
+		row := data
+		if i := bytes.IndexByte(data, '\n'); i >= 0 {
+			row, data = data[:i], data[i+1:]
+		} else {
+			data = nil
+		}
+		if row = bytes.TrimSpace(row); len(row) > 0 && row[0] != '#' {
+			return row
+		}
+	}
+	return nil
 }
 
 // blankRows splits at blanks, as in a bare list of coordinates.

@@ -186,8 +186,10 @@ func nearestPlaces(a *level, va []float64, b *level, vb []float64) []int {
 // moved resolves the move of the apex of bend i of the older level to that of
 // bend j of the younger.
 func (l *level) moved(i int, place float64, b *level, j int) Moved {
-	// inflection[i+1] and [i+2] bound bend i; one further on either side.
-	p, q := l.inflection[i], l.inflection[i+3]
+	// inflection[i+1] and [i+2] bound bend i; one further on either side, but
+	// not to the ends of the line, which lie anywhere across the belt.
+	last := len(l.inflection) - 2
+	p, q := l.inflection[max(i, 1)], l.inflection[min(i+3, last)]
 	dx, dy := q.X-p.X, q.Y-p.Y
 	d := math.Hypot(dx, dy)
 	dx, dy = dx/d, dy/d
