@@ -18,8 +18,6 @@ const (
 	YearDays = 365.2422
 	// YearHours is the same year in hours: 8765.8128.
 	YearHours = YearDays * 24
-	// siderealToday is today's rotation period in seconds.
-	siderealToday = 86164.0905
 )
 
 // Sidereal converts by 1/T_sid = 1/T_sol + 1/Y.

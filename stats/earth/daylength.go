@@ -85,11 +85,12 @@ const (
 
 // TidalDay is the sidereal day when the Moon stood at aRatio times its
 // present distance, by conserved angular momentum:
-// w = 1 + [1 + b/13 - sqrt(a) - (b/13) a^6.5]/alpha0, T = 86164.0905 s / w.
+// w = 1 + [1 + b/13 - sqrt(a) - (b/13) a^6.5]/alpha0, T = 86164.0905 s / w
+// (today's sidereal day, to all its digits, so that today's ratio is 1).
 // b is the share of the Sun's tide: 0.211, or 0 for the Moon alone.
 func TidalDay(aRatio, b float64) SiderealHours {
 	w := 1 + (1+b/13-math.Sqrt(aRatio)-b/13*math.Pow(aRatio, 6.5))/tideAlpha0
-	return SiderealHours(siderealToday / 3600 / w)
+	return SolarHours(24).Sidereal() / SiderealHours(w)
 }
 
 type moonTable struct{ age, a, low, high []float64 }

@@ -26,3 +26,40 @@ func BenchmarkFit(b *testing.B) {
 		}
 	}
 }
+
+// 100 of many targets on all cores: 10,000 take a hundred times as long.
+func BenchmarkExpectMany100(b *testing.B) {
+	f := mustFit(b, plainLaw.draw(3), Options{})
+	targets := make([]Target, 100)
+	for i := range targets {
+		targets[i] = latitude(float64(i)*0.8, 3)
+		targets[i].Age, targets[i].AgeSE = 70, 3
+	}
+	for b.Loop() {
+		for _, a := range f.ExpectMany(context.Background(), targets, 0, nil) {
+			if a.Err != nil {
+				b.Fatal(a.Err)
+			}
+		}
+	}
+}
+
+func BenchmarkThroughTime(b *testing.B) {
+	f := mustFit(b, plainLaw.draw(3), Options{})
+	q := NewTarget()
+	q.SiteLat, q.SiteLon, q.Plate = 15, 75, "India"
+	for b.Loop() {
+		if _, err := f.ThroughTime(context.Background(), q, nil); err != nil {
+			b.Fatal(err)
+		}
+	}
+}
+
+func BenchmarkDeepTime(b *testing.B) {
+	rows := plainLaw.draw(3)
+	for b.Loop() {
+		if _, err := DeepTime(context.Background(), rows, Options{}); err != nil {
+			b.Fatal(err)
+		}
+	}
+}

@@ -95,7 +95,8 @@ func foldLatitude(lat float64) float64 {
 	return lat
 }
 
-// fitModel fits one explanation with its resamples and left-out fits.
+// fitModel fits one explanation with its resamples (none when r is nil) and
+// left-out fits.
 func fitModel(ctx context.Context, m model, f *frame, r *resampling) *fitted {
 	t := &fitted{design: newDesign(m, f), frame: f, usable: make([]bool, len(f.obs)), x: make([][]float64, len(f.obs)), score: math.NaN()}
 	t.gather()
@@ -126,7 +127,7 @@ func fitModel(ctx context.Context, m model, f *frame, r *resampling) *fitted {
 		return t
 	}
 	t.v = t.sandwich(s, t.beta, -1)
-	if ctx.Err() == nil {
+	if r != nil && ctx.Err() == nil {
 		t.resample(ctx, r)
 	}
 	if ctx.Err() == nil {
@@ -138,7 +139,7 @@ func fitModel(ctx context.Context, m model, f *frame, r *resampling) *fitted {
 		pool.add(r)
 	}
 	t.poolVariance, t.coefficients = pool.variance(), t.estimates()
-	if t.failure == "" && (len(t.pool) == 0 || t.sets == 0) {
+	if t.failure == "" && (len(t.pool) == 0 || (t.sets == 0 && r != nil)) {
 		t.failure = "No deposit can be left out without losing the fit. Widen the filter."
 	}
 	return t
