@@ -163,6 +163,14 @@ func (a *applier) locate(ctx context.Context, p *Row) (ex examined, err error) {
 	if err != nil {
 		return ex, err
 	}
+	if ex.system != nil && ex.current != nil && ex.current.System != p.System {
+		// A measurement that moves leaves what it carried of its old system.
+		for _, c := range systemColumns {
+			if c.same(p, ex.current) {
+				c.copy(p, ex.system)
+			}
+		}
+	}
 	if a.agree != nil {
 		ex.findings = append(ex.findings, a.agree.reconcile(p, &ex)...)
 	}

@@ -146,6 +146,8 @@ func (c Column) checkNumber(v float64) *Error {
 		return c.refuse(shown + " is not a finite number")
 	case c.Name == "sinuosity" && v < 1:
 		return c.refuse("sinuosity " + shown + " is below 1, which no channel can have; if the valley length was taken along a curved axis, use the end-to-end valley length")
+	case math.Abs(v) > largest:
+		return c.refuse(shown + " is larger than anything measured in this unit")
 	case v < c.Min, v > c.Max, c.Open && v <= c.Min:
 		return c.refuse(shown + " is outside what the column can hold")
 	case c.Kind == KindCount && v != math.Trunc(v):
