@@ -63,3 +63,13 @@ func BenchmarkDeepTime(b *testing.B) {
 		}
 	}
 }
+
+// A catalogue of 2,000 rows in 700 deposits.
+func BenchmarkFitLarge(b *testing.B) {
+	l := plainLaw
+	l.deposits = 700
+	rows := l.draw(3)
+	for b.Loop() {
+		mustFit(b, rows, Options{})
+	}
+}

@@ -1,7 +1,6 @@
 package expectation
 
 import (
-	"cmp"
 	"math"
 	"math/rand/v2"
 	"slices"
@@ -270,57 +269,6 @@ func (t *fitted) estimates() []Coefficient {
 	return out
 }
 
-// jackknife is the jackknife+ interval over clusters at 90 % (Barber, Candes,
-// Ramdas & Tibshirani, Ann. Stat. 49:486 (2021), doi 10.1214/20-AOS1965): it
-// guarantees 80 %, and only if clusters are exchangeable. Each cluster, and in
-// it each system, counts alike; nil with too few clusters for limits to exist.
-func (f *Fits) jackknife(d *draws, weight func(int) float64) *[2]float64 {
-	var low, high []weighted
-	var total float64
-	for c := range f.frame.clusters {
-		var at float64
-		ok := true
-		for k, t := range f.fits {
-			if w := weight(k); w > 0 {
-				if t.failure != "" || t.loo[c] == nil {
-					ok = false
-					break
-				}
-				at += w * t.value(&d.point, t.loo[c])
-			}
-		}
-		if !ok {
-			continue
-		}
-		for i := f.frame.start[c]; i < f.frame.start[c+1]; i++ {
-			ob := &f.frame.obs[i]
-			if math.IsInf(ob.y, 0) {
-				continue
-			}
-			var own float64
-			for k, t := range f.fits {
-				if w := weight(k); w > 0 {
-					if !t.usable[i] {
-						own = math.NaN()
-						break
-					}
-					own += w * t.mean(i, t.loo[c])
-				}
-			}
-			if r := math.Abs(ob.y - own); !math.IsNaN(r) {
-				low, high, total = append(low, weighted{at - r, ob.weight}), append(high, weighted{at + r, ob.weight}), total+ob.weight
-			}
-		}
-	}
-	const alpha = 0.1
-	up := (1 - alpha) * (total + 1) / total
-	if total == 0 || up > 1 {
-		return nil
-	}
-	lo, hi := weightedQuantiles(low, 1-up), weightedQuantiles(high, up)
-	return &[2]float64{1 + math.Exp(lo[0]), 1 + math.Exp(math.Min(hi[0], 12))}
-}
-
 // classes fills in the class probabilities beside their base rates.
 func (f *Fits) classes(d *draws, res *Result) {
 	limits := f.options.ClassLimits
@@ -342,68 +290,4 @@ func (f *Fits) classes(d *draws, res *Result) {
 		}
 		res.Classes = append(res.Classes, c)
 	}
-}
-
-// sensitivity is the first-order share of each input in the variance of
-// ln(P - 1): one input drawn, the others at their point values, averaged over
-// the explanations by their weights.
-func (f *Fits) sensitivity(t *Target, p *place, d *draws) []Sensitivity {
-	if len(d.mix.draws) == 0 {
-		return nil
-	}
-	total := map[string]float64{}
-	var mean, square float64
-	for k, ft := range f.fits {
-		if w := f.weights[k]; w > 0 {
-			v := d.parts[k]
-			total["parameters of the fit"] += w * v["parameters"]
-			total["scatter between systems"] += w * v["residual"]
-			y := ft.value(&d.point, ft.beta)
-			mean, square = mean+w*y, square+w*y*y
-		}
-	}
-	total["choice of explanation"] = math.Max(0, square-mean*mean)
-	for name, which := range map[string]moves{"palaeolatitude": {lat: d.moves.lat}, "age": {age: d.moves.age}, "day length": {day: d.moves.day},
-		"slope not given": {slope: d.moves.slope}, "supply not given": {supply: d.moves.supply}} {
-		if which != (moves{}) {
-			total[name] = f.oneInput(t, p, d, which)
-		}
-	}
-	var out []Sensitivity
-	for name, share := range shares(total) {
-		out = append(out, Sensitivity{name, share})
-	}
-	slices.SortFunc(out, func(a, b Sensitivity) int {
-		return cmp.Or(cmp.Compare(b.Share, a.Share), cmp.Compare(a.Input, b.Input))
-	})
-	return out
-}
-
-// oneInput is the variance of ln(P - 1) when only the inputs in which move.
-func (f *Fits) oneInput(t *Target, p *place, d *draws, which moves) float64 {
-	const n = 400
-	all := make([]moments, len(f.fits))
-	var pcg rand.PCG
-	rng := rand.New(&pcg)
-	for j := range min(n, d.n) {
-		pcg.Seed(t.Seed, uint64(j))
-		u := rng.Float64()
-		at := p.draw(rng, which.age, which.day, which.lat)
-		in := d.point
-		in.sin, in.ratio = sinOf(at.lat), at.ratio
-		if at.age != p.age.Value {
-			in.state = stateAt(at.age)
-		}
-		d.donors.fill(f.frame, &in, u, which.slope, which.supply)
-		for k, ft := range f.fits {
-			if f.weights[k] > 0 {
-				all[k].add(ft.value(&in, ft.beta))
-			}
-		}
-	}
-	var v float64
-	for k := range all {
-		v += f.weights[k] * all[k].variance()
-	}
-	return v
 }

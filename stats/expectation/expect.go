@@ -81,7 +81,10 @@ func Fit(ctx context.Context, rows []stats.Row, o Options) (*Fits, error) {
 	if err := ctx.Err(); err != nil {
 		return nil, err
 	}
-	ch := leaveOutAll(f, out.fits, r, o.Seed)
+	ch := leaveOutAll(ctx, f, out.fits, r, o.Seed)
+	if err := ctx.Err(); err != nil {
+		return nil, err
+	}
 	weights, without, common := stack(f, out.fits, ch)
 	out.weights, out.common = weights, len(common)
 	p := ch.pits(f, without)

@@ -64,12 +64,14 @@ var stateNames = map[state]string{icehouse: "icehouse", greenhouse: "greenhouse"
 
 // stateAt looks an age in Ma up in the table of climate states.
 func stateAt(ageMa float64) state {
-	if s, ok := earth.ClimateStateAt(ageMa); ok {
-		for k, name := range stateNames {
-			if name == s.State {
-				return k
-			}
-		}
+	s, _ := earth.ClimateStateAt(ageMa)
+	switch s.State {
+	case "icehouse":
+		return icehouse
+	case "greenhouse":
+		return greenhouse
+	case "cool greenhouse":
+		return coolGreenhouse
 	}
 	return 0
 }

@@ -1,9 +1,11 @@
 package expectation
 
 import (
+	"context"
 	"math"
 	"math/rand/v2"
 	"slices"
+	"sync"
 )
 
 // checkDraws is the number of draws for each left-out row when coverage is
@@ -108,34 +110,38 @@ type checks struct {
 }
 
 // leaveOutAll draws for every row and every fitted explanation.
-func leaveOutAll(f *frame, fits []*fitted, r *resampling, seed uint64) *checks {
+func leaveOutAll(ctx context.Context, f *frame, fits []*fitted, r *resampling, seed uint64) *checks {
 	ch := &checks{in: fits, p: make([][][]float64, len(fits))}
+	var wg sync.WaitGroup
 	for k, t := range fits {
 		ch.p[k] = make([][]float64, len(f.obs))
-		if t.failure != "" {
-			continue
-		}
-		s, without := newSolver(t.p), newCross(t.p)
-		for c := range f.clusters {
-			if t.loo[c] == nil || t.looS[c] == 0 {
-				continue
-			}
-			pool, sets := t.nestedPool(c, s, &without), t.setsWithout(c, r)
-			if len(pool) == 0 {
-				continue
-			}
-			for i := f.start[c]; i < f.start[c+1]; i++ {
-				if !t.predictable(i) {
-					continue
-				}
-				out := make([]float64, checkDraws)
-				t.leftOutSamples(i, pool, sets, rand.New(rand.NewPCG(seed+1, uint64(i))), out)
-				slices.Sort(out)
-				ch.p[k][i] = out
-			}
+		if t.failure == "" {
+			wg.Go(func() { t.leaveOutEach(ctx, r, seed, ch.p[k]) })
 		}
 	}
+	wg.Wait()
 	return ch
+}
+
+func (t *fitted) leaveOutEach(ctx context.Context, r *resampling, seed uint64, out [][]float64) {
+	f, s, without := t.frame, newSolver(t.p), newCross(t.p)
+	for c := range f.clusters {
+		if t.loo[c] == nil || t.looS[c] == 0 || ctx.Err() != nil {
+			continue
+		}
+		pool, sets := t.nestedPool(c, s, &without), t.setsWithout(c, r)
+		if len(pool) == 0 {
+			continue
+		}
+		for i := f.start[c]; i < f.start[c+1]; i++ {
+			if !t.predictable(i) {
+				continue
+			}
+			out[i] = make([]float64, checkDraws)
+			t.leftOutSamples(i, pool, sets, rand.New(rand.NewPCG(seed+1, uint64(i))), out[i])
+			slices.Sort(out[i])
+		}
+	}
 }
 
 // predictable is true for the rows an explanation can be checked on: those it
