@@ -282,7 +282,7 @@ func TestCubicWeights(t *testing.T) {
 			for d := range 3 {
 				sum := 0.0
 				for i, w := range cubicWeights(m, at, d) {
-					sum += w * f(float64(i-m))[0]
+					sum += w * f(float64(i - m))[0]
 				}
 				if math.Abs(sum-f(at)[d]) > 1e-8 {
 					t.Errorf("m=%d at %v derivative %d: %v, expected %v", m, at, d, sum, f(at)[d])
