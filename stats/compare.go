@@ -1,6 +1,7 @@
 package stats
 
 import (
+	"cmp"
 	"fmt"
 	"math"
 	"slices"
@@ -134,8 +135,8 @@ func (s *study) byLabel(label string) *fitted {
 // and latitude go together in nature.
 var supplyCategories = []string{"feeder", "large_river", "grain"}
 
-// supply says where latitude and the recorded supply hold most of their R2 in
-// common.
+// supply says where latitude and the recorded supply hold their R2 in common,
+// or go together so closely that it could not be told.
 func (s *study) supply() []string {
 	lat := ""
 	for _, f := range s.models {
@@ -147,20 +148,47 @@ func (s *study) supply() []string {
 	if lat == "" {
 		return nil
 	}
-	var out []string
+	var tied []tie
 	for _, c := range supplyCategories {
-		if text := s.supplySentence(lat, c); text != "" {
-			out = append(out, text)
+		if t, ok := s.tieOf(lat, c); ok {
+			tied = append(tied, t)
 		}
 	}
-	return out
+	if len(tied) == 0 {
+		return nil
+	}
+	slices.SortStableFunc(tied, func(a, b tie) int { return cmp.Compare(b.common, a.common) })
+	t := tied[0]
+	text := fmt.Sprintf("Latitude and supply cannot be separated by these rows: %s goes with %s of the variance of %s (%s); %s alone has R2 %.2f, %s alone %.2f, and %.2f they hold in common.",
+		nameOf(t.category), percent(t.eta), nameOf(lat), plural(t.rows, "row", "rows"), nameOf(lat), t.alone, nameOf(t.category), t.other, t.common)
+	if len(tied) > 1 {
+		var names []string
+		for _, o := range tied[1:] {
+			names = append(names, nameOf(o.category))
+		}
+		text += " The same holds for " + list(names) + "."
+	}
+	return []string{text + fmt.Sprintf(" Add systems that break the pattern, or fit both (joint=%s,%s).", lat, t.category)}
 }
+
+// tie is how far latitude and one category of supply go together: R2 of each
+// alone and in common, on the scale fitted, and the share of the variance of
+// latitude that goes with the category.
+type tie struct {
+	category                  string
+	alone, other, common, eta float64
+	rows                      int
+}
+
+// tiedEta is the share from which latitude and a category are called
+// inseparable whatever sinuosity does.
+const tiedEta = 0.4
 
 // leastKnown is the share of rows that must record a category before it is
 // compared with latitude.
 const leastKnown = 0.5
 
-func (s *study) supplySentence(lat, category string) string {
+func (s *study) tieOf(lat, category string) (tie, bool) {
 	sub := &table{predictor: map[string][]float64{}, category: map[string][]string{}}
 	var labels []string
 	for i, v := range s.t.supply[category] {
@@ -173,26 +201,24 @@ func (s *study) supplySentence(lat, category string) string {
 		labels = append(labels, s.t.cluster.names[s.t.cluster.of[i]])
 	}
 	if float64(sub.n()) < leastKnown*float64(s.t.n()) || sub.n() < 12 {
-		return ""
+		return tie{}, false
 	}
 	sub.cluster = newGrouping(labels)
 	joint := newJointPlan(sub, []string{lat, category}, [2]string{}, s.req.Scale)
 	if joint.refusal() != "" || sub.cluster.count() < 6 {
-		return ""
+		return tie{}, false
 	}
 	both, err := FitLinear(joint.cols, joint.z)
 	if err != nil {
-		return ""
+		return tie{}, false
 	}
 	alone, err1 := FitLinear(joint.cols[:1], joint.z)
 	other, err2 := FitLinear(joint.cols[1:], joint.z)
 	if err1 != nil || err2 != nil {
-		return ""
+		return tie{}, false
 	}
-	common := alone.R2 + other.R2 - both.R2
-	if math.Min(alone.R2, other.R2) < 0.1 || common < 0.5*math.Min(alone.R2, other.R2) {
-		return ""
-	}
-	return fmt.Sprintf("Latitude and supply cannot be separated by these rows: %s alone has R2 %.2f, %s alone %.2f, and %.2f of it they hold in common (%s goes with %s of the variance of %s, in %s). Add systems that break the pattern, or fit them jointly (joint=%s,%s).",
-		nameOf(lat), alone.R2, nameOf(category), other.R2, common, nameOf(category), percent(etaSquared(sub.predictor[lat], sub.category[category])), nameOf(lat), plural(sub.n(), "row", "rows"), lat, category)
+	out := tie{category: category, alone: alone.R2, other: other.R2, common: alone.R2 + other.R2 - both.R2,
+		eta: etaSquared(sub.predictor[lat], sub.category[category]), rows: sub.n()}
+	smaller := math.Min(out.alone, out.other)
+	return out, out.eta >= tiedEta || smaller >= 0.05 && out.common >= 0.5*smaller
 }

@@ -33,11 +33,16 @@ func (m *Model) slope() *Coefficient {
 	return nil
 }
 
-// judge marks the models that find something. Three things must agree: the
+// leastShare is the lower end of the interval of R2 from which a model counts
+// as found: below it the end would be printed as 0 %.
+const leastShare = 0.005
+
+// judge marks the models that find something. Four things must agree: the
 // sign-flip test holds after division by the number of separate explanations
 // asked about (Bonferroni; latitude, its sine and the Coriolis parameter are
-// one), some interval of the slope excludes zero, and the model predicts left-out
-// clusters better than the mean does.
+// one), some interval of the slope excludes zero, the interval of R2 does not
+// reach down to 0 %, and the model predicts left-out clusters better than the
+// mean does.
 func judge(models []Model, level float64) {
 	var asked []string
 	for _, m := range models {
@@ -51,7 +56,7 @@ func judge(models []Model, level float64) {
 			continue
 		}
 		holds := m.PermutationP <= (1-level)/float64(max(len(asked), 1))
-		m.Found = holds && m.OutOfSampleR2 > 0 && (m.Form == "joint" || m.anyExcludesZero())
+		m.Found = holds && m.OutOfSampleR2 > 0 && m.RSquaredInterval[0] >= leastShare && (m.Form == "joint" || m.anyExcludesZero())
 	}
 }
 
@@ -111,6 +116,8 @@ func (m *Model) whyNot(req *Request) string {
 	switch {
 	case !(m.OutOfSampleR2 > 0):
 		return p + fmt.Sprintf(", and it predicts left-out %s no better than their mean", clusterNoun(req.Cluster))
+	case m.PermutationP <= 1-req.Level && !(m.RSquaredInterval[0] >= leastShare):
+		return p + ", but the interval of R2 reaches down to 0 %"
 	case m.Form != "joint" && c != nil && c.Interval.known() && !c.Interval.excludes(0):
 		return p + fmt.Sprintf(", and the %s interval of its coefficient, %s, holds zero", kindName(c.IntervalKind), between(c.Interval))
 	}
