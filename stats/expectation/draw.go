@@ -191,6 +191,9 @@ func (f *Fits) explain(d *draws, res *Result) {
 		Rows: len(f.frame.obs), Clusters: len(f.frame.clusters)}
 	if len(d.mix.draws) == 0 {
 		c.Failure, c.Weight = "No explanation could be fitted on the chosen rows. Widen the filter.", 0
+		if len(f.frame.obs) == 0 {
+			c.Failure = "No row with this sinuosity and a latitude is left after filtering. Widen the filter, or ask for another kind of sinuosity."
+		}
 		res.Combined = c
 		return
 	}

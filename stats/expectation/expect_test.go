@@ -252,6 +252,22 @@ func TestFewRows(t *testing.T) {
 	}
 }
 
+// A standardised peak belongs to the stored line: rows that quote the same
+// windows count once. Windows 1..2 in steps of 0.2: the expected largest of 5
+// of 6 is 2 - 0.2/6 (the largest is missed in 1 of 6 draws).
+func TestStandardisedPeak(t *testing.T) {
+	near(t, "of 6", standardisedPeak([]float64{1.4, 1, 1.8, 2, 1.2, 1.6}, 5), 2-0.2/6, 1e-12)
+	rows := plainLaw.draw(2)
+	for i := range rows {
+		p := rows[i].Sinuosity
+		rows[i].Windows = []float64{p, p, p, p, p}
+	}
+	f := newFrame(append(rows, rows...), Options{Response: "standardised_peak"})
+	if len(f.obs) != len(rows) || f.dropped["the same centreline is already counted"] != len(rows) {
+		t.Errorf("%d rows of %d, dropped %v", len(f.obs), len(rows), f.dropped)
+	}
+}
+
 func TestRefusals(t *testing.T) {
 	f := mustFit(t, plainLaw.draw(1), Options{})
 	for _, c := range []struct {

@@ -155,8 +155,21 @@ func newFrame(rows []stats.Row, o Options) *frame {
 		f.notes = append(f.notes, note)
 	}
 	clusterNames := []string{}
+	type line struct {
+		system string
+		p      float64
+	}
+	counted := map[line]bool{}
 	for i := range rows {
 		ob, why := observe(&rows[i], f)
+		if why == "" && f.response == "standardised_peak" {
+			// it belongs to the stored centreline, however many rows quote it
+			if key := (line{rows[i].System, ob.p}); counted[key] {
+				why = "the same centreline is already counted"
+			} else {
+				counted[key] = true
+			}
+		}
 		if why != "" {
 			f.dropped[why]++
 			continue
