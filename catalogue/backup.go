@@ -14,7 +14,14 @@ import (
 // before it is given its name; an existing file is never overwritten.
 func (s *Store) Backup(ctx context.Context, path string) error {
 	return newFile(path, func(part string) error {
-		if _, err := s.r.ExecContext(ctx, `VACUUM INTO ?`, part); err != nil {
+		// VACUUM INTO counts as writing, though not into this file, so a
+		// connection marked query_only refuses it.
+		db, err := s.alone("")
+		if err != nil {
+			return fault("backup", err)
+		}
+		defer db.Close()
+		if _, err := db.ExecContext(ctx, `VACUUM INTO ?`, part); err != nil {
 			return fault("backup", err)
 		}
 		return checkedCopy(ctx, part)

@@ -11,7 +11,7 @@ import (
 // damaged pages, references that lead nowhere, rows against the schema, and
 // text and place indexes that disagree with the records.
 func (s *Store) Integrity(ctx context.Context) ([]string, error) {
-	faults, err := databaseFaults(ctx, s.r)
+	faults, err := s.faultsOnDisk(ctx)
 	if err != nil {
 		return nil, fault("check", err)
 	}
@@ -30,6 +30,28 @@ func (s *Store) Integrity(ctx context.Context) ([]string, error) {
 		return faults, err
 	}
 	return faults, nil
+}
+
+// faultsOnDisk looks through a connection of its own: the text index keeps a
+// picture of its structure for each connection, which PRAGMA integrity_check
+// does not renew, so that a connection that has searched before another one
+// wrote reports damage where there is none.
+func (s *Store) faultsOnDisk(ctx context.Context) ([]string, error) {
+	db, err := s.alone("&_pragma=query_only(1)")
+	if err != nil {
+		return nil, err
+	}
+	defer db.Close()
+	return databaseFaults(ctx, db)
+}
+
+// alone opens one more read-only connection.
+func (s *Store) alone(more string) (*sql.DB, error) {
+	db, err := sql.Open("sqlite", fileURI(s.path)+"?mode=ro&_pragma=busy_timeout(10000)"+s.immutable+more)
+	if err == nil {
+		db.SetMaxOpenConns(1)
+	}
+	return db, err
 }
 
 // CheckIntegrity is Integrity.

@@ -25,8 +25,11 @@ type Store struct {
 	w      *sql.DB // one connection, immediate transactions; nil when read only
 	r      *sql.DB // a pool of read-only connections
 	onLand func(lat, lon float64) bool
-	hashes chan struct{} // bounds the memory of password hashing
-	now    func() time.Time
+	// immutable is added to the address of connections when the file lies where
+	// nothing can be written.
+	immutable string
+	hashes    chan struct{} // bounds the memory of password hashing
+	now       func() time.Time
 }
 
 // Options of Open.
@@ -66,7 +69,12 @@ func (s *Store) open(ctx context.Context, o Options) (err error) {
 			return err
 		}
 	}
-	if s.r, err = sql.Open("sqlite", readerDSN(s.path, o)); err != nil {
+	if o.ReadOnly && readOnlyFolder(s.path) {
+		// Without its -shm file a WAL database in a folder that cannot be
+		// written opens only as immutable, which it is as nobody can write it.
+		s.immutable = "&immutable=1"
+	}
+	if s.r, err = sql.Open("sqlite", readerDSN(s.path)+s.immutable); err != nil {
 		return err
 	}
 	s.r.SetMaxOpenConns(max(4, 2*runtime.GOMAXPROCS(0)))
@@ -90,17 +98,16 @@ func writerDSN(path string, o Options) string {
 	return fileURI(path) + q + "&_pragma=synchronous(FULL)"
 }
 
-func readerDSN(path string, o Options) string {
-	q := "?mode=ro&_pragma=busy_timeout(10000)&_pragma=query_only(1)&_pragma=temp_store(2)&_pragma=cache_size(-8000)"
-	if o.ReadOnly && readOnlyFolder(path) {
-		// Without its -shm file a WAL database in a folder that cannot be
-		// written opens only as immutable, which it is as nobody can write it.
-		q += "&immutable=1"
-	}
-	return fileURI(path) + q
+func readerDSN(path string) string {
+	return fileURI(path) + "?mode=ro&_pragma=busy_timeout(10000)&_pragma=query_only(1)&_pragma=temp_store(2)&_pragma=cache_size(-8000)"
 }
 
+// readOnlyFolder says whether nothing can be written beside path and nothing
+// waits there to be taken into it.
 func readOnlyFolder(path string) bool {
+	if wal, err := os.Stat(path + "-wal"); err == nil && wal.Size() > 0 {
+		return false
+	}
 	f, err := os.CreateTemp(filepath.Dir(path), ".writable-*")
 	if err != nil {
 		return true

@@ -40,12 +40,3 @@ func TestOpenInsertRead(t *testing.T) {
 		t.Error(err)
 	}
 }
-
-func BenchmarkOpenAndInsert100(b *testing.B) {
-	for range b.N {
-		s := open(b)
-		if err := s.InsertRows(ctx, many(100), nil, 0, "bench"); err != nil {
-			b.Fatal(err)
-		}
-	}
-}

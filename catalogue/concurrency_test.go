@@ -1,0 +1,82 @@
+package catalogue
+
+import (
+	"fmt"
+	"sync"
+	"testing"
+	"time"
+)
+
+// Writers and readers of one file, also from a second opening as a command
+// line beside a server would make, never find the database locked.
+func TestWritersAndReadersAtOnce(t *testing.T) {
+	s := open(t)
+	second, err := Open(ctx, s.Path(), Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer second.Close()
+	const each = 12
+	var wg sync.WaitGroup
+	for w, store := range []*Store{s, second, s, second} {
+		wg.Go(func() {
+			for i := range each {
+				rows := []Row{row(fmt.Sprintf("Writer %d", w), float64(i), float64(w), 1.5)}
+				if err := store.InsertRows(ctx, rows, nil, 0, "at once"); err != nil {
+					t.Errorf("writer %d: %v", w, err)
+				}
+			}
+		})
+		wg.Go(func() {
+			for i := range each {
+				if err := store.SessionCommit(ctx, fmt.Sprint(w, i), []byte("x"), time.Now().Add(time.Hour)); err != nil {
+					t.Error(err)
+				}
+			}
+		})
+		wg.Go(func() {
+			for range each {
+				if _, _, err := store.Systems(ctx, Filter{Text: "writer"}); err != nil {
+					t.Error(err)
+				}
+				if _, err := store.Rows(ctx, Filter{}); err != nil {
+					t.Error(err)
+				}
+			}
+		})
+	}
+	wg.Wait()
+	rows, err := s.Rows(ctx, Filter{})
+	if err != nil || len(rows) != 4*each {
+		t.Fatalf("%d rows, %v", len(rows), err)
+	}
+	seen := map[string]bool{}
+	for _, r := range rows {
+		seen[r.Measurement] = true
+	}
+	if len(seen) != len(rows) {
+		t.Error("an id was given twice")
+	}
+	if faults, err := s.Integrity(ctx); err != nil || len(faults) > 0 {
+		t.Error(faults, err)
+	}
+}
+
+// A reader that is half-way through a list sees one moment and stops nobody.
+func TestReaderSeesOneMoment(t *testing.T) {
+	s := open(t)
+	insert(t, s, many(40)...)
+	n := 0
+	err := s.EachRow(ctx, Filter{}, func(Row) error {
+		if n == 3 {
+			if err := s.InsertRows(ctx, []Row{row("Late", 1, 2, 1.5)}, nil, 0, ""); err != nil {
+				return err
+			}
+		}
+		n++
+		return nil
+	})
+	if err != nil || n != 80 {
+		t.Errorf("%d rows, %v", n, err)
+	}
+}
