@@ -205,3 +205,13 @@ func (d *design) value(in *inputs, beta []float64) float64 {
 	}
 	return v
 }
+
+// Explanations lists the rival explanations by name and sentence, for the
+// methods page.
+func Explanations() []Explanation {
+	var out []Explanation
+	for _, m := range models() {
+		out = append(out, Explanation{Name: m.name, Text: m.text})
+	}
+	return out
+}

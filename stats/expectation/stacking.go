@@ -125,23 +125,7 @@ func densityStacking(f *frame, fits []*fitted, use, rows []int) func(int, []floa
 // e_k = E|X_k - p| and D_kl = E|X_k - X_l|, by exponentiated gradients.
 func crpsStacking(f *frame, ch *checks, use, rows []int) func(int, []float64) []float64 {
 	n := len(use)
-	e, d := make([][]float64, len(f.clusters)), make([][]float64, len(f.clusters))
-	for c := range e {
-		e[c], d[c] = make([]float64, n), make([]float64, n*n)
-	}
-	for _, i := range rows {
-		ob := &f.obs[i]
-		for a, k := range use {
-			e[ob.cluster][a] += ob.weight * meanDistance(ch.p[k][i], []float64{ob.p})
-			for b := range a + 1 {
-				v := ob.weight * meanDistance(ch.p[k][i], ch.p[use[b]][i])
-				d[ob.cluster][a*n+b] += v
-				if a != b {
-					d[ob.cluster][b*n+a] += v
-				}
-			}
-		}
-	}
+	e, d := crpsTerms(f, ch, use, rows)
 	return func(skip int, from []float64) []float64 {
 		es, ds := make([]float64, n), make([]float64, n*n)
 		for c := range e {
@@ -185,6 +169,29 @@ func crpsStacking(f *frame, ch *checks, use, rows []int) func(int, []float64) []
 		}
 		return w
 	}
+}
+
+// crpsTerms are the terms e and d of the score, by cluster.
+func crpsTerms(f *frame, ch *checks, use, rows []int) (e, d [][]float64) {
+	n := len(use)
+	e, d = make([][]float64, len(f.clusters)), make([][]float64, len(f.clusters))
+	for c := range e {
+		e[c], d[c] = make([]float64, n), make([]float64, n*n)
+	}
+	for _, i := range rows {
+		ob := &f.obs[i]
+		for a, k := range use {
+			e[ob.cluster][a] += ob.weight * meanDistance(ch.p[k][i], []float64{ob.p})
+			for b := range a + 1 {
+				v := ob.weight * meanDistance(ch.p[k][i], ch.p[use[b]][i])
+				d[ob.cluster][a*n+b] += v
+				if a != b {
+					d[ob.cluster][b*n+a] += v
+				}
+			}
+		}
+	}
+	return e, d
 }
 
 // meanDistance is E|X - Y| of two sorted samples, in linear time.
