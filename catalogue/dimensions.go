@@ -26,7 +26,7 @@ var dimensionExprs = []struct{ name, unit, expr string }{
 // DimensionQuantiles returns the quantiles of the dimensions of the rows under
 // the filter, each over the rows that give it.
 func (s *Store) DimensionQuantiles(ctx context.Context, f Filter) ([]Dimension, error) {
-	w, err := f.condition("")
+	w, err := f.condition()
 	if err != nil {
 		return nil, err
 	}

@@ -27,16 +27,15 @@ func (w *where) String() string {
 	return " WHERE " + strings.Join(w.parts, " AND ")
 }
 
-// condition turns the filter into SQL, leaving out the choices of the column
-// named without.
-func (f *Filter) condition(without string) (*where, error) {
+// condition turns the filter into SQL.
+func (f *Filter) condition() (*where, error) {
 	if f.Release != "" {
 		return nil, &Error{Code: Invalid, Field: "release", Message: fmt.Sprintf("there is no release named %q", f.Release), Expected: "leave it out: no release has been made yet"}
 	}
 	w := &where{}
 	for _, name := range ChoiceParameters {
 		values := f.Choices[name]
-		if len(values) == 0 || name == without {
+		if len(values) == 0 {
 			continue
 		}
 		c, _ := ColumnByName(name)

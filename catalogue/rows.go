@@ -4,6 +4,7 @@ import (
 	"context"
 	"database/sql"
 	"encoding/json"
+	"slices"
 	"strings"
 	"time"
 )
@@ -95,7 +96,7 @@ func eachRow(ctx context.Context, q querier, tail string, args []any, visit func
 // EachRow visits all accepted measurements under the filter, sorted, without
 // holding them in memory.
 func (s *Store) EachRow(ctx context.Context, f Filter, visit func(Row) error) error {
-	w, err := f.condition("")
+	w, err := f.condition()
 	if err != nil {
 		return err
 	}
@@ -109,14 +110,24 @@ func (s *Store) EachRow(ctx context.Context, f Filter, visit func(Row) error) er
 // Rows returns all accepted measurements under the filter (no paging), sorted;
 // unsorted they come in the order in which they were accepted.
 func (s *Store) Rows(ctx context.Context, f Filter) ([]Row, error) {
-	var out []Row
-	err := s.EachRow(ctx, f, func(r Row) error { out = append(out, r); return nil })
-	return out, err
+	// Rows are large: pieces that are joined once are cheaper than one slice
+	// that doubles.
+	const piece = 512
+	var pieces [][]Row
+	err := s.EachRow(ctx, f, func(r Row) error {
+		if last := len(pieces) - 1; last >= 0 && len(pieces[last]) < cap(pieces[last]) {
+			pieces[last] = append(pieces[last], r)
+			return nil
+		}
+		pieces = append(pieces, append(make([]Row, 0, min(piece, 32<<min(len(pieces), 8))), r))
+		return nil
+	})
+	return slices.Concat(pieces...), err
 }
 
 // RowsPage returns one page of Rows with the total.
 func (s *Store) RowsPage(ctx context.Context, f Filter) (rows []Row, total int, err error) {
-	w, err := f.condition("")
+	w, err := f.condition()
 	if err != nil {
 		return nil, 0, err
 	}

@@ -28,6 +28,7 @@ type Store struct {
 	// immutable is added to the address of connections when the file lies where
 	// nothing can be written.
 	immutable string
+	facets    facetIndexes
 	hashes    chan struct{} // bounds the memory of password hashing
 	now       func() time.Time
 }

@@ -12,7 +12,7 @@ import (
 // filter, with the total number of such systems. Each holds its measurements
 // under the filter, best-graded first; sorting uses the first of them.
 func (s *Store) Systems(ctx context.Context, f Filter) ([]System, int, error) {
-	w, err := f.condition("")
+	w, err := f.condition()
 	if err != nil {
 		return nil, 0, err
 	}
