@@ -136,6 +136,7 @@ func (f *Fits) draw(t *Target, p *place) *draws {
 // 1 + exp(x'b* + s r*), or 1 with the share of rows that hold P = 1.
 func (f *Fits) outcomes(d *draws) {
 	d.mix.alpha = f.alpha
+	scratch := make([]float64, d.n)
 	d.p, d.parts = make([][]float64, len(f.fits)), make([]map[string]float64, len(f.fits))
 	for k, t := range f.fits {
 		if t.failure != "" {
@@ -151,7 +152,7 @@ func (f *Fits) outcomes(d *draws) {
 			y := t.value(&d.in[j], t.boot[b*t.p:(b+1)*t.p]) + t.s*t.pool[int(d.res[j]*float64(len(t.pool)))]
 			out[j] = 1 + math.Exp(math.Min(y, 12))
 		}
-		slices.Sort(out)
+		sortPositive(out, scratch)
 		d.p[k], d.parts[k] = out, t.variances(d)
 		if f.weights[k] > 0 {
 			d.mix.add(out, f.weights[k])

@@ -27,7 +27,8 @@ func (f *Fits) frameOf(t *Target, p *place, d *draws) *Result {
 			"scale": "ln_excess", "rotation_of_rows": earth.TidalHistory, "common_rows_for_weights": f.common, "spread_alpha": f.alpha,
 		},
 	}
-	sorted := slices.Sorted(slices.Values(d.f))
+	sorted := slices.Clone(d.f)
+	sortPositive(sorted, nil)
 	res.CoriolisLow, res.CoriolisHigh = quantileOf(sorted, 0.025), quantileOf(sorted, 0.975)
 	if eq, ok := earth.EquivalentModernLatitude(p.ratio, p.lat.Value); ok {
 		res.EquivalentModernLatitude = &eq

@@ -113,12 +113,12 @@ func (f *Fits) regime(t *Target, d *draws) Regime {
 		all[j] = f.oneFlow(t, d.f[j], rng, &width, &depth, &slope)
 	}
 	r := Regime{}
-	buffer := make([]float64, n)
+	buffer, scratch := make([]float64, n), make([]float64, n)
 	three := func(of func(*flow) float64) [3]float64 {
 		for j := range all {
 			buffer[j] = of(&all[j])
 		}
-		slices.Sort(buffer)
+		sortPositive(buffer, scratch)
 		q := [3]float64{quantileOf(buffer, 0.1), quantileOf(buffer, 0.5), quantileOf(buffer, 0.9)}
 		for k, v := range q {
 			if math.IsInf(v, 0) {
