@@ -87,7 +87,7 @@ type Submission struct {
 	UpdatedAt  time.Time
 	State      string // draft, submitted, returned, accepted, withdrawn
 	Batch      int64  // the imported file it came with, 0 for a form
-	Row        Row    // as proposed
+	Row        Row    // as proposed; choices may be blank in drafts and returned ones
 	Current    *Row   // the accepted record it would change, nil when new
 	Changes    []FieldChange
 	Overrides  map[string]string // warning key -> reason
@@ -110,6 +110,8 @@ type Submission struct {
 	Base *Row
 	// Since are the changes others made to the record after the author saw it.
 	Since []FieldChange
+
+	raw Row // as kept: blank choices are not said
 }
 
 // FieldChange is one field before and after, as text.

@@ -4,6 +4,7 @@ import (
 	"context"
 	"database/sql"
 	"errors"
+	"fmt"
 )
 
 // applier writes accepted rows inside one transaction: one change set.
@@ -134,6 +135,10 @@ func (a *applier) examine(ctx context.Context, p *Row) (examined, error) {
 			ex.findings = append(ex.findings, systemChangeFinding(c, ex.system, p))
 		}
 	}
+	if c := ex.current; c != nil && c.Source != p.Source && c.SystemName != p.SystemName && c.LatitudeDeg != p.LatitudeDeg {
+		ex.findings = append(ex.findings, warn("measurement", "id_from_elsewhere", fmt.Sprintf("%s is a measurement of %s from another source at another place: is the id from another catalogue?", c.Measurement, Clip(c.SystemName)),
+			"an empty cell for a new measurement"))
+	}
 	near, err := a.neighbours(ctx, p)
 	if err != nil || len(near) == 0 {
 		return ex, err
@@ -177,6 +182,7 @@ func (a *applier) locate(ctx context.Context, p *Row) (ex examined, err error) {
 	if ex.system != nil && (ex.current == nil || ex.current.System != p.System) {
 		inherit(p, ex.system)
 	}
+	ex.findings = append(ex.findings, unsaid(p)...)
 	p.Normalise()
 	return ex, nil
 }

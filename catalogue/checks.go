@@ -58,6 +58,19 @@ func hardFinding(c *Column, r *Row) (Finding, bool) {
 	return Finding{Column: c.Name, Key: key, Message: e.Message, Expected: e.Expected, Hard: true}, true
 }
 
+// unsaid finds required choices that are blank, before Normalise gives them
+// their default: not known is to be said.
+func unsaid(r *Row) []Finding {
+	var out []Finding
+	for i := range Columns {
+		if c := &Columns[i]; c.Required && c.Kind == KindChoice && CleanText(*c.text(r)) == "" {
+			e := c.refuse("it is required; write unknown when it is not known")
+			out = append(out, Finding{Column: c.Name, Key: c.Name + "_required", Message: e.Message, Expected: e.Expected, Hard: true})
+		}
+	}
+	return out
+}
+
 // hardError turns the first hard finding into an error.
 func hardError(findings []Finding) error {
 	for _, f := range findings {

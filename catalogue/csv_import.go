@@ -32,6 +32,7 @@ type importer struct {
 	more    map[string]int // remarks beyond maxRemarks by kind and column
 	waiting map[string]int // fingerprint of a row of this file -> line, without publishing
 	near    map[string][]filedPlace
+	ids     map[string]int // measurement id -> line
 }
 
 // Import reads the measurement table. All or nothing, unless Partial; the
@@ -40,7 +41,7 @@ type importer struct {
 // error is returned only when the file cannot be read or the catalogue fails;
 // a file with problems gives a report that is not Stored.
 func (s *Store) Import(ctx context.Context, r io.Reader, o ImportOptions) (*ImportReport, error) {
-	im := &importer{o: o, report: &ImportReport{}, more: map[string]int{}, waiting: map[string]int{}, near: map[string][]filedPlace{}}
+	im := &importer{o: o, report: &ImportReport{}, more: map[string]int{}, waiting: map[string]int{}, near: map[string][]filedPlace{}, ids: map[string]int{}}
 	err := s.write(ctx, func(tx *sql.Tx) error {
 		im.a = s.applier(tx, o.By, o.Why)
 		im.a.agree = newAgreement()

@@ -32,6 +32,11 @@ func (im *importer) take(ctx context.Context, line int, row Row, record []string
 		im.report.Identical++
 		return nil
 	}
+	if first, twice := im.ids[row.Measurement]; twice && row.Measurement != "" {
+		im.problem(RowProblem{Line: line, Column: "measurement", Value: row.Measurement, Message: fmt.Sprintf("line %d has the same id and other values", first), Expected: "each id once; an empty cell for a new measurement"})
+		return nil
+	}
+	im.ids[row.Measurement] = line
 	if ex.current == nil && row.Contributor == "" {
 		row.Contributor, raw.Contributor = im.credit, im.credit
 	}

@@ -125,6 +125,8 @@ func TestImportRefuses(t *testing.T) {
 		"wrong letter":      {head + "\nB,12 30 E,20,1.5,peak,thalweg,S\n", 2, "latitude_deg", "12 30 E", "other coordinate", "degrees and minutes"},
 		"two values":        {head + ",feeder\nB,1,20,1.5,peak,thalweg,S,river\nB,2,20,1.5,peak,thalweg,S,shelf\n", 3, "feeder", "shelf", "line 2 says \"river\"", "one value"},
 		"control character": {head + "\nB\x01,1,20,1.5,peak,thalweg,S\n", 2, "system_name", "B\x01", "control character", "text"},
+		"blank choice":      {head + "\nB,1,20,1.5,,thalweg,S\n", 2, "sinuosity_kind", "", "write unknown", "one of"},
+		"id twice":          {"measurement," + head + "\nx1,B,1,20,1.5,peak,thalweg,S\nx1,B,1,20,1.6,peak,thalweg,S\n", 3, "measurement", "x1", "line 2 has the same id", "once"},
 		"1e999":             {head + "\nB,1,20,1e999,peak,thalweg,S\n", 2, "sinuosity", "1e999", "not a number", "number"},
 	} {
 		t.Run(name, func(t *testing.T) {
@@ -301,6 +303,15 @@ func TestImportReviewAndCorrection(t *testing.T) {
 	after, _ := s.Rows(ctx, Filter{})
 	if d := Diff(&rows[0], &after[0]); len(d) != 1 || d[0] != (FieldChange{"channel_width_m", "", "450"}) {
 		t.Error(d)
+	}
+}
+
+func TestImportWarnsOfAnIdFromElsewhere(t *testing.T) {
+	s := open(t)
+	insert(t, s, row("Mine", 1, 2, 1.5))
+	rep := importText(t, s, "measurement,"+head+"\nm000001,Theirs,50,60,1.7,peak,thalweg,Other\n", ImportOptions{})
+	if rep.Changed != 1 || len(rep.Warnings) != 1 || !strings.Contains(rep.Warnings[0].Message, "another catalogue") {
+		t.Errorf("%+v", rep)
 	}
 }
 

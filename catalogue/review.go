@@ -229,7 +229,7 @@ func (u *Submission) settle(ctx context.Context, tx *sql.Tx, edited *Row, seen i
 	case edited != nil && current != nil:
 		return Row{}, conflict(*current)
 	case current == nil && u.Base == nil:
-		return u.Row, nil
+		return u.raw, nil
 	case current == nil:
 		return Row{}, &Error{Code: Conflict, Field: "measurement", Message: "the record this would change is no longer there"}
 	case u.Base == nil: // someone else gave a new record the same id

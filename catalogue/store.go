@@ -62,6 +62,11 @@ func (s *Store) open(ctx context.Context, o Options) (err error) {
 			return err
 		}
 	} else {
+		// The file holds password hashes: only its owner reads it. Failing here
+		// is for SQLite to report.
+		if f, err := os.OpenFile(s.path, os.O_CREATE|os.O_EXCL, 0o600); err == nil {
+			f.Close()
+		}
 		if s.w, err = sql.Open("sqlite", writerDSN(s.path, o)); err != nil {
 			return err
 		}

@@ -131,6 +131,10 @@ func scanSubmission(rows *sql.Rows) (Submission, error) {
 		u.Base = &b
 		u.Row.Measurement = target
 	}
+	u.raw = u.Row
+	if u.State != "draft" && u.State != "returned" {
+		u.Row.Normalise()
+	}
 	u.Row.Invented = strings.HasPrefix(u.Row.Notes, InventedMark)
 	for text, into := range map[string]any{typed: &u.Typed, overrides: &u.Overrides} {
 		if text == "{}" {
