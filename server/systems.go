@@ -1,5 +1,204 @@
 package main
 
-import "github.com/labstack/echo/v4"
+import (
+	"bytes"
+	"encoding/csv"
+	"net/http"
+	"net/url"
+	"strconv"
 
-func (a *App) routesSystems(e *echo.Echo) {}
+	"github.com/labstack/echo/v4"
+
+	"fathombend/catalogue"
+	"fathombend/views"
+)
+
+func (a *App) routesSystems(e *echo.Echo) {
+	get(e, "/systems", a.systems)
+	get(e, "/systems.csv", a.systemsCSV)
+	get(e, "/systems.json", a.systemsJSON)
+	get(e, "/systems.geojson", a.systemsGeoJSON)
+	get(e, "/systems/dimensions.csv", a.dimensionsCSV)
+	get(e, "/systems/:slug", a.system)
+}
+
+// systemsQuestion reads the filter of a page or a twin of it.
+func systemsQuestion(c echo.Context) (url.Values, catalogue.Filter, error) {
+	q, err := params(c)
+	if err != nil {
+		return nil, catalogue.Filter{}, err
+	}
+	if err := allow(q, catalogue.FilterParameters); err != nil {
+		return nil, catalogue.Filter{}, err
+	}
+	f, err := filterOf(q)
+	return q, f, err
+}
+
+// systems is the filtered table.
+func (a *App) systems(c echo.Context) error {
+	q, f, err := systemsQuestion(c)
+	if err != nil {
+		return err
+	}
+	ctx := c.Request().Context()
+	p := views.SystemsPage{Filter: f}
+	if p.Systems, p.Total, err = a.store.Systems(ctx, f); err != nil {
+		return err
+	}
+	if p.Facets, err = a.store.Facets(ctx, f); err != nil {
+		return err
+	}
+	if p.Dimensions, err = a.store.DimensionQuantiles(ctx, f); err != nil {
+		return err
+	}
+	p.Page = a.page(c, "Systems", "systems")
+	p.Wide = true
+	q = withoutEmpty(q)
+	p.Query = q
+	p.JSON = withQuery("/systems.json", q)
+	all := f.Values()
+	all.Del("page")
+	all.Del("per_page")
+	p.CSV, p.GeoJSON = withQuery("/systems.csv", all), withQuery("/systems.geojson", all)
+	all.Del("sort")
+	p.DimensionsCSV = withQuery("/systems/dimensions.csv", all)
+	return render(c, http.StatusOK, views.Systems(p))
+}
+
+// systemsCSV streams every row of the filter. An error before the first byte
+// is answered as one; later the connection is cut, so that half a table never
+// looks like a whole one.
+func (a *App) systemsCSV(c echo.Context) error {
+	_, f, err := systemsQuestion(c)
+	if err != nil {
+		return err
+	}
+	f.Page, f.PerPage = 0, 0
+	h := c.Response().Header()
+	h.Set(echo.HeaderContentType, "text/csv; charset=utf-8")
+	h.Set(echo.HeaderContentDisposition, `attachment; filename="fathombend-systems.csv"`)
+	if c.Request().Method == http.MethodHead {
+		return c.NoContent(http.StatusOK)
+	}
+	if _, err := a.store.Export(c.Request().Context(), c.Response(), f); err != nil {
+		if c.Response().Committed {
+			a.log.Error("export broke off", "request_id", requestID(c), "err", err)
+			panic(http.ErrAbortHandler)
+		}
+		h.Del(echo.HeaderContentDisposition)
+		return err
+	}
+	return nil
+}
+
+// dimensionsCSV is the table of quantiles under the table of systems.
+func (a *App) dimensionsCSV(c echo.Context) error {
+	_, f, err := systemsQuestion(c)
+	if err != nil {
+		return err
+	}
+	dims, err := a.store.DimensionQuantiles(c.Request().Context(), f)
+	if err != nil {
+		return err
+	}
+	var b bytes.Buffer
+	w := csv.NewWriter(&b)
+	w.Write([]string{"dimension", "unit", "measurements", "p10", "p25", "p50", "p75", "p90"})
+	for _, d := range dims {
+		record := []string{d.Name, d.Unit, strconv.Itoa(d.N)}
+		for _, v := range []catalogue.Number{d.P10, d.P25, d.P50, d.P75, d.P90} {
+			record = append(record, catalogue.FormatNumber(v))
+		}
+		w.Write(record)
+	}
+	w.Flush()
+	c.Response().Header().Set(echo.HeaderContentDisposition, `attachment; filename="fathombend-dimensions.csv"`)
+	return c.Blob(http.StatusOK, "text/csv; charset=utf-8", b.Bytes())
+}
+
+// systemJSON is one system of /systems.json.
+type systemJSON struct {
+	Slug         string          `json:"slug"`
+	Name         string          `json:"name"`
+	Invented     bool            `json:"invented"`
+	Measurements []orderedObject `json:"measurements"`
+}
+
+type systemsAnswer struct {
+	Total        int             `json:"total"`
+	Page         int             `json:"page"`
+	PerPage      int             `json:"per_page"`
+	InventedRows int             `json:"invented_rows"`
+	Dimensions   []dimensionJSON `json:"dimensions"`
+	Systems      []systemJSON    `json:"systems"`
+}
+
+type dimensionJSON struct {
+	Name         string   `json:"name"`
+	Unit         string   `json:"unit"`
+	Measurements int      `json:"measurements"`
+	P10          *float64 `json:"p10"`
+	P25          *float64 `json:"p25"`
+	P50          *float64 `json:"p50"`
+	P75          *float64 `json:"p75"`
+	P90          *float64 `json:"p90"`
+}
+
+// systemsJSON is the page's table as data: one page of systems, each with
+// every column of its measurements.
+func (a *App) systemsJSON(c echo.Context) error {
+	_, f, err := systemsQuestion(c)
+	if err != nil {
+		return err
+	}
+	ctx := c.Request().Context()
+	systems, total, err := a.store.Systems(ctx, f)
+	if err != nil {
+		return err
+	}
+	dims, err := a.store.DimensionQuantiles(ctx, f)
+	if err != nil {
+		return err
+	}
+	answer := systemsAnswer{Total: total, Page: max(f.Page, 1), PerPage: f.PerPage}
+	if answer.PerPage == 0 {
+		answer.PerPage = catalogue.DefaultPerPage
+	}
+	for _, d := range dims {
+		answer.Dimensions = append(answer.Dimensions, dimensionJSON{d.Name, d.Unit, d.N, orNull(d.P10), orNull(d.P25), orNull(d.P50), orNull(d.P75), orNull(d.P90)})
+	}
+	for _, s := range systems {
+		j := systemJSON{Slug: s.Slug, Name: s.Name}
+		for _, r := range s.Measurements {
+			if r.Invented {
+				j.Invented = true
+				answer.InventedRows++
+			}
+			j.Measurements = append(j.Measurements, rowJSON(&r))
+		}
+		answer.Systems = append(answer.Systems, j)
+	}
+	return writeJSON(c, http.StatusOK, answer)
+}
+
+func orNull(n catalogue.Number) *float64 {
+	if !n.Valid || !isFinite(n.V) {
+		return nil
+	}
+	return &n.V
+}
+
+// rowJSON is one measurement with every column of the table: numbers or null,
+// texts.
+func rowJSON(r *catalogue.Row) orderedObject {
+	out := make(orderedObject, 0, len(catalogue.Columns)+1)
+	for _, col := range catalogue.Columns {
+		var v any = col.Get(r)
+		if col.Numeric() {
+			v = orNull(col.Number(r))
+		}
+		out = append(out, orderedField{col.Name, v})
+	}
+	return append(out, orderedField{"invented", r.Invented})
+}
