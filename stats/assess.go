@@ -27,6 +27,7 @@ type study struct {
 	boot      *replicates
 	rows      *replicates
 	jack      [][][]float64 // by model, leave-one-cluster-out
+	pull      [][][]float64 // by model, what BCa takes its acceleration from: jack, or see regressionInfluence
 	rowJack   [][][]float64
 	shareJack [][]float64
 	jobOf     []int // by model: its place among the jobs, or -1
@@ -55,7 +56,7 @@ func (s *study) resample(ctx context.Context, progress func(float64)) error {
 	var jobs []job
 	for _, f := range s.models {
 		if f.failure != "" {
-			s.jobOf, s.jack = append(s.jobOf, -1), append(s.jack, nil)
+			s.jobOf, s.jack, s.pull = append(s.jobOf, -1), append(s.jack, nil), append(s.pull, nil)
 			continue
 		}
 		s.jobOf = append(s.jobOf, len(jobs))
@@ -65,6 +66,7 @@ func (s *study) resample(ctx context.Context, progress func(float64)) error {
 		}
 		jobs = append(jobs, j)
 		s.jack = append(s.jack, jackknife(f.cluster, s.t.cluster.count()))
+		s.pull = append(s.pull, s.jack[len(s.jack)-1])
 	}
 	if s.shares = newShares(s); s.shares != nil {
 		s.shareJob = len(jobs)
@@ -78,6 +80,13 @@ func (s *study) resample(ctx context.Context, progress func(float64)) error {
 	s.boot, err = bootstrap(ctx, s.t.cluster.count(), s.req.Resamples, s.seed, s.req.Workers, jobs, progress)
 	if err != nil {
 		return err
+	}
+	if n := s.t.n(); s.t.cluster.count() == n && influenceRows*n <= s.req.Resamples {
+		for k, e := range s.jobOf {
+			if e >= 0 {
+				s.pull[k] = s.boot.regressionInfluence(e, n, len(s.models[k].coef)+1, s.seed)
+			}
+		}
 	}
 	return s.resampleRows(ctx)
 }
@@ -114,14 +123,28 @@ func (s *study) resampleRows(ctx context.Context) error {
 		}
 		f.row = f.compile(&single)
 		jobs = append(jobs, job{est: f.row})
-		s.rowJack[len(s.rowJack)-1] = jackknife(f.row, n)
+		if influenceRows*n > resamples {
+			s.rowJack[len(s.rowJack)-1] = jackknife(f.row, n)
+		}
 	}
 	if len(jobs) == 0 {
 		return nil
 	}
 	var err error
-	s.rows, err = bootstrap(ctx, n, resamples, s.req.Seed, s.req.Workers, jobs, nil)
-	return err
+	if s.rows, err = bootstrap(ctx, n, resamples, s.req.Seed, s.req.Workers, jobs, nil); err != nil {
+		return err
+	}
+	e := 0
+	for k, f := range s.models {
+		if f.row == nil {
+			continue
+		}
+		if s.rowJack[k] == nil {
+			s.rowJack[k] = s.rows.regressionInfluence(e, n, len(f.coef), s.req.Seed)
+		}
+		e++
+	}
+	return nil
 }
 
 // singles is the grouping in which every row stands alone.
@@ -209,7 +232,7 @@ func (s *study) coefficients(m *Model, k, rowJob int) {
 	}
 	e := s.jobOf[k]
 	m.DegenerateResamples, m.ResamplesUsed = s.boot.degenerate(e), s.boot.done[e]
-	m.RSquaredInterval = s.statInterval(e, len(f.coef), f.r2, columnOf(s.jack[k], len(f.coef)))
+	m.RSquaredInterval = s.statInterval(e, len(f.coef), f.r2, columnOf(s.pull[k], len(f.coef)))
 	m.RSquaredIntervalKind = s.statKind()
 	m.Carrier = s.carrier(k)
 }
@@ -228,7 +251,7 @@ func (s *study) bootIntervals(c *Coefficient, k, j int) {
 		c.StandardError = length / math.Sqrt(float64(len(v)-1))
 	}
 	sortFloats(v)
-	c.Intervals["bca"] = bcaInterval(v, f.coef[j], columnOf(s.jack[k], j), s.req.Level)
+	c.Intervals["bca"] = bcaInterval(v, f.coef[j], columnOf(s.pull[k], j), s.req.Level)
 	c.Intervals["percentile"] = percentileInterval(v, s.req.Level)
 }
 

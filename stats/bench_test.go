@@ -71,3 +71,60 @@ func BenchmarkLarge(b *testing.B) {
 		analyse(b, rows, req)
 	}
 }
+
+// sixtyRows are the 48 reference rows and the first 12 again, as in
+// bench/against_r.R, each row a group of its own.
+func sixtyRows(b *testing.B) *table {
+	rows := referenceRows(b)
+	req := DefaultRequest()
+	t := newTable(consider(append(rows, rows[:12]...), &req), &req, "")
+	t.cluster = singles(t.n())
+	return t
+}
+
+// BenchmarkAgainstR is the work of bench/against_r.R: 10,000 row resamples of
+// three straight lines, nine statistics, with all nine BCa intervals.
+func BenchmarkAgainstR(b *testing.B) {
+	t := sixtyRows(b)
+	var slope Interval
+	for b.Loop() {
+		var jobs []job
+		var models []*fitted
+		for _, p := range []string{"valley_slope", "abs_latitude", "coriolis"} {
+			f := fitPlan(t, newPlan(t, ModelSpec{"linear", p}, "raw"))
+			models, jobs = append(models, f), append(jobs, job{est: f.cluster})
+		}
+		r, err := bootstrap(b.Context(), t.n(), 10_000, 1, 1, jobs, nil)
+		if err != nil {
+			b.Fatal(err)
+		}
+		for e, f := range models {
+			jack := jackknife(f.cluster, t.n())
+			for k, own := range []float64{f.coef[0], f.coef[1], f.r2} {
+				v := r.column(e, k)
+				sortFloats(v)
+				if i := bcaInterval(v, own, columnOf(jack, k), 0.95); e == 1 && k == 1 {
+					slope = i
+				}
+			}
+		}
+	}
+	b.ReportMetric(slope[0], "low")
+	b.ReportMetric(slope[1], "high")
+}
+
+// BenchmarkOneStatistic is 10,000 row resamples of one slope with its percentile
+// interval, for the comparison with numpy.
+func BenchmarkOneStatistic(b *testing.B) {
+	t := sixtyRows(b)
+	for b.Loop() {
+		f := fitPlan(t, newPlan(t, ModelSpec{"linear", "abs_latitude"}, "raw"))
+		r, err := bootstrap(b.Context(), t.n(), 10_000, 1, 1, []job{{est: f.cluster}}, nil)
+		if err != nil {
+			b.Fatal(err)
+		}
+		v := r.column(0, 1)
+		sortFloats(v)
+		percentileInterval(v, 0.95)
+	}
+}

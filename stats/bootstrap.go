@@ -2,7 +2,6 @@ package stats
 
 import (
 	"context"
-	"math/bits"
 	"math/rand/v2"
 	"sync"
 	"sync/atomic"
@@ -30,29 +29,35 @@ type job struct {
 type sampler struct {
 	pcg    rand.PCG
 	seed   uint64
-	counts []float64
+	counts []int32
 	d      *draw
 }
 
 func newSampler(groups int, seed uint64) *sampler {
-	return &sampler{seed: seed, counts: make([]float64, groups), d: newDraw(groups)}
+	return &sampler{seed: seed, counts: make([]int32, groups), d: newDraw(groups)}
 }
 
 func (s *sampler) draw(i int) *draw {
 	s.pcg.Seed(s.seed, uint64(i))
 	clear(s.counts)
 	g := uint64(len(s.counts))
-	for range s.counts {
-		// Multiply-high keeps the bias below groups/2^64.
-		k, _ := bits.Mul64(s.pcg.Uint64(), g)
-		s.counts[k]++
+	// Two draws from one number: the high halves of 32 bits times g. The bias is
+	// below groups/2^32.
+	for range len(s.counts) / 2 {
+		u := s.pcg.Uint64()
+		s.counts[u>>32*g>>32]++
+		s.counts[u&0xffffffff*g>>32]++
 	}
-	s.d.id, s.d.wt = s.d.id[:0], s.d.wt[:0]
+	if g%2 == 1 {
+		s.counts[s.pcg.Uint64()>>32*g>>32]++
+	}
+	// Without a branch, as no processor can foresee which groups are in.
+	id, wt, n := s.d.id[:g], s.d.wt[:g], 0
 	for k, c := range s.counts {
-		if c > 0 {
-			s.d.id, s.d.wt = append(s.d.id, int32(k)), append(s.d.wt, c)
-		}
+		id[n], wt[n] = int32(k), float64(c)
+		n += int(uint32(-c) >> 31)
 	}
+	s.d.id, s.d.wt = id[:n], wt[:n]
 	s.d.size, s.d.index = float64(g), i
 	return s.d
 }
@@ -172,6 +177,55 @@ func jackknife(est estimator, groups int) [][]float64 {
 			}
 		}
 		all[g], all[last] = all[last], all[g]
+	}
+	return out
+}
+
+// influenceRows is how many resamples a row must have behind it before its
+// influence is read off the resamples.
+const influenceRows = 20
+
+// regressionInfluence is the influence of every group on the first cols
+// statistics of estimator e, by regression of the replicates on how often each
+// group was drawn (Davison & Hinkley, Bootstrap Methods and their Application
+// (1997), section 2.7.4). It is what BCa takes for single rows, as R's boot.ci
+// does; the sign is that of leave-one-out values, so that acceleration reads
+// both. The frequencies are drawn anew from their streams. Their covariance is
+// that of the multinomial, so the regression is the covariance with each of them.
+func (r *replicates) regressionInfluence(e, groups, cols int, seed uint64) [][]float64 {
+	s, w := newSampler(groups, seed), r.width[e]
+	mean, n := make([]float64, cols), 0.0
+	usable := func(v []float64) bool {
+		for _, x := range v {
+			if !finite(x) {
+				return false
+			}
+		}
+		return true
+	}
+	for i := range r.done[e] {
+		if v := r.val[e][i*w : i*w+cols]; r.ok[e][i] && usable(v) {
+			axpy(1, v, mean)
+			n++
+		}
+	}
+	flat, out := make([]float64, groups*cols), make([][]float64, groups)
+	for g := range out {
+		out[g] = flat[g*cols : (g+1)*cols]
+	}
+	d := make([]float64, cols)
+	for i := range r.done[e] {
+		v := r.val[e][i*w : i*w+cols]
+		if !r.ok[e][i] || !usable(v) {
+			continue
+		}
+		for k := range d {
+			d[k] = mean[k]/n - v[k]
+		}
+		dr := s.draw(i)
+		for k, g := range dr.id {
+			axpy(dr.wt[k], d, out[g])
+		}
 	}
 	return out
 }

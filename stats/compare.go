@@ -37,9 +37,9 @@ func (s *study) difference(i, j int) Interval {
 			v = append(v, d)
 		}
 	}
-	jack := make([]float64, len(s.jack[i]))
+	jack := make([]float64, len(s.pull[i]))
 	for g := range jack {
-		jack[g] = s.jack[i][g][ka] - s.jack[j][g][kb]
+		jack[g] = s.pull[i][g][ka] - s.pull[j][g][kb]
 	}
 	return s.intervalOf(v, a.r2-b.r2, jack)
 }
