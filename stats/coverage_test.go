@@ -7,6 +7,8 @@ import (
 	"math"
 	"math/rand/v2"
 	"os"
+	"slices"
+	"strconv"
 	"strings"
 	"testing"
 )
@@ -250,5 +252,41 @@ func TestNoneFindsNothing(t *testing.T) {
 	}
 	if found > 1 {
 		t.Errorf("%d of 20 seeds find something where there is nothing", found)
+	}
+}
+
+// The small print says what the table in the tree says.
+func TestIntervalCoverageIsTheTable(t *testing.T) {
+	b, err := os.ReadFile(coverageFile)
+	if err != nil {
+		t.Fatal(err)
+	}
+	got := map[string][][]float64{}
+	for _, line := range strings.Split(string(b), "\n") {
+		cells := strings.Split(line, "|")
+		if len(cells) < 8 || !strings.Contains(line, " % (") {
+			continue
+		}
+		var row []float64
+		for _, c := range cells[3:8] {
+			v, err := strconv.ParseFloat(strings.Fields(c)[0], 64)
+			if err != nil {
+				t.Fatal(err)
+			}
+			row = append(row, v)
+		}
+		scale := strings.TrimSpace(cells[1])
+		got[scale] = append(got[scale], row)
+	}
+	for k, c := range IntervalCoverage {
+		for scale, want := range map[string][2]float64{"ln(P - 1)": c.OnLnExcess, "P": c.OnRaw} {
+			var v []float64
+			for _, row := range got[scale] {
+				v = append(v, row[k])
+			}
+			if len(v) != 4 || slices.Min(v) != want[0] || slices.Max(v) != want[1] {
+				t.Errorf("%s on %s: table %v, small print %v", c.Kind, scale, v, want)
+			}
+		}
 	}
 }

@@ -5,10 +5,10 @@ import (
 	"testing"
 )
 
-// The pencil of a 95 % interval on the reference rows, |latitude|
-// -0.028..-0.0041 with 4.6 degrees of freedom, slope -76..+36 with 2.2, was
-// worked from the formulas of Bell & McCaffrey (2002) and Pustejovsky & Tipton
-// (2018). bruteCR2 does the same with whole n x n matrices, so the short cut
+// The 95 % intervals on the reference rows, |latitude| -0.028..-0.0041 with 4.6
+// degrees of freedom and slope -76..+36 with 2.2, were worked by hand from the
+// formulas of Bell & McCaffrey (2002) and Pustejovsky & Tipton (2018) (science
+// notes, section 2). bruteCR2 does the same with whole n x n matrices, so the short cut
 // through p x p matrices is checked to rounding.
 func TestCR2Reference(t *testing.T) {
 	for _, c := range []struct {

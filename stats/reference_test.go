@@ -162,7 +162,7 @@ func bruteCR2(p *plan, of []int, fit *LinearFit, coef int) (se, df float64) {
 	return math.Sqrt(v), tr * tr / sq
 }
 
-// Row bootstrap, whole-cluster bootstrap and straight-line fits against R.
+// rFit is one fit of reference_r.json.
 type rFit struct {
 	Coef, SE             []float64
 	R2, Sigma, AICc, BIC float64
