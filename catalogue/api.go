@@ -56,8 +56,8 @@ type Revision struct {
 	Action string // create, change, accept, return, withdraw
 }
 
-// Facet counts the accepted systems by one choice of one column under the
-// filter.
+// Facet counts the accepted systems by each choice of one column under the
+// filter; see Facets.
 type Facet struct {
 	Column string
 	Values []FacetValue

@@ -21,15 +21,12 @@ func (im *importer) take(ctx context.Context, line int, row Row, record []string
 	if err != nil {
 		return err
 	}
-	if im.remarks(line, ex.findings, record, refused) || len(refused) > 0 {
+	same := ex.twin != "" || (ex.current != nil && len(Diff(ex.current, &row)) == 0)
+	if same && len(refused) == 0 && hardError(ex.findings) == nil {
+		im.report.Identical++ // skipped, so nothing is said of it
 		return nil
 	}
-	switch {
-	case ex.twin != "":
-		im.report.Identical++
-		return nil
-	case ex.current != nil && len(Diff(ex.current, &row)) == 0:
-		im.report.Identical++
+	if im.remarks(line, ex.findings, record, refused) || len(refused) > 0 {
 		return nil
 	}
 	if first, twice := im.ids[row.Measurement]; twice && row.Measurement != "" {

@@ -267,7 +267,7 @@ func TestImportReviewAndCorrection(t *testing.T) {
 	if len(rows) != 2 || rows[1].Feeder != "river" || rows[1].System != rows[0].System {
 		t.Fatalf("the second row joins the system of the first: %+v", rows)
 	}
-	if again := importText(t, s, text, ImportOptions{Publish: true}); again.Identical != 2 || again.New != 0 {
+	if again := importText(t, s, text, ImportOptions{Publish: true}); again.Identical != 2 || again.New != 0 || len(again.Warnings) > 0 {
 		t.Errorf("the accepted file again: %+v", again)
 	}
 	// A download corrected in one cell of one row proposes one change.

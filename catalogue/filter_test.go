@@ -202,6 +202,43 @@ func TestFacets(t *testing.T) {
 	}
 }
 
+// Each count is the number of systems found when that choice alone is picked
+// in its column, the rest of the filter unchanged.
+func TestFacetsCountWhatTheyPromise(t *testing.T) {
+	s := open(t)
+	insert(t, s, many(60)...)
+	for name, f := range map[string]Filter{
+		"all":     {},
+		"choices": {Choices: map[string][]string{"feeder": {"river", "shelf"}, "setting": {"fan"}, "grade": {"surveyed"}}},
+		"numbers": {SinuosityMin: Num(1.6), LatMax: Num(0), Choices: map[string][]string{"grain": {"mud"}}},
+		"text":    {Text: "invented 0001"},
+	} {
+		facets, err := s.Facets(ctx, f)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for _, facet := range facets {
+			for _, v := range facet.Values {
+				g := f
+				g.Choices = map[string][]string{}
+				for k, x := range f.Choices {
+					g.Choices[k] = x
+				}
+				g.Choices[facet.Column] = []string{v.Value}
+				if _, total, err := s.Systems(ctx, g); err != nil || total != v.Count {
+					t.Errorf("%s: %s=%s counts %d, finds %d, %v", name, facet.Column, v.Value, v.Count, total, err)
+				}
+			}
+		}
+	}
+	// A change is counted at once.
+	insert(t, s, row("One more", 1, 2, 1.5))
+	facets, _ := s.Facets(ctx, Filter{})
+	if facets[0].Values[0].Count != 61 {
+		t.Errorf("%v", facets[0])
+	}
+}
+
 func TestDimensionQuantiles(t *testing.T) {
 	s := open(t)
 	var rows []Row

@@ -15,7 +15,9 @@ func Num(v float64) Number { return Number{V: v, Valid: true} }
 // Row is one measurement together with the system it belongs to and its
 // source: one line of the measurement table, with a field for every column of
 // Columns. Text fields hold "" when nothing was given; choice fields always
-// hold one of the column's choices.
+// hold one of the column's choices (palaeolatitude_method only where there is a
+// palaeolatitude). On the way in a blank choice means "not said": it takes the
+// value of a known system, or the default of the column.
 type Row struct {
 	// Identity.
 	Measurement   string // stable id, "m000123"

@@ -135,7 +135,7 @@ func (s *Store) accept(ctx context.Context, id, by int64, comment string, edited
 		if err := mayCurate(ctx, tx, by); err != nil {
 			return err
 		}
-		return s.acceptOne(ctx, tx, id, by, comment, edited, seen)
+		return s.acceptOne(ctx, s.applier(tx, by, ""), id, comment, edited, seen)
 	})
 }
 
@@ -157,8 +157,9 @@ func (s *Store) AcceptBatch(ctx context.Context, batch, by int64, comment string
 		if len(ids) == 0 {
 			return &Error{Code: NotFound, Message: "nothing of that file is waiting"}
 		}
+		a := s.applier(tx, by, "") // one for all: it keeps its statements
 		for _, id := range ids {
-			if err := s.acceptOne(ctx, tx, id, by, comment, nil, 0); err != nil {
+			if err := s.acceptOne(ctx, a, id, comment, nil, 0); err != nil {
 				return err
 			}
 		}
@@ -185,20 +186,20 @@ func submittedOf(ctx context.Context, tx *sql.Tx, batch int64) ([]int64, error) 
 	return ids, rows.Err()
 }
 
-func (s *Store) acceptOne(ctx context.Context, tx *sql.Tx, id, by int64, comment string, edited *Row, seen int64) error {
-	if err := s.decide(ctx, tx, id, "accepted", comment, by, "submitted"); err != nil {
+// acceptOne accepts one submission as a change set of its own.
+func (s *Store) acceptOne(ctx context.Context, a *applier, id int64, comment string, edited *Row, seen int64) error {
+	if err := s.decide(ctx, a.tx, id, "accepted", comment, a.by, "submitted"); err != nil {
 		return err
 	}
-	sub, err := submissionByID(ctx, tx, id)
+	sub, err := submissionByID(ctx, a.tx, id)
 	if err != nil {
 		return err
 	}
-	row, err := sub.settle(ctx, tx, edited, seen)
+	row, err := sub.settle(ctx, a, edited, seen)
 	if err != nil {
 		return err
 	}
-	a := s.applier(tx, by, whyAccepted(comment, sub.Overrides))
-	a.from, a.owner = id, sub.By.ID
+	a.set, a.why, a.from, a.owner = 0, whyAccepted(comment, sub.Overrides), id, sub.By.ID
 	if _, err := a.apply(ctx, &row); err != nil {
 		return err
 	}
@@ -209,8 +210,8 @@ func (s *Store) acceptOne(ctx context.Context, tx *sql.Tx, id, by int64, comment
 }
 
 // settle returns the row to be written, or the conflict.
-func (u *Submission) settle(ctx context.Context, tx *sql.Tx, edited *Row, seen int64) (Row, error) {
-	current, meta, err := rowOf(ctx, tx, u.Row.Measurement)
+func (u *Submission) settle(ctx context.Context, a *applier, edited *Row, seen int64) (Row, error) {
+	current, meta, err := a.rowOf(ctx, u.Row.Measurement)
 	if err != nil {
 		return Row{}, err
 	}
