@@ -281,8 +281,12 @@ func (p *contributions) post(c echo.Context) error {
 }
 
 // keep saves a draft or sends the record to the curators.
-func (p *contributions) keep(c echo.Context, r *record, line *measuredLine, f views.ContributeForm, action string) error {
+func (p *contributions) keep(c echo.Context, r *record, line *formLine, f views.ContributeForm, action string) error {
 	ctx, u := c.Request().Context(), p.user(c)
+	if f.State == "accepted" || f.State == "withdrawn" {
+		return p.refused(c, r, f, &catalogue.Error{Code: catalogue.Conflict,
+			Message: "This record is " + f.State + " by now and no longer changes here. What you typed is below: copy what you need into a new form, or propose a change from the page of its system"})
+	}
 	refused := f.Line != nil && f.Line.Error != ""
 	if action == "submit" {
 		r.need()
@@ -364,7 +368,7 @@ func (r *record) tooLong() (found bool) {
 }
 
 // submission is the record as the catalogue keeps it.
-func (r *record) submission(line *measuredLine) catalogue.Submission {
+func (r *record) submission(line *formLine) catalogue.Submission {
 	s := catalogue.Submission{Row: r.row, Overrides: r.overrides, Typed: r.unread}
 	if r.checkedAll {
 		// A reason for what is no longer odd would only puzzle the curator.

@@ -21,8 +21,8 @@ import (
 // maxPastedLine is how much of a centreline a form carries along, bytes.
 const maxPastedLine = 4 << 20
 
-// measuredLine is the centreline of a form, measured.
-type measuredLine struct {
+// formLine is the centreline of a form, measured.
+type formLine struct {
 	geoJSON  string // LineString; third coordinate elevation, m, up positive
 	settings string // JSON
 	planform *planform.Measured
@@ -59,7 +59,7 @@ func lineText(c echo.Context, r *record) (data []byte, name string, err error) {
 
 // measureLine measures the centreline of a form, nil when there is none. A
 // refusal is an error beside the field.
-func measureLine(c echo.Context, r *record) (*measuredLine, *views.LineReport) {
+func measureLine(c echo.Context, r *record) (*formLine, *views.LineReport) {
 	data, name, err := lineText(c, r)
 	if err != nil {
 		return nil, &views.LineReport{Error: "The file could not be read; choose it again."}
@@ -86,7 +86,7 @@ func measureLine(c echo.Context, r *record) (*measuredLine, *views.LineReport) {
 	if err != nil {
 		return nil, &views.LineReport{Error: inputSentence(err)}
 	}
-	out := &measuredLine{geoJSON: lineString(lines[0]), planform: m}
+	out := &formLine{geoJSON: lineString(lines[0]), planform: m}
 	if b, err := json.Marshal(finite(m.Settings)); err == nil {
 		out.settings = string(b)
 	}
@@ -132,7 +132,7 @@ func lineString(l planform.Line) string {
 	return b.String()
 }
 
-func (l *measuredLine) sinuosities() []float64 {
+func (l *formLine) sinuosities() []float64 {
 	var out []float64
 	for _, w := range l.planform.Windows {
 		if isFinite(w.Sinuosity) && w.Sinuosity >= 1 {
@@ -197,7 +197,7 @@ func rounded(v float64) string {
 
 // fillFrom puts what the line measures into fields that are empty, and returns
 // which.
-func (r *record) fillFrom(l *measuredLine) (filled []string) {
+func (r *record) fillFrom(l *formLine) (filled []string) {
 	m := l.planform
 	set := func(column, text string) {
 		now := strings.TrimSpace(r.typed.Get(column))

@@ -18,6 +18,7 @@
     const mine = running = new AbortController();
     const body = new FormData(form);
     body.delete("centreline_file");
+    body.delete("centreline");
     body.set("action", "check");
     try {
       const answer = await fetch(form.action, { method: "POST", body, signal: mine.signal, redirect: "error" });
