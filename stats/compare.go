@@ -93,24 +93,31 @@ func mapKeys[V any](m map[string]V) func(func(string) bool) {
 }
 
 // tooAlike is the correlation from which two predictors are called
-// inseparable: a variance inflation of 10, the usual alarm.
-const tooAlike = 0.95
+// inseparable: a variance inflation of 10, the usual alarm; together the one
+// from which half of the variance is shared.
+const (
+	tooAlike = 0.95
+	together = 0.7
+)
 
 // separability says in sentences what these rows cannot separate.
 func (s *study) separability(col []Collinearity, comparisons []Comparison) []string {
 	var out []string
-	alike := map[[2]string]bool{}
 	for _, c := range col {
-		if math.Abs(c.Correlation) < tooAlike {
+		switch r := math.Abs(c.Correlation); {
+		case r < together:
+			continue
+		case r < tooAlike:
+			out = append(out, fmt.Sprintf("%s and %s go together on these rows (r = %.2f, variance inflation %s): part of what one goes with is the other's. Fit them jointly (joint=%s,%s).",
+				upperFirst(nameOf(c.A)), nameOf(c.B), c.Correlation, number(c.VIF), c.A, c.B))
 			continue
 		}
-		alike[[2]string{c.A, c.B}] = true
 		out = append(out, fmt.Sprintf("%s and %s are nearly the same number on these rows (r = %.3f, variance inflation %s): no regression on them can tell the two apart. Take them as one explanation.",
 			upperFirst(nameOf(c.A)), nameOf(c.B), c.Correlation, number(c.VIF)))
 	}
 	for _, c := range comparisons {
 		a, b := s.byLabel(c.A), s.byLabel(c.B)
-		if a == nil || b == nil || a.x == nil || b.x == nil || explanationOf(a.predictor) == explanationOf(b.predictor) {
+		if a == nil || b == nil || a.x == nil || b.x == nil || a.atEdge() || b.atEdge() || explanationOf(a.predictor) == explanationOf(b.predictor) {
 			continue
 		}
 		if c.Interval.known() && !c.Interval.excludes(0) {
@@ -120,6 +127,9 @@ func (s *study) separability(col []Collinearity, comparisons []Comparison) []str
 	}
 	return append(out, s.supply()...)
 }
+
+// atEdge tells lines at an outer quantile: their R2 is no measure of anything.
+func (f *fitted) atEdge() bool { return f.form == "quantile_10" || f.form == "quantile_90" }
 
 func (s *study) byLabel(label string) *fitted {
 	for _, f := range s.models {

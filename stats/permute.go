@@ -92,10 +92,13 @@ type termTest struct {
 
 func (t *termTest) groups() int { return len(t.xx) }
 
-// newTermTest is nil when the model or its null cannot be fitted.
+// newTermTest is nil when the model or its null cannot be fitted. The whole
+// model at once (from = 1, to = p, with several columns), and columns whose
+// cluster error vanishes because one cluster alone decides them, are tested by
+// the sum of squares.
 func newTermTest(ct *clusterTerms, xz [][]float64, from, to int) *termTest {
 	p := ct.p
-	t := &termTest{p: p, from: from, to: to, xx: ct.xx, byErrors: to-from == 1 || 3*(to-from) <= len(ct.xx)}
+	t := &termTest{p: p, from: from, to: to, xx: ct.xx, byErrors: to-from == 1 || to-from < p-1 && 3*(to-from) <= len(ct.xx)}
 	root, ok := ct.rootInverse()
 	if !ok {
 		return nil
@@ -117,7 +120,26 @@ func newTermTest(ct *clusterTerms, xz [][]float64, from, to int) *termTest {
 		}
 		t.xr = append(t.xr, r)
 	}
+	t.byErrors = t.byErrors && t.errorsHold()
 	return t
+}
+
+// errorsHold tells whether the observed cluster errors of the tested columns
+// are more than rounding beside the classical ones.
+func (t *termTest) errorsHold() bool {
+	ones := make([]float64, len(t.xx))
+	for i := range ones {
+		ones[i] = 1
+	}
+	k := t.to - t.from
+	v, l := make([]float64, k*k), make([]float64, k*k)
+	t.covariance(ones, t.delta(ones, make([]float64, t.p), make([]float64, t.p)), make([]float64, t.p), make([]float64, k), v)
+	for a := range k {
+		if !(v[a*k+a] > 1e-12*t.m[(t.from+a)*t.p+t.from+a]) {
+			return false
+		}
+	}
+	return cholesky(v, l, k)
 }
 
 // nullFit solves the model without columns [from, to); their places hold 0.
@@ -155,31 +177,11 @@ func (t *termTest) statistic() func(w []float64) float64 {
 	s, delta, score, inf := make([]float64, p), make([]float64, p), make([]float64, p), make([]float64, k)
 	v, l, x := make([]float64, k*k), make([]float64, k*k), make([]float64, k)
 	return func(w []float64) float64 {
-		clear(s)
-		for g, xr := range t.xr {
-			axpy(w[g], xr, s)
-		}
-		for i := range p {
-			delta[i] = dot(t.m[i*p:(i+1)*p], s)
-		}
+		t.delta(w, s, delta)
 		if !t.byErrors {
 			return t.explained(delta)
 		}
-		clear(v)
-		for g, xx := range t.xx {
-			for i := range p {
-				score[i] = w[g]*t.xr[g][i] - dot(xx[i*p:(i+1)*p], delta)
-			}
-			for a := range k {
-				i := t.from + a
-				inf[a] = dot(t.m[i*p:(i+1)*p], score)
-			}
-			for a := range k {
-				for b := range k {
-					v[a*k+b] += inf[a] * inf[b]
-				}
-			}
-		}
+		t.covariance(w, delta, score, inf, v)
 		d := delta[t.from:t.to]
 		if k == 1 {
 			return d[0] * d[0] / v[0]
@@ -189,6 +191,38 @@ func (t *termTest) statistic() func(w []float64) float64 {
 		}
 		cholSolve(l, d, x, k)
 		return dot(d, x)
+	}
+}
+
+// delta is how far the flipped residuals move the coefficients from the null's.
+func (t *termTest) delta(w, s, delta []float64) []float64 {
+	clear(s)
+	for g, xr := range t.xr {
+		axpy(w[g], xr, s)
+	}
+	for i := range t.p {
+		delta[i] = dot(t.m[i*t.p:(i+1)*t.p], s)
+	}
+	return delta
+}
+
+// covariance is the cluster covariance of the tested coefficients.
+func (t *termTest) covariance(w, delta, score, inf, v []float64) {
+	p, k := t.p, t.to-t.from
+	clear(v)
+	for g, xx := range t.xx {
+		for i := range p {
+			score[i] = w[g]*t.xr[g][i] - dot(xx[i*p:(i+1)*p], delta)
+		}
+		for a := range k {
+			i := t.from + a
+			inf[a] = dot(t.m[i*p:(i+1)*p], score)
+		}
+		for a := range k {
+			for b := range k {
+				v[a*k+b] += inf[a] * inf[b]
+			}
+		}
 	}
 }
 

@@ -25,6 +25,7 @@ func (s *study) warnings(a *Analysis) []string {
 		add("Rows are resampled as if they were independent (cluster=none). Rows of one deposit are not: these intervals are too narrow. Use cluster=parent_deposit.")
 	}
 	out = append(out, s.mixed()...)
+	out = append(out, s.ranges()...)
 	for _, m := range s.out {
 		if m.Failure != "" {
 			add("%s was not fitted. %s", m.name(), m.Failure)
@@ -216,4 +217,29 @@ func (s *study) leverage(m *Model) string {
 		return ""
 	}
 	return fmt.Sprintf("%s has a leverage of %.2f of 2: 1/%s is ruled by the system nearest to zero. Prefer floor_decay.", worst.SystemName, worst.Leverage, m.Predictor)
+}
+
+// Spans under which a predictor hardly varies: a decade of what spans decades, a
+// third of the globe's latitudes.
+const (
+	narrowDecade   = 10.0
+	narrowLatitude = 30.0 // degrees
+)
+
+// ranges warns of predictors that the rows hardly vary.
+func (s *study) ranges() []string {
+	var out []string
+	predictors, _ := s.req.needs()
+	for _, p := range predictors {
+		x := s.t.predictor[p]
+		if len(x) < 2 {
+			continue
+		}
+		lo, hi := slices.Min(x), slices.Max(x)
+		switch {
+		case logAxis(p) && lo > 0 && hi < narrowDecade*lo, p == "abs_latitude" && hi-lo < narrowLatitude:
+			out = append(out, fmt.Sprintf("The rows span only %s to %s of %s: what is found here says nothing about values outside, and a relation can hide in so short a span. Widen the filter.", number(lo), number(hi), nameOf(p)))
+		}
+	}
+	return out
 }
