@@ -40,6 +40,9 @@ func (p Plot) draw(alone bool) string {
 	if small {
 		c.l, c.b = 58, 52
 	}
+	if p.Left > 0 {
+		c.l = p.Left
+	}
 	if p.NoFrame {
 		c.l, c.r, c.t, c.b = 6, 6, 6, 6
 	}
@@ -57,8 +60,11 @@ func (p Plot) draw(alone bool) string {
 		c.put("</svg>")
 		return c.String()
 	}
-	c.x = newScale(p.X, xs, c.l, c.w-c.r)
 	c.y = newScale(p.Y, ys, c.h-c.b, c.t)
+	if !p.NoFrame {
+		c.l = c.roomForTicks(small)
+	}
+	c.x = newScale(p.X, xs, c.l, c.w-c.r)
 	if p.Equal {
 		c.equalise()
 	}
@@ -129,11 +135,30 @@ func (c *canvas) equalise() {
 	}
 }
 
-func (c *canvas) axes(small bool) {
-	nx, ny := 7, 6
+// tickCounts are about how many ticks each axis gets.
+func tickCounts(small bool) (nx, ny int) {
 	if small {
-		nx, ny = 5, 5
+		return 5, 5
 	}
+	return 7, 6
+}
+
+// roomForTicks is the left margin: the axis label, and the longest tick at the
+// size the style sheet gives it on a phone.
+func (c *canvas) roomForTicks(small bool) float64 {
+	_, ny := tickCounts(small)
+	longest := 0
+	for _, text := range tickTexts(c.p.Y, c.y.ticks(c.p.Y, ny)) {
+		longest = max(longest, len([]rune(text)))
+	}
+	if small {
+		return 36 + 8.6*float64(longest)
+	}
+	return 40 + 13*float64(longest)
+}
+
+func (c *canvas) axes(small bool) {
+	nx, ny := tickCounts(small)
 	left, right, top, bottom := c.l, c.w-c.r, c.t, c.h-c.b
 	xt, yt := c.x.ticks(c.p.X, nx), c.y.ticks(c.p.Y, ny)
 	for i, text := range tickTexts(c.p.Y, yt) {

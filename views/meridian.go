@@ -61,7 +61,7 @@ const (
 	meridianFoot  = 14.0
 	unfoldedPer   = 7.4  // page units a degree
 	foldedPer     = 10.5 // page units a degree
-	maxShift      = 2.0  // degrees a ribbon may be moved off its latitude to stay on the page
+	maxShift      = 3.0  // degrees a ribbon may be moved off its latitude to stay on the page
 )
 
 // ribbonLengths are the axis lengths tried, longest first: the first with
@@ -89,6 +89,7 @@ type meridianLayout struct {
 	ribbons     []placed
 	leftOut     int // systems that found no place at the smallest size
 	shifted     int
+	farthest    float64 // degrees, the largest shift
 	ribbonsEdge float64
 }
 
@@ -146,7 +147,7 @@ func meridianRange(items []MeridianItem, folded bool) (lo, hi float64) {
 
 // place tries one ribbon length and returns how many found no place.
 func (m *meridianLayout) place(items []MeridianItem) (without int) {
-	m.ribbons, m.shifted = m.ribbons[:0], 0
+	m.ribbons, m.shifted, m.farthest = m.ribbons[:0], 0, 0
 	g := newCrowd(m.height)
 	pad := m.axis * 0.07
 	for _, it := range items {
@@ -170,6 +171,7 @@ func (m *meridianLayout) place(items []MeridianItem) (without int) {
 		}
 		if bestShift != 0 {
 			m.shifted++
+			m.farthest = max(m.farthest, math.Abs(bestShift)/m.per)
 		}
 		y := y0 + bestShift
 		g.take(best+r.Left-pad, best+r.Right+pad, y-half, y+half)

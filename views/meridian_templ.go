@@ -260,9 +260,9 @@ func meridianWide(m MeridianPage, l meridianLayout) templ.Component {
 			}
 			if l.shifted > 0 {
 				var templ_7745c5c3_Var10 string
-				templ_7745c5c3_Var10, templ_7745c5c3_Err = templ.JoinStringErrs(fmt.Sprintf("%d of %d ribbons stand up to %.1f degrees beside their latitude, to stay on the page.", l.shifted, len(l.ribbons), maxShift))
+				templ_7745c5c3_Var10, templ_7745c5c3_Err = templ.JoinStringErrs(fmt.Sprintf("%d of %d ribbons stand beside their latitude, by at most %.1f degrees, to stay on the page.", l.shifted, len(l.ribbons), l.farthest))
 				if templ_7745c5c3_Err != nil {
-					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/meridian.templ`, Line: 79, Col: 143}
+					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/meridian.templ`, Line: 79, Col: 151}
 				}
 				_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var10))
 				if templ_7745c5c3_Err != nil {

@@ -81,6 +81,15 @@ func degreesCell(n catalogue.Number) string {
 	return FormatLatitude(math.Round(n.V*10) / 10)
 }
 
+// kindCell is what the sinuosity is of, short enough for a table.
+func kindCell(r catalogue.Row) string {
+	kind := strings.Replace(ChoiceLabel(r.SinuosityKind), "90th percentile", "p90", 1)
+	if r.MeasuredLine == "unknown" {
+		return kind
+	}
+	return kind + ", " + ChoiceLabel(r.MeasuredLine)
+}
+
 func sinuosityOf(r catalogue.Row) float64 {
 	if !r.Sinuosity.Valid {
 		return math.NaN()
