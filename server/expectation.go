@@ -98,14 +98,20 @@ func (a *App) expectationPage(c echo.Context) error {
 	}
 	page := a.expectationFrame(c, q, posted)
 	if asksNothing(q) && allow(q, targetParameters, catalogue.FilterParameters) == nil {
-		page.Filter, err = filterOf(q)
-		if err != nil {
+		if page.Filter, err = filterOf(q); err != nil {
+			return err
+		}
+		if page.Facets, err = a.facets(c.Request().Context(), page.Filter); err != nil {
 			return err
 		}
 		return render(c, http.StatusOK, views.Expectation(page))
 	}
 	f, t, err := expectationQuestion(q)
 	page.Filter = f
+	var ferr error
+	if page.Facets, ferr = a.facets(c.Request().Context(), f); ferr != nil {
+		return ferr
+	}
 	if err == nil {
 		page.Result, err = a.expect(c.Request().Context(), f, t)
 	}

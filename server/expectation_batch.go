@@ -18,6 +18,7 @@ import (
 
 	"github.com/labstack/echo/v4"
 
+	"fathombend/catalogue"
 	"fathombend/stats/expectation"
 )
 
@@ -245,7 +246,7 @@ func (b *batch) isResult(name string) bool {
 func (b *batch) header() []string {
 	var out []string
 	for _, i := range b.extra {
-		out = append(out, safeCell(b.columns[i]))
+		out = append(out, catalogue.Neutralise(b.columns[i]))
 	}
 	for _, c := range resultColumns {
 		out = append(out, c.Name)
@@ -289,11 +290,11 @@ func (b *batch) answer(ctx context.Context, row []string) []string {
 		if err != nil {
 			out = append(out, "")
 		} else {
-			out = append(out, safeCell(c.of(res)))
+			out = append(out, catalogue.Neutralise(c.of(res)))
 		}
 	}
 	if err != nil {
-		return append(out, safeCell(rowError(err)))
+		return append(out, catalogue.Neutralise(rowError(err)))
 	}
 	return append(out, "")
 }
@@ -307,7 +308,7 @@ func passThrough(cell string) string {
 	if _, err := strconv.ParseFloat(strings.TrimSpace(cell), 64); err == nil {
 		return cell
 	}
-	return safeCell(cell)
+	return catalogue.Neutralise(catalogue.Plain(cell))
 }
 
 func (b *batch) expect(ctx context.Context, row []string) (*expectation.Result, error) {
@@ -319,7 +320,7 @@ func (b *batch) expect(ctx context.Context, row []string) (*expectation.Result, 
 		if !slices.Contains(targetParameters, name) {
 			continue
 		}
-		v := strings.TrimSpace(plainCell(row[i]))
+		v := strings.TrimSpace(catalogue.Plain(row[i]))
 		if !utf8.ValidString(v) || len(v) > maxCell {
 			return nil, &badInput{name, "is not readable UTF-8 text of ordinary length"}
 		}

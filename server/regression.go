@@ -7,6 +7,8 @@ import (
 	"net/http"
 	"net/url"
 	"slices"
+	"strconv"
+	"strings"
 
 	"github.com/labstack/echo/v4"
 
@@ -41,6 +43,9 @@ func (a *App) regressionPage(c echo.Context) error {
 		return c.Redirect(http.StatusFound, full)
 	}
 	page := views.RegressionPage{Page: a.regressionFrame(c, f, req), Request: req, Filter: f, Categories: stats.Categories}
+	if page.Facets, err = a.facets(ctx, f); err != nil {
+		return err
+	}
 	page.Analysis, err = a.analyse(ctx, f, req)
 	if err != nil {
 		return a.regressionRefused(c, q, err)
@@ -74,7 +79,26 @@ func (a *App) regressionRefused(c echo.Context, q url.Values, err error) error {
 	page := views.RegressionPage{Page: a.regressionFrame(c, f, req), Request: req, Filter: f, Categories: stats.Categories,
 		RefusedField: p.Field, Refused: p.Detail}
 	page.JSON, page.CSV = "", ""
+	if page.Facets, ferr = a.facets(c.Request().Context(), f); ferr != nil {
+		return ferr
+	}
 	return render(c, http.StatusBadRequest, views.Regression(page))
+}
+
+// facets counts the choices under a filter, once a revision.
+func (a *App) facets(ctx context.Context, f catalogue.Filter) ([]catalogue.Facet, error) {
+	f = regressionFilter(f)
+	rev, err := a.store.Revision(ctx)
+	if err != nil {
+		return nil, err
+	}
+	v, err := a.fits.do(ctx, fmt.Sprintf("facets|%d|%s", rev, f.Values().Encode()), func(ctx context.Context) (any, error) {
+		return a.store.Facets(ctx, f)
+	})
+	if err != nil {
+		return nil, err
+	}
+	return v.([]catalogue.Facet), nil
 }
 
 // regressionFilter is f without what only lists use.
@@ -148,11 +172,25 @@ func (a *App) regressionAnswer(c echo.Context) (catalogue.Filter, stats.Request,
 	return f, req, analysis, err
 }
 
-// regressionFigure is the main figure alone, as a file.
+// regressionFigure is one panel of the page alone, as a file; without panel=
+// it is the first.
 func (a *App) regressionFigure(c echo.Context) error {
-	_, req, analysis, err := a.regressionAnswer(c)
+	q, err := params(c)
 	if err != nil {
 		return err
 	}
-	return a.writeFigure(c, views.RegressionFigure(analysis, req))
+	panel := q.Get("panel")
+	q.Del("panel")
+	f, req, err := regressionQuestion(q)
+	if err != nil {
+		return err
+	}
+	analysis, err := a.analyse(c.Request().Context(), f, req)
+	if err != nil {
+		return err
+	}
+	if names := views.RegressionPanels(analysis); panel != "" && !slices.Contains(names, panel) {
+		return &badInput{"panel", strconv.Quote(clip(panel)) + " is no figure of this analysis. Expected one of: " + strings.Join(names, ", ")}
+	}
+	return a.writeFigure(c, views.RegressionFigure(analysis, req, panel))
 }

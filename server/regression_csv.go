@@ -7,6 +7,7 @@ import (
 
 	"github.com/labstack/echo/v4"
 
+	"fathombend/catalogue"
 	"fathombend/stats"
 )
 
@@ -54,8 +55,8 @@ func usedRow(a *stats.Analysis, r stats.UsedRow, predictors []string) []string {
 		}
 		return "no"
 	}
-	row := []string{safeCell(r.ID), safeCell(r.System), safeCell(r.SystemName), safeCell(r.ParentDeposit), safeCell(r.ClusterID), safeCell(r.Source), r.Kind,
-		yes(r.Invented), yes(r.Kept), safeCell(r.WhyDropped), cellNumber(r.Sinuosity), r.SinuosityKind, r.MeasuredLine, r.Grade,
+	row := []string{catalogue.Neutralise(r.ID), catalogue.Neutralise(r.System), catalogue.Neutralise(r.SystemName), catalogue.Neutralise(r.ParentDeposit), catalogue.Neutralise(r.ClusterID), catalogue.Neutralise(r.Source), r.Kind,
+		yes(r.Invented), yes(r.Kept), catalogue.Neutralise(r.WhyDropped), cellNumber(r.Sinuosity), r.SinuosityKind, r.MeasuredLine, r.Grade,
 		cellNumber(r.Response), cellNumber(r.LatitudeDeg), cellNumber(r.LongitudeDeg), cellNumber(r.AgeMa), cellNumber(r.PalaeolatitudeDeg)}
 	value := func(m map[string]float64, key string) string {
 		if x, ok := m[key]; ok {

@@ -20,6 +20,7 @@ type ExpectationPage struct {
 	Posted       bool       // asked by POST: the target stays out of addresses
 	Target       expectation.Target
 	Filter       catalogue.Filter
+	Facets       []catalogue.Facet
 	Result       *expectation.Result
 	Days         DayFigure
 	Columns      []ColumnHelp
@@ -198,7 +199,7 @@ func (p ExpectationPage) explanationPlot() Plot {
 		}
 		name := explanationName(e.Name)
 		if e.Name != "combined" && e.Weight > 0 {
-			name += ", weight " + fixedText(e.Weight, 2)
+			name += " (" + fixedText(e.Weight, 2) + ")"
 		}
 		it := rankItem{Name: name, X: q.P50, Low: q.P10, High: q.P90, Also: math.NaN(),
 			Title: name + ", median " + fixedText(q.P50, 2) + ", 80 % limits " + fixedText(q.P10, 2) + " to " + fixedText(q.P90, 2)}
@@ -212,9 +213,7 @@ func (p ExpectationPage) explanationPlot() Plot {
 	if o := p.Result.Observed; o != nil {
 		plot.Rules = []Rule{{At: o.Sinuosity, Vertical: true, Label: "observed", Class: "dash"}}
 	}
-	plot = rankPlot(plot, items)
-	plot.Width = 720
-	return plot
+	return rankPlot(plot, items)
 }
 
 var dayLineClasses = []struct{ line, band string }{{"", ""}, {"l2 dash", "b2"}, {"l3 dot-dash", ""}, {"l4 dash", ""}}

@@ -36,7 +36,14 @@ func (p ExpectationPage) cautions() []string {
 	return p.Result.Cautions
 }
 
-func (p ExpectationPage) firstCaution() string { return p.cautions()[0] }
+// shortCaution stands beside the answer: what it is, and what it is not for.
+func (p ExpectationPage) shortCaution() string {
+	c := p.cautions()
+	if len(c) > 1 && !strings.Contains(c[0], "siting") {
+		return c[0] + " " + c[1]
+	}
+	return c[0]
+}
 
 func weightText(e expectation.Explanation) string {
 	if e.Name == "latitude" {
@@ -121,24 +128,24 @@ func (p ExpectationPage) coriolisText() string {
 
 // regimeRow is one flow number at 10 %, median and 90 % of the draws.
 type regimeRow struct {
-	Name, Unit string
-	Values     [3]float64
+	Name   string // with its unit
+	Values [3]float64
 }
 
 func regimeRows(r expectation.Regime) []regimeRow {
 	return []regimeRow{
-		{"Rossby number of the width, Ro_W", "", r.RoW},
-		{"Rossby number of the bends, |Ro_R|", "", r.RoR},
-		{"densimetric Froude number", "", r.Froude},
-		{"flow speed", "m/s", r.SpeedMS},
-		{"interface tilt across a straight reach", "m", r.TiltM},
-		{"tilt in bends where the two terms add", "m", r.TiltAddingBendM},
-		{"tilt in bends where they oppose", "m", r.TiltOpposingBendM},
+		{"Rossby number of the width, Ro_W", r.RoW},
+		{"Rossby number of the bends, |Ro_R|", r.RoR},
+		{"densimetric Froude number", r.Froude},
+		{"flow speed (m/s)", r.SpeedMS},
+		{"interface tilt across a straight reach (m)", r.TiltM},
+		{"tilt in bends where the two terms add (m)", r.TiltAddingBendM},
+		{"tilt in bends where they oppose (m)", r.TiltOpposingBendM},
 	}
 }
 
 func (p ExpectationPage) explanationCaption() string {
-	s := "Median and 80 % limits of the " + p.responseName() + " of one new system at this target under each explanation, and combined by weight. " +
+	s := "Median and 80 % limits of the " + p.responseName() + " of one new system at this target under each explanation (its weight), and combined by weight. " +
 		countText(p.Result.Rows, "row", "rows") + " in " + countText(p.Result.Clusters, "cluster", "clusters") + "."
 	if p.Result.InventedRows > 0 {
 		s += " " + countText(p.Result.InventedRows, "row is", "rows are") + " invented."
@@ -160,4 +167,13 @@ func (p ExpectationPage) figureHref(panel string) templ.SafeURL {
 		q[k] = v
 	}
 	return templ.SafeURL("/figures/expectation.svg?" + q.Encode())
+}
+
+// quantityText names a dimension with its unit.
+func quantityText(name, unit string) string {
+	s := strings.ReplaceAll(name, "_", " ")
+	if unit == "" || unit == "1" {
+		return s
+	}
+	return s + " (" + unit + ")"
 }

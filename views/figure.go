@@ -28,6 +28,7 @@ type Plot struct {
 	Texts  []Text
 
 	Width, Height float64 // of the view box; 0 = 720 by 440. Under 560 it counts as a small panel
+	Left          float64 // left margin, for long names on Y; 0 = chosen
 	Equal         bool    // one unit is as long on both axes: plan views
 	NoFrame       bool    // no axes and no grid: sketches and locator maps
 	Empty         string  // sentence drawn instead of a figure with nothing in it; "" = a plain one

@@ -83,7 +83,15 @@ func estimateTexts(x float64, i stats.Interval) valueTexts {
 	return valueTexts{fixedText(x, d), fixedText(i[0], d), fixedText(i[1], d)}
 }
 
-// Percent writes a fraction as a whole percentage.
+// shareTexts are estimateTexts with three decimals at most.
+func shareTexts(x float64, i stats.Interval) valueTexts {
+	if !finiteInterval(i) || intervalDecimals(i[0], i[1]) <= 3 {
+		return estimateTexts(x, i)
+	}
+	return valueTexts{fixedText(x, 3), fixedText(i[0], 3), fixedText(i[1], 3)}
+}
+
+// percent writes a fraction as a whole percentage.
 func percent(x float64) string {
 	if math.IsNaN(x) || math.IsInf(x, 0) {
 		return unknownMark

@@ -3,6 +3,7 @@ package views
 import (
 	"net/url"
 	"slices"
+	"strconv"
 	"strings"
 
 	"fathombend/catalogue"
@@ -16,6 +17,7 @@ type RegressionPage struct {
 	Analysis     *stats.Analysis
 	Request      stats.Request
 	Filter       catalogue.Filter
+	Facets       []catalogue.Facet
 	Categories   []string // that may stand in a joint model
 	Refused      string
 	RefusedField string
@@ -83,7 +85,7 @@ func modelGroups(chosen string) []modelGroup {
 		g := modelGroup{Name: predictorText(pr).axis}
 		for _, f := range stats.Forms {
 			v := f + ":" + pr
-			g.Choices = append(g.Choices, modelChoice{v, formText(f) + ", " + predictorText(pr).name, v == chosen})
+			g.Choices = append(g.Choices, modelChoice{v, formText(f) + ", " + bare(predictorText(pr).name), v == chosen})
 		}
 		out = append(out, g)
 	}
@@ -107,7 +109,7 @@ func (p RegressionPage) jointPairs() []modelChoice {
 		for _, b := range p.Request.Joint[i+1:] {
 			v := a + "," + b
 			chosen := (p.Request.Interaction == [2]string{a, b}) || (p.Request.Interaction == [2]string{b, a})
-			out = append(out, modelChoice{v, predictorText(a).name + " × " + predictorText(b).name, chosen})
+			out = append(out, modelChoice{v, bare(predictorText(a).name) + " × " + bare(predictorText(b).name), chosen})
 		}
 	}
 	return out
@@ -125,7 +127,7 @@ type rowLesson struct {
 }
 
 // rowLessons compares, for the slope of each model, the interval of rows
-// resampled singly with the interval shown.
+// resampled singly with that of whole clusters.
 func (p RegressionPage) rowLessons() []rowLesson {
 	var out []rowLesson
 	for _, m := range p.Analysis.Models {
@@ -133,15 +135,32 @@ func (p RegressionPage) rowLessons() []rowLesson {
 			continue
 		}
 		c := m.Coefficients[1]
+		// Like is set beside like: both BCa, so that only the resampling differs.
 		rows, ok := c.Intervals["row_bootstrap"]
-		if !ok || !finiteInterval(rows) || !finiteInterval(c.Interval) {
+		whole, also := c.Intervals["bca"]
+		if !ok || !also || !finiteInterval(rows) || !finiteInterval(whole) {
 			continue
 		}
-		wr, ww := rows[1]-rows[0], c.Interval[1]-c.Interval[0]
-		out = append(out, rowLesson{Model: modelText(m), Term: c.Name, Estimate: c.Estimate, Rows: rows, Whole: c.Interval, WholeKind: c.IntervalKind,
-			Changed: ww > 1.5*wr || wr > 1.5*ww || holdsZero(rows) != holdsZero(c.Interval)})
+		wr, ww := rows[1]-rows[0], whole[1]-whole[0]
+		out = append(out, rowLesson{Model: modelText(m), Term: c.Name, Estimate: c.Estimate, Rows: rows, Whole: whole, WholeKind: "bca",
+			Changed: ww > 1.5*wr || wr > 1.5*ww || holdsZero(rows) != holdsZero(whole)})
 	}
 	return out
+}
+
+// degenerateSentence counts the resamples that gave no fit; they are never
+// hidden.
+func (p RegressionPage) degenerateSentence() string {
+	var parts []string
+	for _, m := range p.Analysis.Models {
+		if m.DegenerateResamples > 0 {
+			parts = append(parts, strconv.Itoa(m.DegenerateResamples)+" for "+modelText(m))
+		}
+	}
+	if len(parts) == 0 {
+		return "No resample was degenerate."
+	}
+	return "Degenerate resamples, counted and left out: " + strings.Join(parts, ", ") + "."
 }
 
 func holdsZero(i stats.Interval) bool { return i[0] <= 0 && i[1] >= 0 }

@@ -201,11 +201,11 @@ type rampEntry struct{ Class, Text string }
 
 func rampKey(variable string) []rampEntry {
 	limits := rampLimits[variable]
-	out := []rampEntry{{"f1", "under " + numberText(limits[0], 2)}}
+	out := []rampEntry{{"f1", "under " + floatText(limits[0])}}
 	for i := 1; i < len(limits); i++ {
-		out = append(out, rampEntry{"f" + strconv.Itoa(i+1), numberText(limits[i-1], 2) + " to " + numberText(limits[i], 2)})
+		out = append(out, rampEntry{"f" + strconv.Itoa(i+1), floatText(limits[i-1]) + " to " + floatText(limits[i])})
 	}
-	return append(out, rampEntry{"f6", "over " + numberText(limits[len(limits)-1], 2)}, rampEntry{"f0", "not known"})
+	return append(out, rampEntry{"f6", "over " + floatText(limits[len(limits)-1])}, rampEntry{"f0", "not known"})
 }
 
 // rowPoint is the mark of one row without its place in the plot: shape tells

@@ -51,7 +51,7 @@ func fieldID(name string) string { return "set-" + strings.ReplaceAll(name, "_",
 func (p RegressionPage) jointChoices() []choice {
 	var out []choice
 	for _, name := range slices.Concat(stats.Predictors, p.Categories) {
-		out = append(out, choice{name, predictorText(name).name, slices.Contains(p.Request.Joint, name)})
+		out = append(out, choice{name, bare(predictorText(name).name), slices.Contains(p.Request.Joint, name)})
 	}
 	return out
 }

@@ -2,9 +2,26 @@ package views
 
 import (
 	"math"
+	"strings"
 
 	"fathombend/stats"
 )
+
+const (
+	rankWidth      = 540
+	rankLeft       = 222
+	rankStep       = 30
+	rankNameLength = 29 // of 15 px lettering in the left margin
+)
+
+// shorten cuts a name that would run out of its margin.
+func shorten(s string, n int) string {
+	r := []rune(s)
+	if len(r) <= n {
+		return s
+	}
+	return strings.TrimSpace(string(r[:n-1])) + "…"
+}
 
 // rankItem is one line of a chart of named values.
 type rankItem struct {
@@ -14,7 +31,8 @@ type rankItem struct {
 	Also              float64 // a second, hollow mark; NaN = none
 }
 
-// rankPlot sets named values under each other, each name above its mark.
+// rankPlot sets named values under each other, each name to the left of its
+// mark on its own grid line.
 func rankPlot(p Plot, items []rankItem) Plot {
 	lo, hi := math.Inf(1), math.Inf(-1)
 	grow := func(x float64) {
@@ -35,8 +53,9 @@ func rankPlot(p Plot, items []rankItem) Plot {
 		lo, hi = lo-0.5, hi+0.5
 	}
 	p.X.Min, p.X.Max = lo-0.03*(hi-lo), hi+0.04*(hi-lo)
-	p.Y.Min, p.Y.Max, p.Y.Reverse, p.Y.Ticks = 0.2, float64(len(items))+0.5, true, []float64{}
-	p.Width, p.Height = panelWidth, 90+float64(len(items))*42
+	p.Y.Min, p.Y.Max, p.Y.Reverse, p.Y.Ticks = 0.4, float64(len(items))+0.6, true, []float64{}
+	p.Y.Format = func(y float64) string { return shorten(items[int(y)-1].Name, rankNameLength) }
+	p.Width, p.Height, p.Left = rankWidth, 78+float64(len(items))*rankStep, rankLeft
 	for i, it := range items {
 		y := float64(i + 1)
 		q := Point{X: it.X, Y: y, XLow: it.Low, XHigh: it.High, Href: it.Href, Title: it.Title, Class: it.Class, Shape: it.Shape}
@@ -47,7 +66,7 @@ func rankPlot(p Plot, items []rankItem) Plot {
 		if !math.IsNaN(it.Also) {
 			p.Points = append(p.Points, Point{X: it.Also, Y: y, Class: "hollow", Shape: "diamond"})
 		}
-		p.Texts = append(p.Texts, Text{X: p.X.Min, Y: y - 0.36, Text: it.Name})
+		p.Y.Ticks = append(p.Y.Ticks, y)
 	}
 	return p
 }
@@ -95,7 +114,7 @@ func sharesPlot(a *stats.Analysis) Plot {
 	var items []rankItem
 	for _, s := range a.Shares {
 		t := estimateTexts(s.Share, s.Interval)
-		items = append(items, rankItem{Name: predictorText(s.Predictor).name, X: s.Share, Low: s.Interval[0], High: s.Interval[1], Also: math.NaN(),
+		items = append(items, rankItem{Name: bare(predictorText(s.Predictor).name), X: s.Share, Low: s.Interval[0], High: s.Interval[1], Also: math.NaN(),
 			Title: predictorText(s.Predictor).name + ", share " + t.value + " from " + t.low + " to " + t.high})
 	}
 	return rankPlot(Plot{ID: "shares", Title: "Shares of the joint R²", Desc: "Each predictor's share of R² with its interval.",

@@ -1,6 +1,7 @@
 package views
 
 import (
+	"regexp"
 	"slices"
 	"strconv"
 	"strings"
@@ -60,7 +61,7 @@ var formulaOf = map[string]string{
 func modelText(m stats.Model) string {
 	s := m.Model
 	if m.Form != "" && m.Form != "joint" {
-		s = formText(m.Form) + ", " + predictorText(m.Predictor).name
+		s = formText(m.Form) + ", " + bare(predictorText(m.Predictor).name)
 	} else if m.Form == "joint" {
 		s = "joint: " + strings.ReplaceAll(strings.ReplaceAll(m.Predictor, ",", ", "), "_", " ")
 	}
@@ -69,6 +70,9 @@ func modelText(m stats.Model) string {
 	}
 	return s
 }
+
+// bare is a predictor's name as a label.
+func bare(name string) string { return strings.TrimPrefix(name, "the ") }
 
 // modelName turns a FORM:PREDICTOR text into words, for tables that hold only
 // the text.
@@ -218,11 +222,33 @@ func partText(s stats.Part) string {
 	return "common to " + strings.Join(names[:len(names)-1], ", ") + " and " + names[len(names)-1]
 }
 
+// ownWarnings are the warnings that do not stand among what the rows cannot
+// separate already.
+func (p RegressionPage) ownWarnings() []string {
+	return slices.DeleteFunc(slices.Clone(p.Analysis.Warnings), func(w string) bool { return slices.Contains(p.Analysis.Separability, w) })
+}
+
+// plain writes a sentence with true minus signs and the models by their names:
+// the sentences themselves stay plain text for documents and terminals.
+func (p RegressionPage) plain(s string) string {
+	for _, m := range p.Analysis.Models {
+		if rest, ok := strings.CutPrefix(s, m.Model+": "); ok {
+			s = upperFirst(modelText(m)) + ": " + rest
+			break
+		}
+	}
+	return signs.ReplaceAllString(s, "${1}−${2}")
+}
+
+// signs are hyphens that stand for a minus: before a digit, after a space or a
+// bracket.
+var signs = regexp.MustCompile(`(^|[\s\[(])-(\d)`)
+
 // mainPanels and diagnosticPanels divide the figures of an analysis.
 func mainPanels(p RegressionPage) []string {
 	var out []string
 	for _, n := range RegressionPanels(p.Analysis) {
-		if strings.HasPrefix(n, "fit:") || n == "r_squared" {
+		if strings.HasPrefix(n, "fit:") {
 			out = append(out, n)
 		}
 	}
@@ -230,7 +256,7 @@ func mainPanels(p RegressionPage) []string {
 }
 
 func diagnosticPanels(p RegressionPage) []string {
-	main := mainPanels(p)
+	main := append(mainPanels(p), "r_squared")
 	return slices.DeleteFunc(RegressionPanels(p.Analysis), func(n string) bool { return slices.Contains(main, n) })
 }
 
@@ -284,7 +310,7 @@ func hasRivers(a *stats.Analysis) bool {
 func (p RegressionPage) mainCaption() string {
 	a, r := p.Analysis, p.Request
 	s := upperFirst(responseText(r.Response, r.K)) + " against each predictor, with the fitted lines and the pointwise " + percent(r.Level) +
-		" interval of each line, and R² of each model with its interval (hollow: out of sample). " +
+		" interval of each line. " +
 		countText(a.Rows, "row", "rows") + " of " + countText(a.Systems, "system", "systems") + " in " + countText(a.Clusters, "cluster", "clusters") +
 		" (by " + clusterText(r.Cluster) + "), " + strconv.Itoa(r.Resamples) + " resamples of whole clusters, seed " + strconv.FormatUint(r.Seed, 10) + "."
 	if r.Cluster == "none" {
