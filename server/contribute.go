@@ -110,6 +110,7 @@ func recordOf(s *catalogue.Submission) *record {
 	v := formOfRow(s.Row, s.Typed)
 	v.Set("base_revision", strconv.FormatInt(s.BaseRevision, 10))
 	v.Set("centreline", s.Centreline)
+	v.Set("centreline_settings", s.CentrelineSettings)
 	if s.State == "draft" {
 		for _, name := range []string{"sinuosity_kind", "measured_line"} {
 			// A draft keeps what was not chosen yet as the default; asking again
@@ -193,6 +194,7 @@ func (a *App) fill(r *record, f *views.ContributeForm) {
 		f.SystemName = r.row.SystemName
 	}
 	f.Centreline, f.Message = r.typed.Get("centreline"), r.typed.Get("message")
+	f.CentrelineSettings = r.typed.Get("centreline_settings")
 	if f.Line != nil && f.Line.Error != "" {
 		f.Errors = append(f.Errors, views.FormError{Field: "centreline", Label: "Centreline", Message: f.Line.Error})
 	}

@@ -70,7 +70,10 @@ func measureLine(c echo.Context, r *record) (*formLine, *views.LineReport) {
 	if len(data) > maxPastedLine {
 		return nil, &views.LineReport{Error: fmt.Sprintf("The line is longer than %d MB. Thin its vertices, or measure it on the page Measure and give the numbers here.", maxPastedLine>>20)}
 	}
-	settings := planform.Settings{WidthM: positive(r.row.ChannelWidthM)}
+	settings, err := lineSettings(r)
+	if err != nil {
+		return nil, &views.LineReport{Error: inputSentence(err)}
+	}
 	lines, refused, err := planform.Read(data, "", name, settings)
 	switch {
 	case err != nil:
@@ -87,10 +90,25 @@ func measureLine(c echo.Context, r *record) (*formLine, *views.LineReport) {
 		return nil, &views.LineReport{Error: inputSentence(err)}
 	}
 	out := &formLine{geoJSON: lineString(lines[0]), planform: m}
-	if b, err := json.Marshal(finite(m.Settings)); err == nil {
+	if b, err := json.Marshal(finite(storedSettings(m))); err == nil {
 		out.settings = string(b)
 	}
 	return out, lineReport(m)
+}
+
+// lineSettings are the settings the line is measured with: those it brought
+// along from the page Measure, else the defaults for the width in the form.
+func lineSettings(r *record) (planform.Settings, error) {
+	var s planform.Settings
+	if text := strings.TrimSpace(r.typed.Get("centreline_settings")); text != "" {
+		if json.Unmarshal([]byte(text), &s) != nil {
+			return s, &planform.InputError{Parameter: "centreline_settings", Message: "the settings of the measurement are no settings of this program; empty them for the defaults"}
+		}
+	}
+	if s.WidthM == 0 {
+		s.WidthM = positive(r.row.ChannelWidthM)
+	}
+	return s, s.Check()
 }
 
 func inputSentence(err error) string {
@@ -175,6 +193,8 @@ func storedLine(s *catalogue.Submission) *views.LineReport {
 		// defaults stand in.
 		_ = json.Unmarshal([]byte(s.CentrelineSettings), &settings)
 	}
+	// However the file was to be read, what is stored is degrees and elevations.
+	settings.EPSG, settings.Lines, settings.Z = "", "", ""
 	lines, _, err := planform.Read([]byte(s.Centreline), "application/geo+json", "", settings)
 	if err != nil || len(lines) != 1 {
 		return &views.LineReport{Error: "The stored line cannot be read any more."}

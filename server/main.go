@@ -30,6 +30,7 @@ func commands() []command {
 		{"serve", "run the web application (the default)", runServe},
 		{"import", "read a CSV of measurements into a catalogue", runImport},
 		{"export", "write measurements as CSV", runExport},
+		{"measure", "measure the planform of centrelines", runMeasure},
 		{"regress", "fit regressions and print them", runRegress},
 		{"expect", "answer a CSV of targets", runExpect},
 		{"expectation", "the same as expect", runExpect},

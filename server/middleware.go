@@ -108,6 +108,9 @@ func limitBody(next echo.HandlerFunc) echo.HandlerFunc {
 		if takesFile(r) {
 			limit = maxUpload
 		}
+		if r.URL.Path == "/measure" || strings.HasPrefix(r.URL.Path, "/measure.") {
+			limit = maxMeasureBody // whatever a client calls the file it sends
+		}
 		if r.ContentLength > limit {
 			return echo.NewHTTPError(http.StatusRequestEntityTooLarge, tooLarge(limit))
 		}

@@ -66,13 +66,16 @@ type ContributeForm struct {
 	Errors       []FormError
 	Warned       int // warnings without a reason
 	Centreline   string
-	Line         *LineReport
-	Message      string // word to the curator
-	Changes      []catalogue.FieldChange
-	Comment      string // the curator's, when it was returned
-	Messages     []catalogue.Message
-	Curator      bool // a curator edits before accepting
-	Checked      bool // the checks ran and found nothing to mend
+	// CentrelineSettings are those the line is measured with, as JSON; "" = the
+	// defaults.
+	CentrelineSettings string
+	Line               *LineReport
+	Message            string // word to the curator
+	Changes            []catalogue.FieldChange
+	Comment            string // the curator's, when it was returned
+	Messages           []catalogue.Message
+	Curator            bool // a curator edits before accepting
+	Checked            bool // the checks ran and found nothing to mend
 }
 
 // Submitted is one line of a person's list.

@@ -15,6 +15,8 @@ type Movement struct {
 
 	// Plans of both levels in one local frame, for figures.
 	OlderPlan, YoungerPlan []PlanPoint `json:"-"`
+	// Placed says that the frame has a north.
+	Placed bool `json:"-"`
 }
 
 // Moved is one bend at both levels. Swing is the move of its apex across the
@@ -49,7 +51,7 @@ func CompareLevels(older, younger Line, s Settings) (*Movement, error) {
 	if err != nil {
 		return nil, err
 	}
-	m := &Movement{Older: older.Name, Younger: younger.Name, Bends: []Moved{}, OlderPlan: a.m.Plan, YoungerPlan: b.m.Plan}
+	m := &Movement{Older: older.Name, Younger: younger.Name, Bends: []Moved{}, OlderPlan: a.m.Plan, YoungerPlan: b.m.Plan, Placed: !older.Plane}
 	if err := b.into(a); err != nil {
 		return nil, err
 	}

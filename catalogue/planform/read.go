@@ -345,7 +345,7 @@ func MeasureFile(data []byte, contentType, name string, s Settings) (*Report, er
 			r.Refused = append(r.Refused, Refused{lines[i].Name, sentence(err)})
 			continue
 		}
-		m.Settings.EPSG, m.Settings.Lines = s.EPSG, s.Lines
+		m.Settings.EPSG, m.Settings.Lines, m.Given = s.EPSG, s.Lines, &lines[i]
 		r.Lines = append(r.Lines, *m)
 	}
 	if s.Lines == "levels" {

@@ -84,6 +84,8 @@ type Measured struct {
 	Warnings         []string      `json:"warnings"`
 	Levees           *Levees       `json:"levees,omitempty"`
 
+	// Given is the line as it was read, when it was measured from a file.
+	Given *Line `json:"-"`
 	// Profile is the depth along the channel where it is known, thinned to at
 	// most profilePoints.
 	Profile []ProfilePoint `json:"-"`
