@@ -212,6 +212,12 @@ func TestSortFloats(t *testing.T) {
 			x[i] = math.Sin(float64(i*i)) * math.Pow(10, float64(i%30-15))
 		}
 		y := slices.Clone(x)
+		for _, q := range []float64{0.001, 0.025, 0.5, 0.95, 0.9999} {
+			z := slices.Sorted(slices.Values(y))
+			if got, want := selectQuantile(slices.Clone(y), q), sortedQuantile(z, q); n > 0 && got != want {
+				t.Errorf("quantile %v of %d values: %v selected, %v sorted", q, n, got, want)
+			}
+		}
 		sortFloats(x)
 		slices.Sort(y)
 		if !slices.Equal(x, y) {

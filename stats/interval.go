@@ -103,14 +103,62 @@ func acceleration(jack []float64) float64 {
 
 // studentisedInterval is the symmetric bootstrap-t: estimate +- q(|t*|) s with
 // t* = (b* - b)/s* (Cameron, Gelbach & Miller, Rev. Econ. Stat. 90:414 (2008),
-// doi 10.1162/rest.90.3.414). t are the |t*|, unsorted; it sorts them.
+// doi 10.1162/rest.90.3.414). t are the |t*|, unsorted; it reorders them.
 func studentisedInterval(t []float64, estimate, se, level float64) Interval {
 	if len(t) < leastReplicates || !finite(se) {
 		return noInterval
 	}
-	sortFloats(t)
-	q := sortedQuantile(t, level)
+	q := selectQuantile(t, level)
 	return Interval{estimate - q*se, estimate + q*se}
+}
+
+// selectQuantile is sortedQuantile of values in any order, which it reorders:
+// one quantile needs no sorting.
+func selectQuantile(x []float64, q float64) float64 {
+	n := len(x)
+	h := q * float64(n+1)
+	k := int(math.Floor(h))
+	if k < 1 || k >= n {
+		sortFloats(x)
+		return sortedQuantile(x, q)
+	}
+	selectNth(x, k-1)
+	next := x[k]
+	for _, v := range x[k+1:] {
+		next = math.Min(next, v)
+	}
+	return x[k-1] + (h-float64(k))*(next-x[k-1])
+}
+
+// selectNth moves the k-th smallest value (from 0) to its place, no larger ones
+// before it (Hoare, Commun. ACM 4:321 (1961), doi 10.1145/366622.366647).
+func selectNth(x []float64, k int) {
+	lo, hi := 0, len(x)-1
+	for lo < hi {
+		pivot := median3(x[lo], x[(lo+hi)/2], x[hi])
+		i, j := lo, hi
+		for i <= j {
+			for x[i] < pivot {
+				i++
+			}
+			for x[j] > pivot {
+				j--
+			}
+			if i <= j {
+				x[i], x[j] = x[j], x[i]
+				i++
+				j--
+			}
+		}
+		switch {
+		case k <= j:
+			hi = j
+		case k >= i:
+			lo = i
+		default:
+			return
+		}
+	}
 }
 
 // cr2Interval is estimate +- t(df) se.

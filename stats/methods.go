@@ -35,7 +35,7 @@ func (s *study) methodsText(a *Analysis) string {
 	say("Reported fits are least squares by QR on centred, scaled columns; fits that are nonlinear in their parameters by damped Gauss-Newton to a relative change of 1e-10.")
 	say("Whole %s were resampled %d times (bootstrap of pairs; Efron & Tibshirani 1993; seed %d, one generator stream a resample).", clusterNoun(r.Cluster), r.Resamples, r.Seed)
 	say("%s", intervalText(r))
-	say("Beside them stand the CR2 error with Satterthwaite degrees of freedom (Bell & McCaffrey 2002; Pustejovsky & Tipton 2018), BCa and percentile intervals, and the interval of rows resampled as if independent.")
+	say("Beside them stand the CR2 error with Satterthwaite degrees of freedom (Bell & McCaffrey 2002; Pustejovsky & Tipton 2018), BCa and percentile intervals, and the interval of rows resampled as if independent (BCa, at most 3,999 resamples).")
 	say("R2 is in sinuosity units; its intervals, those of differences of R2 (same resamples, paired) and of Lindeman-Merenda-Gold shares are %s at %s.", statKindText(s.statKind()), percent(r.Level))
 	say("Out-of-sample R2 leaves each %s out in turn. p values come from %d sign flips of whole %s of the residuals of the null model (%s weights). AICc counts rows as independent.",
 		clusterOne(r.Cluster), s.flips(), clusterNoun(r.Cluster), weightsText(s.t.cluster.count()))

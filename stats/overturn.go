@@ -8,7 +8,7 @@ import (
 
 const (
 	mostContrary      = 100 // contrary systems tried
-	overturnResamples = 499
+	overturnResamples = 299
 )
 
 // overturning is how many contrary systems, each a cluster of its own, would
@@ -16,7 +16,7 @@ const (
 // sinuosity falls with the predictor they are sinuous (the 90th percentile of
 // the rows) and stand in the upper quarter of the predictor; where it rises they
 // are straight (the 10th). The number is found by doubling and halving with the
-// kind of interval asked, at 499 resamples.
+// kind of interval asked, at 299 resamples.
 func (s *study) overturning(ctx context.Context) (*Overturning, error) {
 	k := s.leadingSingle()
 	if k < 0 || s.boot == nil {

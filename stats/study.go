@@ -5,6 +5,7 @@ import "context"
 // rowBudget and workBudget keep long work within bounds; what is cut is said.
 const (
 	rowBudget   = 2_000_000   // rows x resamples of the row bootstrap shown beside
+	rowMost     = 3999        // resamples of it
 	flipBudget  = 2_000_000   // clusters x sign flips of one test
 	backBudget  = 20_000_000  // rows x resamples of a transformed response, or of a form without cross-products
 	noiseBudget = 2_000_000   // rows x resamples with errors of measurement
@@ -106,7 +107,7 @@ func (f *fitted) resamples(asked int) int {
 // reader would get who took rows for independent.
 func (s *study) resampleRows(ctx context.Context) error {
 	n := s.t.n()
-	resamples := min(s.req.Resamples, rowBudget/max(n, 1))
+	resamples := min(s.req.Resamples, rowMost, rowBudget/max(n, 1))
 	if s.t.cluster.count() == n || resamples < MinResamples {
 		return nil
 	}
