@@ -57,26 +57,27 @@ var access = map[string]role{
 
 	"GET /contribute":               contributor,
 	"POST /contribute":              contributor,
-	"POST /contribute/check.json":   contributor,
 	"GET /contribute/upload":        contributor,
 	"POST /contribute/upload":       contributor,
 	"GET /contribute/:id":           contributor,
 	"POST /contribute/:id":          contributor,
 	"POST /contribute/:id/withdraw": contributor,
-	"POST /contribute/:id/comment":  contributor,
 	"GET /review":                   curator,
 	"GET /review/activity":          curator,
+	"POST /review/batch/:id":        curator,
 	"GET /review/:id":               curator,
 	"POST /review/:id":              curator,
 	"GET /review/:id/edit":          curator,
 	"POST /review/:id/edit":         curator,
 
 	// These take their question in the body and change nothing.
-	"POST /expectation":      reader,
-	"POST /expectation.json": reader,
-	"POST /expectation.csv":  reader,
-	"POST /measure":          reader,
-	"POST /measure.json":     reader,
+	"POST /expectation":             reader,
+	"POST /expectation.json":        reader,
+	"POST /expectation.csv":         reader,
+	"POST /figures/expectation.svg": reader,
+	"POST /measure":                 reader,
+	"POST /measure.json":            reader,
+	"POST /measure.csv":             reader,
 }
 
 // requireRole stands before every handler and asks the table. A signed-out

@@ -32,9 +32,9 @@ func newApp(store *catalogue.Store, log *slog.Logger, readOnly bool) *App {
 	return a
 }
 
-// handler builds the router. One line a room: each routes method stands in the
+// router holds every route. One line a room: each routes method stands in the
 // file of its noun.
-func (a *App) handler() http.Handler {
+func (a *App) router() *echo.Echo {
 	e := echo.New()
 	e.HideBanner, e.HidePort = true, true
 	e.HTTPErrorHandler = a.handleError
@@ -49,6 +49,12 @@ func (a *App) handler() http.Handler {
 	a.routesContribute(e)
 	a.routesReview(e)
 	a.routesMethods(e)
+	return e
+}
+
+// handler is the router with its sessions.
+func (a *App) handler() http.Handler {
+	e := a.router()
 	// Sessions stand around the router, so that the error handler still has
 	// them; static files need none, and stay cacheable.
 	with := a.sessions.LoadAndSave(e)
