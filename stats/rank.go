@@ -5,21 +5,24 @@ import (
 	"slices"
 )
 
+// pair is one row of two lists.
+type pair struct{ x, y float64 }
+
 // KendallTauB is Kendall's rank correlation with the correction for ties
 // (Biometrika 33:239 (1945), doi 10.1093/biomet/33.3.239), by sorting and
 // counting exchanges (Knight, J. Am. Stat. Assoc. 61:436 (1966), doi
 // 10.1080/01621459.1966.10480879). NaN when either list is constant.
 func KendallTauB(x, y []float64) float64 {
 	n := len(x)
-	idx := make([]int, n)
+	idx := make([]pair, n)
 	for i := range idx {
-		idx[i] = i
+		idx[i] = pair{x[i], y[i]}
 	}
-	slices.SortFunc(idx, func(a, b int) int {
+	slices.SortFunc(idx, func(a, b pair) int {
 		switch {
-		case x[a] < x[b] || x[a] == x[b] && y[a] < y[b]:
+		case a.x < b.x || a.x == b.x && a.y < b.y:
 			return -1
-		case x[a] == x[b] && y[a] == y[b]:
+		case a.x == b.x && a.y == b.y:
 			return 0
 		}
 		return 1
@@ -28,13 +31,13 @@ func KendallTauB(x, y []float64) float64 {
 	var tiedX, tiedBoth, tiedY float64
 	for i := 0; i < n; {
 		j := i
-		for j < n && x[idx[j]] == x[idx[i]] {
+		for j < n && idx[j].x == idx[i].x {
 			j++
 		}
 		tiedX += pairs(j - i)
 		for a := i; a < j; {
 			b := a
-			for b < j && y[idx[b]] == y[idx[a]] {
+			for b < j && idx[b].y == idx[a].y {
 				b++
 			}
 			tiedBoth += pairs(b - a)
@@ -43,8 +46,8 @@ func KendallTauB(x, y []float64) float64 {
 		i = j
 	}
 	v := make([]float64, n)
-	for i, k := range idx {
-		v[i] = y[k]
+	for i, p := range idx {
+		v[i] = p.y
 	}
 	swaps := exchanges(v, make([]float64, n))
 	for i := 0; i < n; {
@@ -91,15 +94,19 @@ func exchanges(v, tmp []float64) float64 {
 func Spearman(x, y []float64) float64 { return correlation(midRanks(x), midRanks(y)) }
 
 func midRanks(x []float64) []float64 {
-	idx := make([]int, len(x))
-	for i := range idx {
-		idx[i] = i
+	type place struct {
+		v float64
+		i int
 	}
-	slices.SortFunc(idx, func(a, b int) int {
+	idx := make([]place, len(x))
+	for i, v := range x {
+		idx[i] = place{v, i}
+	}
+	slices.SortFunc(idx, func(a, b place) int {
 		switch {
-		case x[a] < x[b]:
+		case a.v < b.v:
 			return -1
-		case x[a] > x[b]:
+		case a.v > b.v:
 			return 1
 		}
 		return 0
@@ -107,11 +114,11 @@ func midRanks(x []float64) []float64 {
 	r := make([]float64, len(x))
 	for i := 0; i < len(idx); {
 		j := i
-		for j < len(idx) && x[idx[j]] == x[idx[i]] {
+		for j < len(idx) && idx[j].v == idx[i].v {
 			j++
 		}
 		for k := i; k < j; k++ {
-			r[idx[k]] = float64(i+j+1) / 2
+			r[idx[k].i] = float64(i+j+1) / 2
 		}
 		i = j
 	}

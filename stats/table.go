@@ -172,7 +172,7 @@ func consider(rows []Row, req *Request) []UsedRow {
 	for i := range rows {
 		u := &used[i]
 		*u = UsedRow{Row: rows[i], Kept: true, Response: math.NaN(),
-			PredictorOf: make(map[string]float64, len(predictors)), ResidualOf: map[string]float64{}, PredictedOf: map[string]float64{}}
+			PredictorOf: make(map[string]float64, len(predictors)), ResidualOf: make(map[string]float64, len(req.Models)), PredictedOf: make(map[string]float64, len(req.Models))}
 		u.ClusterID = clusterLabel(&u.Row, req.Cluster)
 		if req.Cluster == "none" {
 			u.ClusterID = u.ID
@@ -294,29 +294,39 @@ func newTable(used []UsedRow, req *Request, kind string) *table {
 		}
 	}
 	predictors, categories := req.needs()
-	slices.SortStableFunc(t.row, func(a, b int) int { return canonical(&used[a], &used[b], predictors) })
-	clusters, systems := make([]string, len(t.row)), make([]string, len(t.row))
-	for k, i := range t.row {
-		u := &used[i]
-		t.y = append(t.y, u.Response)
-		t.kind, t.source = append(t.kind, u.Kind), append(t.source, &u.Row)
-		name := u.SystemName
-		if name == "" {
-			name = u.System
+	t.row = inCanonicalOrder(used, t.row, predictors)
+	column := func(get func(u *UsedRow) float64) []float64 {
+		c := make([]float64, len(t.row))
+		for k, i := range t.row {
+			c[k] = get(&used[i])
 		}
-		t.label = append(t.label, name)
-		t.sinuosityKind, t.measuredLine = append(t.sinuosityKind, u.SinuosityKind), append(t.measuredLine, u.MeasuredLine)
-		for _, name := range supplyCategories {
-			t.supply[name] = append(t.supply[name], u.Categories[name])
-		}
-		clusters[k], systems[k] = u.ClusterID, u.System
-		for _, name := range predictors {
-			t.predictor[name] = append(t.predictor[name], u.PredictorOf[name])
-		}
-		for _, name := range categories {
-			t.category[name] = append(t.category[name], u.Categories[name])
-		}
+		return c
 	}
+	words := func(get func(u *UsedRow) string) []string {
+		c := make([]string, len(t.row))
+		for k, i := range t.row {
+			c[k] = get(&used[i])
+		}
+		return c
+	}
+	t.y = column(func(u *UsedRow) float64 { return u.Response })
+	for _, name := range predictors {
+		t.predictor[name] = column(func(u *UsedRow) float64 { return u.PredictorOf[name] })
+	}
+	for _, name := range categories {
+		t.category[name] = words(func(u *UsedRow) string { return u.Categories[name] })
+	}
+	for _, name := range supplyCategories {
+		t.supply[name] = words(func(u *UsedRow) string { return u.Categories[name] })
+	}
+	t.kind = words(func(u *UsedRow) string { return u.Kind })
+	t.sinuosityKind = words(func(u *UsedRow) string { return u.SinuosityKind })
+	t.measuredLine = words(func(u *UsedRow) string { return u.MeasuredLine })
+	t.label = words(func(u *UsedRow) string { return cmp.Or(u.SystemName, u.System) })
+	for _, i := range t.row {
+		t.source = append(t.source, &used[i].Row)
+	}
+	clusters, systems := words(func(u *UsedRow) string { return u.ClusterID }), words(func(u *UsedRow) string { return u.System })
 	if req.Cluster == "none" {
 		for k := range clusters {
 			clusters[k] = strconv.Itoa(k) // every row by itself, whatever its id
@@ -331,10 +341,30 @@ func newTable(used []UsedRow, req *Request, kind string) *table {
 	return t
 }
 
-func canonical(a, b *UsedRow, predictors []string) int {
-	if c := cmp.Compare(a.Response, b.Response); c != 0 {
-		return c
+// inCanonicalOrder sorts rows by response, then by predictors, system and id.
+func inCanonicalOrder(used []UsedRow, rows []int, predictors []string) []int {
+	type key struct {
+		response float64
+		row      int
 	}
+	keys := make([]key, len(rows))
+	for k, i := range rows {
+		keys[k] = key{used[i].Response, i}
+	}
+	slices.SortFunc(keys, func(a, b key) int {
+		if c := cmp.Compare(a.response, b.response); c != 0 {
+			return c
+		}
+		return canonical(&used[a.row], &used[b.row], predictors)
+	})
+	out := make([]int, len(rows))
+	for k := range keys {
+		out[k] = keys[k].row
+	}
+	return out
+}
+
+func canonical(a, b *UsedRow, predictors []string) int {
 	for _, p := range predictors {
 		if c := cmp.Compare(a.PredictorOf[p], b.PredictorOf[p]); c != 0 {
 			return c
