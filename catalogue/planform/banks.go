@@ -149,7 +149,8 @@ func Centreline(left, right Line) (Line, error) {
 	if !(width > 0) {
 		return Line{}, &InputError{"lines", "the two banks start and end at the same points, so there is no width between them"}
 	}
-	n := int(math.Min(8*math.Max(a.length, b.length)/width, MaxVertices/4))
+	// Eight steps to a width, as far as the vertices given deserve.
+	n := int(math.Min(8*math.Max(a.length, b.length)/width, 16*float64(len(a.v)+len(b.v))))
 	n = min(max(n, len(a.v), len(b.v), 64), MaxVertices/2)
 	line := Line{Name: strings.TrimSpace(orElse(bankName(left.Name), "channel")), Plane: left.Plane, Z: left.Z,
 		HasTime: left.HasTime || right.HasTime, Notes: left.Notes}

@@ -9,8 +9,12 @@ import (
 const (
 	MaxBytes    = 64 << 20
 	MaxVertices = 1_000_000
+	MaxLines    = 20_000 // of one file
 
 	profilePoints = 2000
+	// filePoints bounds the samples of all lines of a file together, which stay
+	// in memory until the figures are drawn.
+	filePoints = 4_000_000
 )
 
 // Length is the length of a line along its vertices in metres: geodesic on

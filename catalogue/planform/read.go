@@ -148,6 +148,9 @@ func (c *collector) finish() error {
 		n := c.skipped[kind]
 		c.refuse(count(n, kind, kind+"s"), "not a line; only LineString and MultiLineString are measured")
 	}
+	if n := len(c.lines) + len(c.refused); n > MaxLines {
+		return &InputError{"body", fmt.Sprintf("the file holds %d lines; at most %d are measured at once. Split it", n, MaxLines)}
+	}
 	if len(c.lines) == 0 && len(c.refused) == 0 {
 		return &InputError{"body", "the " + c.format + " file holds no line; expected a LineString (GeoJSON, KML, WKT, GeoPackage), a track or route (GPX), or columns of longitude and latitude (CSV)"}
 	}
@@ -339,13 +342,19 @@ func MeasureFile(data []byte, contentType, name string, s Settings) (*Report, er
 	if r.Refused == nil {
 		r.Refused = []Refused{}
 	}
+	points := 0
 	for i := range lines {
+		if points > filePoints {
+			r.Refused = append(r.Refused, Refused{lines[i].Name, fmt.Sprintf("the lines before it took %d points at this spacing_m, which is as many as one file may; give a larger one, or split the file", points)})
+			continue
+		}
 		m, err := Measure(lines[i], s)
 		if err != nil {
 			r.Refused = append(r.Refused, Refused{lines[i].Name, sentence(err)})
 			continue
 		}
 		m.Settings.EPSG, m.Settings.Lines, m.Given = s.EPSG, s.Lines, &lines[i]
+		points += len(m.Plan)
 		r.Lines = append(r.Lines, *m)
 	}
 	if s.Lines == "levels" {

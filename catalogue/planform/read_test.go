@@ -348,3 +348,15 @@ func TestReadColumns(t *testing.T) {
 		t.Errorf("degrees called UTM: %v %v", refused, err)
 	}
 }
+
+// One file cannot ask for more than its share: too many lines, or a spacing
+// that would take too many points for all of them.
+func TestFileLimits(t *testing.T) {
+	if _, _, err := Read([]byte(strings.Repeat("LINESTRING(0 0,1 1);", MaxLines+1)), "", "", Settings{}); err == nil || !strings.Contains(err.Error(), "at most 20000") {
+		t.Errorf("many lines: %v", err)
+	}
+	r, err := MeasureFile([]byte(strings.Repeat("LINESTRING(0 0,1000000 0);", 5)), "", "", Settings{EPSG: "plane", SpacingM: 0.6})
+	if err != nil || len(r.Lines) != 3 || len(r.Refused) != 2 || !strings.Contains(r.Refused[0].Reason, "larger one") {
+		t.Errorf("many points: %v, %d measured, refused %v", err, len(r.Lines), r.Refused)
+	}
+}
