@@ -74,6 +74,13 @@ func (a *App) meridianAnswer(ctx context.Context, f catalogue.Filter) (*views.Me
 	return v.(*views.MeridianPage), nil
 }
 
+// warm computes the opening page, so that the first visitor does not wait.
+func (a *App) warm(ctx context.Context) {
+	if _, err := a.meridianAnswer(ctx, catalogue.Filter{}); err != nil {
+		a.log.Error("the opening page could not be prepared", "err", err)
+	}
+}
+
 func (a *App) computeMeridian(ctx context.Context, f catalogue.Filter) (*views.MeridianPage, error) {
 	m := &views.MeridianPage{}
 	rows, err := a.store.Rows(ctx, f)
@@ -83,6 +90,7 @@ func (a *App) computeMeridian(ctx context.Context, f catalogue.Filter) (*views.M
 	for _, r := range bestOfSystems(rows) {
 		m.Items = append(m.Items, meridianItem(r))
 	}
+	m.Layouts = views.NewMeridianLayouts(m.Items)
 	if _, m.Total, err = a.store.Systems(ctx, catalogue.Filter{PerPage: 1}); err != nil {
 		return nil, err
 	}
@@ -145,6 +153,39 @@ func (a *App) meridianExpected(ctx context.Context, f catalogue.Filter, m *views
 	}
 	if !slices.ContainsFunc(m.Expected, func(e views.MeridianExpected) bool { return e.Why == "" }) {
 		m.Expected = nil
+	}
+	return a.meridianSpin(ctx, fits, m)
+}
+
+// spinLatitude is where the inset asks what the faster spin of the past does:
+// half-way in sin(latitude), where f is half of the pole's.
+const spinLatitude = 30
+
+// meridianSpin asks for one palaeolatitude at today's spin and at three ages.
+func (a *App) meridianSpin(ctx context.Context, fits *expectation.Fits, m *views.MeridianPage) error {
+	if len(m.Expected) == 0 || !nearSystems(m.Items, spinLatitude) {
+		return nil
+	}
+	m.SpinLatitude = spinLatitude
+	for _, age := range []float64{0, 70, 300, 600} {
+		t := expectation.NewTarget()
+		t.Palaeolatitude, t.PalaeolatitudeSE, t.Age, t.AgeSE = spinLatitude, 0, age, 0
+		r, err := fits.Expect(ctx, t)
+		if err != nil {
+			return err
+		}
+		var coriolis *expectation.Quantiles
+		for _, e := range r.Explanations {
+			if e.Name == "coriolis" {
+				coriolis = e.Sinuosity
+			}
+		}
+		if coriolis == nil || !isFinite(coriolis.P10+coriolis.P50+coriolis.P90) {
+			m.Spin = nil
+			return nil
+		}
+		m.Spin = append(m.Spin, views.MeridianSpin{AgeMa: age, DayH: r.DayLength.Value, Ratio: r.RotationRatio,
+			MeridianExpected: views.MeridianExpected{AbsLatitude: spinLatitude, P10: coriolis.P10, P50: coriolis.P50, P90: coriolis.P90}})
 	}
 	return nil
 }

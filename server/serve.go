@@ -26,6 +26,7 @@ type serveConfig struct {
 	Listen    string    // host:port; port 0 takes a free one
 	ReadOnly  bool      // no sign-in, no contribution, no writing
 	DemoLaw   seed.Law  // law the demo is drawn from
+	Warm      bool      // compute the opening page before anyone asks for it
 	Say       io.Writer // what a person at the console reads
 	Log       *slog.Logger
 }
@@ -39,7 +40,7 @@ kept. A new FILE starts empty.
 `
 
 func runServe(args []string, in io.Reader, out, errOut io.Writer) int {
-	cfg := serveConfig{Say: out, Log: slog.New(slog.NewTextHandler(errOut, nil))}
+	cfg := serveConfig{Warm: true, Say: out, Log: slog.New(slog.NewTextHandler(errOut, nil))}
 	law := string(seed.Both)
 	fs := flag.NewFlagSet("serve", flag.ContinueOnError)
 	fs.SetOutput(errOut)
@@ -126,6 +127,13 @@ func startServer(ctx context.Context, cfg serveConfig) (addr string, stop func()
 	for _, f := range a.onListen {
 		f("http://"+shownHost(cfg.Listen, addr), cfg.Say)
 	}
+	warmed := make(chan struct{})
+	go func() {
+		defer close(warmed)
+		if cfg.Warm {
+			a.warm(context.WithoutCancel(ctx))
+		}
+	}()
 	return addr, func() {
 		ctx, cancel := context.WithTimeout(context.Background(), 10*time.Second)
 		defer cancel()
@@ -133,6 +141,7 @@ func startServer(ctx context.Context, cfg serveConfig) (addr string, stop func()
 			srv.Close()
 		}
 		<-served
+		<-warmed
 		closeStore()
 	}, nil
 }

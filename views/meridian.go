@@ -4,6 +4,7 @@ import (
 	"math"
 	"slices"
 	"strconv"
+	"sync"
 
 	"fathombend/catalogue"
 )
@@ -14,14 +15,24 @@ type MeridianPage struct {
 	Filter   catalogue.Filter
 	Facets   []catalogue.Facet
 	Items    []MeridianItem // every system under the filter
-	Total    int            // systems in the catalogue
-	Folded   bool           // latitudes folded onto |latitude|
-	Colour   string         // slope, feeder, grade, age
-	Headline string         // the answer, or why there is none
-	Rows     int            // measurements behind the headline
+	Layouts  *MeridianLayouts
+	Total    int    // systems in the catalogue
+	Folded   bool   // latitudes folded onto |latitude|
+	Colour   string // slope, feeder, grade, age
+	Headline string // the answer, or why there is none
+	Rows     int    // measurements behind the headline
 	Clusters int
 	Expected []MeridianExpected // at 0, 15 ... 75 degrees
 	Response string             // which sinuosity is expected, in words
+
+	Spin         []MeridianSpin // one palaeolatitude at several ages, under the Coriolis explanation alone
+	SpinLatitude float64
+}
+
+// MeridianSpin is the expectation at the rotation rate of one age.
+type MeridianSpin struct {
+	AgeMa, DayH, Ratio float64
+	MeridianExpected
 }
 
 // MeridianItem is one system: its best measurement, at the latitude it was
@@ -61,6 +72,7 @@ const (
 	meridianFoot  = 14.0
 	unfoldedPer   = 7.4  // page units a degree
 	foldedPer     = 10.5 // page units a degree
+	letterRoom    = 8.0  // right of a ribbon, for the letter that repeats a colour
 	maxShift      = 3.0  // degrees a ribbon may be moved off its latitude to stay on the page
 )
 
@@ -94,6 +106,26 @@ type meridianLayout struct {
 }
 
 func (m meridianLayout) y(lat float64) float64 { return meridianTop + (m.hi-lat)*m.per }
+
+// MeridianLayouts keeps the drawings of one set of systems, unfolded and folded,
+// each made when first asked for. Safe for concurrent use.
+type MeridianLayouts struct {
+	items []MeridianItem
+	once  [2]sync.Once
+	held  [2]meridianLayout
+}
+
+// NewMeridianLayouts of items, which must not change afterwards.
+func NewMeridianLayouts(items []MeridianItem) *MeridianLayouts { return &MeridianLayouts{items: items} }
+
+func (l *MeridianLayouts) layout(folded bool) meridianLayout {
+	k := 0
+	if folded {
+		k = 1
+	}
+	l.once[k].Do(func() { l.held[k] = layoutMeridian(l.items, folded) })
+	return l.held[k]
+}
 
 // layoutMeridian places every ribbon at its latitude and slides it right until
 // it touches no other. A latitude with no room left on the page moves a ribbon
@@ -174,7 +206,7 @@ func (m *meridianLayout) place(items []MeridianItem) (without int) {
 			m.farthest = max(m.farthest, math.Abs(bestShift)/m.per)
 		}
 		y := y0 + bestShift
-		g.take(best+r.Left-pad, best+r.Right+pad, y-half, y+half)
+		g.take(best+r.Left-pad, best+r.Right+pad+letterRoom, y-half, y+half)
 		hemi := "N"
 		if it.Latitude < 0 {
 			hemi = "S"

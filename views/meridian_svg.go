@@ -56,6 +56,9 @@ func (m MeridianPage) defs() templ.Component {
 			ps = append(ps, e.P10, e.P50, e.P90)
 		}
 	}
+	for _, e := range m.Spin {
+		ps = append(ps, e.P10, e.P50, e.P90)
+	}
 	return templ.Raw(ribbonDefs(ps))
 }
 

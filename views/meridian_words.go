@@ -113,3 +113,21 @@ func smallExpected(e MeridianExpected) string {
 	return fmt.Sprintf(`<svg class="row-ribbon expected" viewBox="%s %s %s %s" aria-hidden="true" focusable="false"><path class="between" d="%s"/><use class="limit" href="#%s"/><use class="limit" href="#%s"/><use class="middle" href="#%s"/></svg>`,
 		num2(min(s.Left, 0)-6), num2(-half), num2(s.Right-min(s.Left, 0)+12), num2(2*half), ribbonBetween(e.P10, e.P90), ribbonID(e.P90), ribbonID(e.P10), ribbonID(e.P50))
 }
+
+func spinAge(ma float64) string {
+	if ma == 0 {
+		return "today"
+	}
+	return strconv.FormatFloat(ma, 'f', -1, 64) + " Ma"
+}
+
+// spinSentence compares the oldest with today.
+func spinSentence(m MeridianPage) string {
+	now, then := m.Spin[0], m.Spin[len(m.Spin)-1]
+	s := fmt.Sprintf("Were the Coriolis parameter the whole story, a channel at %s would be expected at %s today and at %s under the spin of %s; the limits of one new system today are %s and %s",
+		FormatDegrees(m.SpinLatitude), num2Fixed(now.P50), num2Fixed(then.P50), spinAge(then.AgeMa), num2Fixed(now.P10), num2Fixed(now.P90))
+	if then.P50 > now.P10 && then.P50 < now.P90 {
+		return s + ", and hold it."
+	}
+	return s + "."
+}
