@@ -67,6 +67,9 @@ func (s *study) coefficients(m *Model, k, rowJob int) {
 			sortFloats(v)
 			c.Intervals["row_bootstrap"] = bcaInterval(v, f.coef[j], columnOf(s.rowJack[k], j), s.req.Level)
 		}
+		if f.rowIntervals != nil {
+			c.Intervals["rows_hc1"] = f.rowIntervals[j]
+		}
 		kind := s.req.Interval
 		if _, ok := c.Intervals[kind]; !ok {
 			kind = "bca"

@@ -128,3 +128,13 @@ func BenchmarkOneStatistic(b *testing.B) {
 		percentileInterval(v, 0.95)
 	}
 }
+
+// BenchmarkManyClusters is 100,000 rows, each a cluster of its own.
+func BenchmarkManyClusters(b *testing.B) {
+	rows := inventedRows(2, 100_000, 2000)
+	req := DefaultRequest()
+	req.Permutations, req.Cluster = MinPermutations, "none"
+	for b.Loop() {
+		analyse(b, rows, req)
+	}
+}

@@ -3,6 +3,7 @@ package stats
 import (
 	"context"
 	"math/rand/v2"
+	"slices"
 	"sync"
 	"sync/atomic"
 )
@@ -154,29 +155,44 @@ func (r *replicates) degenerate(e int) int {
 	return n
 }
 
+// mostLeftOut is how many groups are left out one by one. More are left out in
+// blocks of neighbours, the fewer the more groups there are, as every fit costs
+// all groups.
+const (
+	mostLeftOut = 2500
+	leastBlocks = 100
+)
+
 // jackknife refits an estimator without each group in turn: row g of the
-// result is what fit wrote, or NaN where it could not be fitted.
+// result is what fit wrote, or NaN where it could not be fitted. With more than
+// mostLeftOut groups the groups of a block share the fit without the block.
 func jackknife(est estimator, groups int) [][]float64 {
 	_, w := est.shape()
+	blocks := groups
+	if groups > mostLeftOut {
+		blocks = max(leastBlocks, mostLeftOut*mostLeftOut/groups)
+	}
 	fit, d := est.worker(), newDraw(groups)
+	out, flat := make([][]float64, groups), make([]float64, blocks*w)
 	d.without(groups, -1)
-	last := groups - 1
-	d.wt, d.size = d.wt[:last], float64(last)
-	all := d.id
-	out := make([][]float64, groups)
-	flat := make([]float64, groups*w)
-	for g := range out {
-		out[g] = flat[g*w : (g+1)*w : (g+1)*w]
-		// The group left out changes places with the last one for this fit.
-		all[g], all[last] = all[last], all[g]
-		d.id = all[:last]
-		ok := fit(d, out[g], false)
-		for k, v := range out[g] {
-			if !ok || !finite(v) {
-				out[g][k] = nan
+	all, wt := slices.Clone(d.id), d.wt
+	for b := range blocks {
+		from, to := b*groups/blocks, (b+1)*groups/blocks
+		kept := groups - (to - from)
+		d.id = d.id[:groups]
+		copy(d.id[:from], all)
+		copy(d.id[from:kept], all[to:])
+		d.id, d.wt, d.size = d.id[:kept], wt[:kept], float64(kept)
+		v := flat[b*w : (b+1)*w : (b+1)*w]
+		ok := fit(d, v, false)
+		for k, x := range v {
+			if !ok || !finite(x) {
+				v[k] = nan
 			}
 		}
-		all[g], all[last] = all[last], all[g]
+		for g := from; g < to; g++ {
+			out[g] = v
+		}
 	}
 	return out
 }

@@ -355,7 +355,7 @@ func (s *study) breakpoint(ctx context.Context) (*Breakpoint, error) {
 		b := &Breakpoint{At: f.coef[3], Interval: s.out[k].Coefficients[3].Interval, P: nan, Profile: f.profile(), Model: f.label}
 		if s.t.cluster.count() > 1 {
 			var err error
-			if b.P, err = flipP(ctx, newBrokenTest(f.cluster.(*broken), true), s.flips(), s.req.Seed, s.req.Workers); err != nil {
+			if b.P, err = flipP(ctx, newBrokenTest(f.cluster.(*broken), true), s.flips(f), s.req.Seed, s.req.Workers); err != nil {
 				return nil, err
 			}
 		}

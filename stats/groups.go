@@ -171,5 +171,5 @@ func interactionP(ctx context.Context, a, b *study, k int) (float64, error) {
 	if t == nil {
 		return nan, nil
 	}
-	return flipP(ctx, t, a.flips(), a.req.Seed, a.req.Workers)
+	return flipP(ctx, t, a.flips(f), a.req.Seed, a.req.Workers)
 }

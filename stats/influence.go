@@ -13,8 +13,8 @@ import (
 // its rows. Sorted by how far R2 moves.
 func (s *study) influence(f *fitted, k int) []Influence {
 	g := &s.t.system
-	if g.count() < 3 {
-		return nil
+	if g.count() < 3 || g.count() > mostLeftOut {
+		return nil // very many systems: none of them can matter much
 	}
 	f.system = f.compile(g)
 	jack := jackknife(f.system, g.count())

@@ -38,7 +38,10 @@ func (s *study) methodsText(a *Analysis) string {
 	say("Beside them stand the CR2 error with Satterthwaite degrees of freedom (Bell & McCaffrey 2002; Pustejovsky & Tipton 2018), BCa and percentile intervals, and the interval of rows resampled as if independent (BCa, at most 3,999 resamples).")
 	say("R2 is in sinuosity units; its intervals, those of differences of R2 (same resamples, paired) and of Lindeman-Merenda-Gold shares are %s at %s.", statKindText(s.statKind()), percent(r.Level))
 	say("Out-of-sample R2 leaves each %s out in turn. p values come from %d sign flips of whole %s of the residuals of the null model (%s weights). AICc counts rows as independent.",
-		clusterOne(r.Cluster), s.flips(), clusterNoun(r.Cluster), weightsText(s.t.cluster.count()))
+		clusterOne(r.Cluster), r.Permutations, clusterNoun(r.Cluster), weightsText(s.t.cluster.count()))
+	if r.MeasurementError {
+		say("Stated errors of measurement were drawn anew in every resample.")
+	}
 	say("In 1,000 simulated catalogues of 12 to 45 unequal clusters about a skewed law, nominal 95 %% intervals held the truth as follows: %s.", coverageSentence())
 	for _, m := range a.Models {
 		if m.Failure == "" && m.slope() != nil {
@@ -46,6 +49,15 @@ func (s *study) methodsText(a *Analysis) string {
 			say("%s: R2 = %.3f [%s], %s = %s [%s] (%s), out-of-sample R2 = %s, p = %s.", upperFirst(m.name()), m.RSquared, between(m.RSquaredInterval),
 				c.Name, number(c.Estimate), between(c.Interval), kindName(c.IntervalKind), number(m.OutOfSampleR2), number(m.PermutationP))
 		}
+	}
+	if a.Breakpoint != nil {
+		say("%s", a.Breakpoint.Text)
+	}
+	for _, g := range a.Groups {
+		say("%s", g.Text)
+	}
+	for _, x := range a.Selection {
+		say("%s", x.Text)
 	}
 	return strings.TrimSpace(b.String())
 }

@@ -24,7 +24,8 @@ type fitted struct {
 	nl                   *NonlinearFit            // of a decay
 	failure              string
 
-	likelihood bool // residuals have a Gaussian likelihood: AICc is defined
+	rowIntervals []Interval // see rowErrors
+	likelihood   bool       // residuals have a Gaussian likelihood: AICc is defined
 }
 
 // maxRowFormRows bounds the forms whose resamples go through the rows.

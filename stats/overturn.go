@@ -19,8 +19,8 @@ const (
 // kind of interval asked, at 299 resamples.
 func (s *study) overturning(ctx context.Context) (*Overturning, error) {
 	k := s.leadingSingle()
-	if k < 0 || s.boot == nil {
-		return nil, nil
+	if k < 0 || s.boot == nil || s.t.cluster.count() > mostLeftOut || s.t.n() > maxRowFormRows {
+		return nil, nil // so many rows that no few systems overturn them
 	}
 	f, m := s.models[k], &s.out[k]
 	c := m.slope()

@@ -39,9 +39,6 @@ func (s *study) warnings(a *Analysis) []string {
 	if unlikeScales(s.out) {
 		add("AICc is not compared: the models are fitted on different response scales, and a likelihood of ln P is not one of P. Compare the out-of-sample R2, which is in sinuosity units for all, or fit all on one scale.")
 	}
-	if f := s.flips(); f < s.req.Permutations && s.t.n() > 0 {
-		add("The sign-flip tests use %d flips, not %d: with %d %s more would take too long.", f, s.req.Permutations, g, noun)
-	}
 	if s.anyEqualOne() && s.req.Scale == "raw" && len(s.out) > 0 {
 		n := 0
 		for _, y := range s.t.y {
@@ -110,7 +107,10 @@ func (s *study) modelWarnings(m *Model) []string {
 		add("%d of %d resamples could not be fitted; %s", m.DegenerateResamples, m.ResamplesUsed, advice)
 	}
 	if m.ResamplesUsed > 0 && m.ResamplesUsed < s.req.Resamples {
-		add("%d resamples are used, not %d: with %d rows more would take too long.", m.ResamplesUsed, s.req.Resamples, m.Rows)
+		add("%d resamples are used, not %d: with %s more would take too long.", m.ResamplesUsed, s.req.Resamples, s.size())
+	}
+	if m.FlipsUsed > 0 && m.FlipsUsed < s.req.Permutations {
+		add("its test uses %d sign flips, not %d: with %s more would take too long.", m.FlipsUsed, s.req.Permutations, s.size())
 	}
 	for _, l := range m.Levels {
 		for i, n := range l.Rows {
@@ -182,7 +182,10 @@ func disagreement(c *Coefficient, m *Model, s *study) string {
 // side when they differ by more than half.
 func clusteringSentence(c *Coefficient, s *study) string {
 	rows, ok := c.Intervals["row_bootstrap"]
-	whole := c.Intervals["bca"]
+	whole, kinds := c.Intervals["bca"], "BCa both"
+	if hc1, many := c.Intervals["rows_hc1"]; many {
+		rows, ok, kinds = hc1, true, "HC1 against BCa"
+	}
 	if !ok || !rows.known() || !whole.known() {
 		return ""
 	}
@@ -197,8 +200,8 @@ func clusteringSentence(c *Coefficient, s *study) string {
 	case !rows.excludes(0) && whole.excludes(0):
 		verdict = " Only the clustered interval excludes zero."
 	}
-	return fmt.Sprintf("clustering changes the interval of %s by more than half: rows resampled %s, whole %s resampled %s (BCa both).%s Use the second.",
-		c.Name, between(rows), clusterNoun(s.req.Cluster), between(whole), verdict)
+	return fmt.Sprintf("clustering changes the interval of %s by more than half: rows resampled %s, whole %s resampled %s (%s).%s Use the second.",
+		c.Name, between(rows), clusterNoun(s.req.Cluster), between(whole), kinds, verdict)
 }
 
 // leverage warns when one row alone holds more than half of the leverage of an
@@ -242,4 +245,8 @@ func (s *study) ranges() []string {
 		}
 	}
 	return out
+}
+
+func (s *study) size() string {
+	return fmt.Sprintf("%s in %s", plural(s.t.n(), "row", "rows"), plural(s.t.cluster.count(), clusterOne(s.req.Cluster), clusterNoun(s.req.Cluster)))
 }

@@ -7,7 +7,8 @@ import (
 
 // test fills the sign-flip p of the model, and of each term of a joint model.
 func (s *study) test(ctx context.Context, m *Model, f *fitted) error {
-	flips := s.flips()
+	flips := s.flips(f)
+	m.FlipsUsed = flips
 	run := func(t flipTest) (float64, error) {
 		return flipP(ctx, t, flips, s.req.Seed, s.req.Workers)
 	}
@@ -47,8 +48,18 @@ func (s *study) test(ctx context.Context, m *Model, f *fitted) error {
 	return err
 }
 
-func (s *study) flips() int {
-	return min(s.req.Permutations, max(MinPermutations, flipBudget/max(s.t.cluster.count(), 1)))
+// flips is how many sign flips the test of a model is given: as many as asked,
+// unless each costs too much.
+func (s *study) flips(f *fitted) int {
+	n, cost := s.t.n(), s.t.cluster.count()
+	budget := flipBudget
+	switch f.form {
+	case "theil_sen":
+		cost, budget = n*(n-1)/2, pairBudget
+	case "broken_line":
+		cost, budget = n, backBudget
+	}
+	return min(s.req.Permutations, max(MinPermutations, budget/max(cost, 1)))
 }
 
 // vif is the largest variance inflation factor of a term's columns, 1/(1 - R2)

@@ -1,6 +1,10 @@
 package stats
 
-import "context"
+import (
+	"context"
+
+	"gonum.org/v1/gonum/stat/distuv"
+)
 
 // rowBudget and workBudget keep long work within bounds; what is cut is said.
 const (
@@ -9,7 +13,8 @@ const (
 	flipBudget  = 2_000_000   // clusters x sign flips of one test
 	backBudget  = 20_000_000  // rows x resamples of a transformed response, or of a form without cross-products
 	noiseBudget = 2_000_000   // rows x resamples with errors of measurement
-	pairBudget  = 400_000_000 // pairs x resamples of Theil-Sen
+	pairBudget  = 400_000_000 // pairs x resamples (or flips) of Theil-Sen
+	drawBudget  = 100_000_000 // clusters x resamples
 )
 
 // study is one table (all rows, or the rows of one kind) with its models, their
@@ -91,6 +96,7 @@ func (s *study) resample(ctx context.Context, progress func(float64)) error {
 // resamples is how many a model can be given: a response that was transformed
 // needs its rows for R2 in sinuosity units, and they may be many.
 func (f *fitted) resamples(asked int) int {
+	asked = min(asked, max(999, drawBudget/max(f.t.cluster.count(), 1)))
 	if isLeastSquares(f.form) && f.scale != "raw" {
 		return min(asked, max(999, backBudget/max(f.t.n(), 1)))
 	}
@@ -108,7 +114,11 @@ func (f *fitted) resamples(asked int) int {
 func (s *study) resampleRows(ctx context.Context) error {
 	n := s.t.n()
 	resamples := min(s.req.Resamples, rowMost, rowBudget/max(n, 1))
-	if s.t.cluster.count() == n || resamples < MinResamples {
+	if s.t.cluster.count() == n {
+		return nil
+	}
+	if resamples < MinResamples {
+		s.rowErrors()
 		return nil
 	}
 	single := singles(n)
@@ -151,4 +161,28 @@ func singles(n int) grouping {
 		g.of[i], g.rows[i], g.start[i+1] = i, i, i+1
 	}
 	return g
+}
+
+// rowErrors stands in for the row bootstrap where rows are very many: the
+// normal interval with the error HC1, to which it tends.
+func (s *study) rowErrors() {
+	single := singles(s.t.n())
+	z := distuv.UnitNormal.Quantile((1 + s.req.Level) / 2)
+	d := newDraw(s.t.n())
+	d.without(s.t.n(), -1)
+	for _, f := range s.models {
+		if f.failure != "" || f.robust == nil {
+			continue
+		}
+		e := f.compile(&single)
+		_, w := e.shape()
+		out := make([]float64, w)
+		if !e.worker()(d, out, true) {
+			continue
+		}
+		for j, b := range f.coef {
+			se := out[len(f.coef)+1+j]
+			f.rowIntervals = append(f.rowIntervals, Interval{b - z*se, b + z*se})
+		}
+	}
 }

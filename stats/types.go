@@ -236,6 +236,7 @@ type Model struct {
 	Skill                float64     `json:"out_of_sample_skill"`         // 1 - PRESS/PRESS of the mean of the other clusters
 	RSquaredIntervalKind string      `json:"r_squared_interval_kind"`
 	ResamplesUsed        int         `json:"resamples_used"`
+	FlipsUsed            int         `json:"permutations_used"`
 	CurveKind            string      `json:"curve_interval_kind"`
 	Levels               []Level     `json:"levels,omitempty"` // categories of a joint model, first level = baseline
 	Terms                []Term      `json:"terms,omitempty"`
@@ -267,7 +268,7 @@ type Coefficient struct {
 	Interval      Interval            `json:"interval"`
 	IntervalKind  string              `json:"interval_kind"`
 	CR2           *CR2                `json:"cr2"`
-	Intervals     map[string]Interval `json:"intervals"` // every kind that is defined: studentised, cr2, bca, percentile, row_bootstrap
+	Intervals     map[string]Interval `json:"intervals"` // every kind that is defined: studentised, cr2, bca, percentile; row_bootstrap (rows_hc1 where rows are very many)
 }
 
 // CR2 is the bias-reduced cluster error with Satterthwaite degrees of freedom.
