@@ -71,10 +71,14 @@ var access = map[string]role{
 	"POST /review/:id/edit":         curator,
 
 	// These take their question in the body and change nothing.
+	"POST /regression/cancel":       reader,
 	"POST /expectation":             reader,
 	"POST /expectation.json":        reader,
 	"POST /expectation.csv":         reader,
 	"POST /figures/expectation.svg": reader,
+	"POST /expectation/time":        reader,
+	"POST /expectation/time.json":   reader,
+	"POST /expectation/report":      reader,
 	"POST /measure":                 reader,
 	"POST /measure.json":            reader,
 	"POST /measure.csv":             reader,

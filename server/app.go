@@ -19,6 +19,7 @@ type App struct {
 	log      *slog.Logger
 	readOnly bool
 	fits     *cache
+	jobs     jobs // long fits on their way
 
 	// onListen run once, after the program listens: base is the address a
 	// person can open, say the console. For words that need the address.

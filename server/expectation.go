@@ -33,6 +33,7 @@ func (a *App) routesExpectation(e *echo.Echo) {
 	}
 	e.POST("/expectation.csv", noStore(a.expectationCSV))
 	get(e, "/expectation/columns.csv", a.expectationColumns)
+	a.routesExpectationMore(e)
 }
 
 // noStore keeps targets out of caches: they are confidential.

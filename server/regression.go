@@ -22,6 +22,9 @@ func (a *App) routesRegression(e *echo.Echo) {
 	get(e, "/regression.json", a.regressionJSON)
 	get(e, "/regression.csv", a.regressionCSV)
 	get(e, "/figures/regression.svg", a.regressionFigure)
+	e.POST("/regression/cancel", a.regressionCancel)
+	get(e, "/regression/next", a.nextPage)
+	get(e, "/regression/next.json", a.nextJSON)
 }
 
 // regressionPage answers the question in the address. An address that leaves
@@ -46,9 +49,15 @@ func (a *App) regressionPage(c echo.Context) error {
 	if page.Facets, err = a.facets(ctx, f); err != nil {
 		return err
 	}
-	page.Analysis, err = a.analyse(ctx, f, req)
-	if err != nil {
+	var working *job
+	page.Analysis, working, err = a.analyseWatched(c, f, req)
+	switch {
+	case errors.Is(err, context.Canceled):
+		return a.regressionRefused(c, q, &badInput{"", "The fit was cancelled. Ask for fewer models or fewer resamples, or fit it again."})
+	case err != nil:
 		return a.regressionRefused(c, q, err)
+	case working != nil:
+		return a.regressionWorking(c, page, working)
 	}
 	return render(c, http.StatusOK, views.Regression(page))
 }

@@ -33,8 +33,8 @@ func writeUsedRows(out io.Writer, a *stats.Analysis) error {
 	head := []string{"measurement", "system", "system_name", "parent_deposit", "cluster", "source", "kind", "invented", "kept", "why_dropped",
 		"sinuosity", "sinuosity_kind", "measured_line", "grade", "response", "latitude_deg", "longitude_deg", "age_ma", "palaeolatitude_deg"}
 	head = append(head, predictors...)
-	for _, m := range a.Models {
-		head = append(head, "predicted "+m.Model, "residual "+m.Model)
+	for _, m := range modelNames(a) {
+		head = append(head, "predicted "+m, "residual "+m)
 	}
 	if err := w.Write(head); err != nil {
 		return err
@@ -67,10 +67,22 @@ func usedRow(a *stats.Analysis, r stats.UsedRow, predictors []string) []string {
 	for _, p := range predictors {
 		row = append(row, value(r.PredictorOf, p))
 	}
-	for _, m := range a.Models {
-		row = append(row, value(r.PredictedOf, m.Model), value(r.ResidualOf, m.Model))
+	for _, m := range modelNames(a) {
+		row = append(row, value(r.PredictedOf, m), value(r.ResidualOf, m))
 	}
 	return row
+}
+
+// modelNames lists the models, each once: with group=kind a model is fitted
+// for every kind, and a row has the fit of its own.
+func modelNames(a *stats.Analysis) []string {
+	var out []string
+	for _, m := range a.Models {
+		if !slices.Contains(out, m.Model) {
+			out = append(out, m.Model)
+		}
+	}
+	return out
 }
 
 // usedPredictors lists the predictors the rows carry: the known ones in their

@@ -59,22 +59,33 @@ func fitFilter(f catalogue.Filter, group string) catalogue.Filter {
 	return f
 }
 
+// analysisKey names the answer to a question on this catalogue revision.
+func (a *App) analysisKey(ctx context.Context, f catalogue.Filter, req stats.Request) (string, error) {
+	rev, err := a.store.Revision(ctx)
+	if err != nil {
+		return "", err
+	}
+	req.Workers = 0
+	return fmt.Sprintf("regression|%d|%s|%+v", rev, fitFilter(f, req.Group).Values().Encode(), req), nil
+}
+
 // analyse answers a regression question from the cache of this catalogue
 // revision, or computes it.
 func (a *App) analyse(ctx context.Context, f catalogue.Filter, req stats.Request) (*stats.Analysis, error) {
-	f = fitFilter(f, req.Group)
-	rev, err := a.store.Revision(ctx)
+	key, err := a.analysisKey(ctx, f, req)
 	if err != nil {
 		return nil, err
 	}
+	f = fitFilter(f, req.Group)
 	req.Workers = runtime.GOMAXPROCS(0)
-	key := fmt.Sprintf("regression|%d|%s|%+v", rev, f.Values().Encode(), req)
 	v, err := a.fits.do(ctx, key, func(ctx context.Context) (any, error) {
 		rows, err := a.store.Rows(ctx, f)
 		if err != nil {
 			return nil, err
 		}
-		return stats.Analyse(ctx, slices.Clip(statsRows(rows)), req, nil)
+		ctx, j := a.jobs.start(ctx, key)
+		defer a.jobs.end(key, j)
+		return stats.Analyse(ctx, slices.Clip(statsRows(rows)), req, j.progress)
 	})
 	if err != nil {
 		return nil, err

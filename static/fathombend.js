@@ -37,16 +37,29 @@
     return null;
   };
 
-  const show = async (url, push) => {
+  // A refused question changes nothing but says why, above the form that asked.
+  const refuse = (form, fresh) => {
+    if (!form) return false;
+    form.querySelector(":scope > .errors.in-place")?.remove();
+    const p = document.createElement("p");
+    p.className = "errors in-place";
+    p.setAttribute("role", "alert");
+    p.textContent = [...fresh.querySelectorAll("h1 ~ p:not(.small), .errors li")].map((e) => e.textContent.trim()).join(" ");
+    form.prepend(p);
+    return true;
+  };
+
+  const show = async (url, push, form) => {
     if (asked) asked.abort();
     const mine = (asked = new AbortController());
     main.setAttribute("data-busy", "");
     main.setAttribute("aria-busy", "true");
     try {
-      const answer = await fetch(url, { signal: mine.signal, headers: { Accept: "text/html" } });
+      const answer = await fetch(url, { signal: mine.signal, headers: { Accept: "text/html", "X-Requested-By": "page" } });
       const page = new DOMParser().parseFromString(await answer.text(), "text/html");
       const fresh = page.getElementById("main");
       if (!fresh) throw new Error("no page");
+      if (!answer.ok && refuse(form, fresh)) return;
       const focused = document.activeElement;
       const focus = nameOf(focused);
       const caret = focused && "selectionStart" in focused ? [focused.selectionStart, focused.selectionEnd] : null;
@@ -67,6 +80,11 @@
         try { if (caret && caret[0] !== null) again.setSelectionRange(...caret); } catch { /* not a text control */ }
       }
       say(main.querySelector(".lead, .errors")?.textContent);
+      // A long fit answers with its progress: ask again.
+      if (main.querySelector("[data-working]")) {
+        const here = location.href;
+        setTimeout(() => { if (location.href === here && !asked) show(url, false); }, 700);
+      }
     } catch (err) {
       if (err.name === "AbortError") return;
       location.assign(url); // let the browser show what went wrong
@@ -94,7 +112,7 @@
     if (!isLive(form)) return;
     clearTimeout(wait);
     // Checkboxes are often ticked in a row; wait for the hand to rest.
-    wait = setTimeout(() => { if (form.reportValidity()) show(addressOf(form), true); }, e.target.type === "checkbox" ? 350 : 0);
+    wait = setTimeout(() => { if (form.reportValidity()) show(addressOf(form), true, form); }, e.target.type === "checkbox" ? 350 : 0);
   });
   main.addEventListener("submit", (e) => {
     // A button that posts keeps what is typed out of addresses: never a GET.
@@ -102,7 +120,7 @@
     if (!isLive(e.target) || (e.submitter && e.submitter.formAction && new URL(e.submitter.formAction).pathname !== new URL(e.target.action).pathname)) return;
     e.preventDefault();
     clearTimeout(wait);
-    show(addressOf(e.target), true);
+    show(addressOf(e.target), true, e.target);
   });
   addEventListener("popstate", (e) => { if (e.state && e.state.live || history.state === null) show(location.href, false); });
   if (document.querySelector("form[data-live]")) history.replaceState({ live: true }, "", location.href);

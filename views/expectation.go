@@ -23,6 +23,8 @@ type ExpectationPage struct {
 	Facets       []catalogue.Facet
 	Result       *expectation.Result
 	Days         DayFigure
+	Series       []expectation.SeriesPoint // the site through time
+	Name         string                    // of the target in a report on several
 	Columns      []ColumnHelp
 	Refused      string
 	RefusedField string

@@ -111,3 +111,26 @@ func pText(p float64) string {
 	}
 	return fixedText(p, 2)
 }
+
+// settingText writes a setting of any of the kinds that settings have.
+func settingText(v any) string {
+	switch x := v.(type) {
+	case string:
+		return strings.ReplaceAll(x, "_", " ")
+	case bool:
+		return yesNoText(x)
+	case int:
+		return strconv.Itoa(x)
+	case uint64:
+		return strconv.FormatUint(x, 10)
+	case float64:
+		return numberText(x, 4)
+	case []float64:
+		parts := make([]string, len(x))
+		for i, f := range x {
+			parts[i] = floatText(f)
+		}
+		return strings.Join(parts, ", ")
+	}
+	return ""
+}

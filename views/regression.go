@@ -21,6 +21,7 @@ type RegressionPage struct {
 	Categories   []string // that may stand in a joint model
 	Refused      string
 	RefusedField string
+	Progress     float64 // of a fit on its way, 0..1
 }
 
 // question is the question the page answers, in the words of its models.

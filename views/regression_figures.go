@@ -61,7 +61,7 @@ func RegressionFigure(a *stats.Analysis, req stats.Request, panel string) Plot {
 	case "shares":
 		return sharesPlot(a)
 	case "breakpoint":
-		return breakpointPlot(a, req)
+		return breakpointPlot(a)
 	}
 	return Plot{ID: "regression", Title: "Regression", Empty: "No model could be fitted to these rows."}
 }
@@ -110,13 +110,13 @@ func fitPlot(a *stats.Analysis, req stats.Request, panel panelModels) Plot {
 		}
 		p.Lines = append(p.Lines, l)
 	}
-	other := otherVariable(panel.Predictor)
+	other := otherVariable(a, panel.Predictor)
 	top := 0.0
 	for _, r := range a.Used {
 		if !r.Kept {
 			continue
 		}
-		q := rowPoint(r, other, w)
+		q := rowPoint(r, other)
 		q.X, q.Y = r.PredictorOf[panel.Predictor], r.Response
 		p.Points = append(p.Points, q)
 		top = max(top, q.Y)
@@ -172,13 +172,31 @@ func fitDescription(a *stats.Analysis, panel panelModels) string {
 	return strconv.Itoa(a.Rows) + " rows. " + strings.Join(parts, "; ") + "."
 }
 
-// otherVariable is what colour carries: never the variable on the axis.
-func otherVariable(predictor string) string {
+// otherVariable is what colour carries: never the variable on the axis. Where
+// no model looks at f, latitude stands for it.
+func otherVariable(a *stats.Analysis, predictor string) string {
 	switch predictor {
 	case "valley_slope", "log10_slope", "channel_width", "channel_depth":
-		return "coriolis"
+		if slices.ContainsFunc(a.Used, func(r stats.UsedRow) bool { _, ok := r.PredictorOf["coriolis"]; return ok }) {
+			return "coriolis"
+		}
+		return "abs_latitude"
 	}
 	return "valley_slope"
+}
+
+// otherValue is the row's value of the variable that colour carries.
+func otherValue(r stats.UsedRow, variable string) float64 {
+	if x, ok := r.PredictorOf[variable]; ok {
+		return x
+	}
+	switch variable {
+	case "valley_slope":
+		return r.ValleySlope
+	case "abs_latitude":
+		return math.Abs(r.LatitudeDeg)
+	}
+	return math.NaN()
 }
 
 // rampLimits are the upper ends of the first five of six classes; the ramp is
@@ -186,6 +204,7 @@ func otherVariable(predictor string) string {
 var rampLimits = map[string][]float64{
 	"valley_slope": {0.001, 0.002, 0.005, 0.01, 0.02},
 	"coriolis":     {0.25, 0.5, 0.75, 1, 1.25},
+	"abs_latitude": {10, 20, 30, 45, 60},
 }
 
 func rampClass(variable string, x float64) string {
@@ -210,12 +229,8 @@ func rampKey(variable string) []rampEntry {
 
 // rowPoint is the mark of one row without its place in the plot: shape tells
 // rivers and ancient systems apart, colour the other variable.
-func rowPoint(r stats.UsedRow, other string, w predictorWords) Point {
-	x, known := r.PredictorOf[other]
-	if !known {
-		x = math.NaN()
-	}
-	q := Point{Class: rampClass(other, x), Href: string(systemHref(r.System)), Tip: r.SystemName + ", " + fixedText(r.Response, 2)}
+func rowPoint(r stats.UsedRow, other string) Point {
+	q := Point{Class: rampClass(other, otherValue(r, other)), Href: string(systemHref(r.System)), Tip: r.SystemName + ", " + fixedText(r.Response, 2)}
 	words := []string{r.SystemName, "sinuosity " + fixedText(r.Response, 2)}
 	for _, name := range []string{"abs_latitude", "valley_slope"} {
 		if v, ok := r.PredictorOf[name]; ok && !math.IsNaN(v) {
@@ -249,7 +264,7 @@ func predictedPlot(a *stats.Analysis) Plot {
 	lo, hi := math.Inf(1), math.Inf(-1)
 	for _, r := range a.Used {
 		if x, ok := r.PredictedOf[m.Model]; ok && r.Kept {
-			q := rowPoint(r, otherVariable(m.Predictor), predictorText(m.Predictor))
+			q := rowPoint(r, otherVariable(a, m.Predictor))
 			q.X, q.Y = x, r.Response
 			p.Points = append(p.Points, q)
 			if !math.IsNaN(x) {
@@ -274,28 +289,22 @@ func residualPlot(a *stats.Analysis) Plot {
 		if !ok || !r.Kept {
 			continue
 		}
-		q := rowPoint(r, otherVariable(m.Predictor), predictorText(m.Predictor))
+		q := rowPoint(r, otherVariable(a, m.Predictor))
 		q.X, q.Y = x, r.ResidualOf[m.Model]
 		p.Points = append(p.Points, q)
 	}
 	return p
 }
 
-// breakpointPlot is the profile of the residual sum of squares over the place
-// of the break.
-func breakpointPlot(a *stats.Analysis, req stats.Request) Plot {
-	predictor := ""
-	for _, m := range req.Models {
-		if m.Form == "broken_line" {
-			predictor = m.Predictor
-			break
-		}
-	}
-	w := predictorText(predictor)
+// breakpointPlot is R2 of the broken line over the place of its break.
+func breakpointPlot(a *stats.Analysis) Plot {
 	b := a.Breakpoint
+	_, predictor, _ := strings.Cut(b.Model, ":")
+	predictor, _, _ = strings.Cut(predictor, " ")
+	w := predictorText(predictor)
 	p := Plot{ID: "breakpoint", Title: "Where the line would break", Width: panelWidth, Height: panelHeight,
-		Desc: "How well the broken line fits for each place of the break; the lowest point is the estimate.",
-		X:    Axis{Label: upperFirst(w.axis), Log: w.log}, Y: Axis{Label: "Residual sum of squares"},
+		Desc: "R² of the broken line for each place of the break; the highest point is the estimate.",
+		X:    Axis{Label: upperFirst(w.axis), Log: w.log}, Y: Axis{Label: "R² with the break there"},
 		Rules: []Rule{{At: b.At, Vertical: true, Label: "estimate " + numberText(b.At, 3), Class: "dash"}}}
 	var x, y []float64
 	for _, c := range b.Profile {

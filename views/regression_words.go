@@ -6,6 +6,8 @@ import (
 	"strconv"
 	"strings"
 
+	"github.com/a-h/templ"
+
 	"fathombend/stats"
 )
 
@@ -79,6 +81,7 @@ func bare(name string) string { return strings.TrimPrefix(name, "the ") }
 func (p RegressionPage) modelName(text string) string {
 	for _, m := range p.Analysis.Models {
 		if m.Model == text {
+			m.Group = "" // one name for the fits of all kinds
 			return modelText(m)
 		}
 	}
@@ -232,7 +235,11 @@ func (p RegressionPage) ownWarnings() []string {
 // the sentences themselves stay plain text for documents and terminals.
 func (p RegressionPage) plain(s string) string {
 	for _, m := range p.Analysis.Models {
-		if rest, ok := strings.CutPrefix(s, m.Model+": "); ok {
+		name := m.Model
+		if m.Group != "" {
+			name += " (" + m.Group + ")"
+		}
+		if rest, ok := strings.CutPrefix(s, name+": "); ok {
 			s = upperFirst(modelText(m)) + ": " + rest
 			break
 		}
@@ -265,6 +272,9 @@ func (p RegressionPage) plots(names []string) []Plot {
 	for _, n := range names {
 		out = append(out, RegressionFigure(p.Analysis, p.Request, n))
 	}
+	if len(out) == 1 {
+		out[0].Width, out[0].Height = 760, 430 // alone it takes the width of three
+	}
 	return out
 }
 
@@ -279,11 +289,11 @@ func panelText(name string) string {
 }
 
 // rampVariables are the variables that colour carries on the named panels.
-func rampVariables(names []string) []string {
+func rampVariables(a *stats.Analysis, names []string) []string {
 	var out []string
 	for _, n := range names {
 		if predictor, ok := strings.CutPrefix(n, "fit:"); ok {
-			if v := otherVariable(predictor); !slices.Contains(out, v) {
+			if v := otherVariable(a, predictor); !slices.Contains(out, v) {
 				out = append(out, v)
 			}
 		}
@@ -292,10 +302,10 @@ func rampVariables(names []string) []string {
 }
 
 // predictorsOn lists the panels on which colour carries variable.
-func predictorsOn(names []string, variable string) string {
+func predictorsOn(a *stats.Analysis, names []string, variable string) string {
 	var out []string
 	for _, n := range names {
-		if predictor, ok := strings.CutPrefix(n, "fit:"); ok && otherVariable(predictor) == variable {
+		if predictor, ok := strings.CutPrefix(n, "fit:"); ok && otherVariable(a, predictor) == variable {
 			out = append(out, predictorText(predictor).name)
 		}
 	}
@@ -328,6 +338,17 @@ func (p RegressionPage) diagnosticCaption() string {
 		s += " " + countText(p.Analysis.InventedRows, "row is", "rows are") + " invented."
 	}
 	return s
+}
+
+// nextHref asks where the next system should be measured, on the same rows.
+func (p RegressionPage) nextHref() templ.SafeURL {
+	q := p.Filter.Values()
+	for _, name := range []string{"response", "measured_line", "cluster", "seed"} {
+		if v, ok := p.Query[name]; ok {
+			q[name] = v
+		}
+	}
+	return templ.SafeURL("/regression/next?" + q.Encode())
 }
 
 func countText(n int, one, many string) string {
