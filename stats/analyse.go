@@ -1,6 +1,7 @@
 package stats
 
 import (
+	"cmp"
 	"context"
 	"slices"
 )
@@ -37,6 +38,10 @@ func runStudies(ctx context.Context, used []UsedRow, all *table, req *Request, p
 	tables, kinds := []*table{all}, []string{""}
 	if req.Group == "kind" {
 		tables, kinds = nil, slices.Compact(slices.Sorted(slices.Values(all.kind)))
+		// Submarine systems first: they get the resamples they have alone.
+		slices.SortStableFunc(kinds, func(a, b string) int {
+			return cmp.Compare(btoi(a != "submarine"), btoi(b != "submarine"))
+		})
 		for _, k := range kinds {
 			tables = append(tables, newTable(used, req, k))
 		}
@@ -118,4 +123,11 @@ func (s *study) predictions(used []UsedRow) {
 			}
 		}
 	}
+}
+
+func btoi(b bool) int {
+	if b {
+		return 1
+	}
+	return 0
 }

@@ -241,3 +241,31 @@ func TestResamplingAllocatesNothing(t *testing.T) {
 		}
 	}
 }
+
+// Under 12 groups the flips take Webb's six points, evenly; from 12 on they are
+// signs.
+func TestFlipWeights(t *testing.T) {
+	few, many := &flipper{seed: 3, w: make([]float64, 11)}, &flipper{seed: 3, w: make([]float64, 130)}
+	count := map[float64]int{}
+	sum := 0.0
+	for i := range 3000 {
+		for _, w := range few.draw(i) {
+			count[w]++
+		}
+		for _, w := range many.draw(i) {
+			if w != 1 && w != -1 {
+				t.Fatalf("weight %v", w)
+			}
+			sum += w
+		}
+	}
+	// 33,000 draws of six: 5,500 each, standard deviation 68; 390,000 signs: 625.
+	for _, w := range webb {
+		if math.Abs(float64(count[w])-5500) > 4*68 {
+			t.Errorf("weight %.3f drawn %d times of 33000", w, count[w])
+		}
+	}
+	if len(count) != 6 || math.Abs(sum) > 4*625 {
+		t.Errorf("weights %v; signs sum to %v", count, sum)
+	}
+}

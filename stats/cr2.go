@@ -37,6 +37,12 @@ func (t *clusterTerms) cr2(c []float64) (se, df float64) {
 			v[j] += l[i*p+j] * c[i]
 		}
 	}
+	return t.satterthwaite(l, v)
+}
+
+// satterthwaite sums error and degrees of freedom over the clusters; see cr2.
+func (t *clusterTerms) satterthwaite(l, v []float64) (se, df float64) {
+	p := t.p
 	var variance, trace, square float64
 	dd := make([]float64, p*p) // sum d_g d_g'
 	k, u, d, le := make([]float64, p*p), make([]float64, p*p), make([]float64, p), make([]float64, p)
