@@ -11,9 +11,10 @@ command -v Rscript >/dev/null || { echo "R is missing: on Debian, apt-get instal
 pin=""
 command -v taskset >/dev/null && pin="taskset -c 0"
 r=$($pin Rscript bench/against_r.R)
-go test -c -o /tmp/against_r.$$ .
-trap 'rm -f /tmp/against_r.$$' EXIT
-out=$($pin /tmp/against_r.$$ -test.run xxx -test.bench 'AgainstR|OneStatistic' -test.cpu 1 -test.benchtime 100x)
+dir=$(mktemp -d)
+trap 'rm -rf "$dir"' EXIT
+go test -c -o "$dir/stats.test" .
+out=$($pin "$dir/stats.test" -test.run xxx -test.bench 'AgainstR|OneStatistic' -test.cpu 1 -test.benchtime 100x)
 nine=$(echo "$out" | awk '/AgainstR/ {print $3/1e9, $7, $5}')
 single=$(echo "$out" | awk '/OneStatistic/ {print $3/1e9}')
 n=none
