@@ -180,10 +180,15 @@ func MeasuredProfile(m *planform.Measured) []Plot {
 				Title: fmt.Sprintf("Bend %d, sinuosity %s", i+1, sinuosityText(b.Sinuosity))})
 		}
 	}
+	sin.Y.Min, sin.Y.Max = sinuosityRange(sin)
 	out := []Plot{sin}
 	if len(slope.X) > 0 {
 		out = append(out, Plot{ID: "slope-profile", Title: "Valley slope along the channel", X: x, Y: Axis{Label: "Valley slope (m/m)"},
 			Desc: "The drop over the chord of each window, at its middle.", Lines: []Line{slope}, Width: 460, Height: 320})
+	}
+	if len(out) == 1 && len(m.Profile) < 2 { // alone it has the whole width
+		out[0].Width, out[0].Height = 960, 320
+		return out
 	}
 	if len(m.Profile) > 1 {
 		var d Line
@@ -194,6 +199,19 @@ func MeasuredProfile(m *planform.Measured) []Plot {
 			Desc: "The depth of the given vertices.", Lines: []Line{d}, Width: 460, Height: 320})
 	}
 	return out
+}
+
+// sinuosityRange keeps a nearly constant profile from looking rough: the axis
+// spans a tenth at least.
+func sinuosityRange(p Plot) (lo, hi float64) {
+	const least = 0.1
+	_, y := p.extent()
+	if !y.ok || y.hi-y.lo >= least {
+		return 0, 0
+	}
+	mid := (y.lo + y.hi) / 2
+	lo = math.Max(1, mid-least/2)
+	return lo, lo + least
 }
 
 // MeasuredRuler is length against ruler length, as sinuosity.
