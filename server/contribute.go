@@ -186,7 +186,7 @@ func (p *contributions) show(c echo.Context, status int, r *record, f views.Cont
 
 // fill puts the record into its form.
 func (a *App) fill(r *record, f *views.ContributeForm) {
-	f.Groups = r.groups()
+	f.Groups, f.Name = r.groups(), r.row.SystemName
 	f.Errors, f.Warned = r.summary()
 	f.Measurement, f.System = r.row.Measurement, r.row.System
 	f.BaseRevision = r.typed.Get("base_revision")
@@ -303,7 +303,10 @@ func (p *contributions) keep(c echo.Context, r *record, line *formLine, f views.
 		return p.show(c, http.StatusUnprocessableEntity, r, f)
 	}
 	s := r.submission(line)
-	key := strconv.FormatInt(u.ID, 10) + " " + r.typed.Get("form_token")
+	key := r.typed.Get("form_token")
+	if key != "" {
+		key = strconv.FormatInt(u.ID, 10) + " " + key
+	}
 	id, err := p.forms.once(key, contentOf(r.typed), func(made int64) (int64, error) {
 		if s.ID = f.ID; s.ID == 0 {
 			s.ID = made

@@ -47,8 +47,12 @@ func (b *formBook) entry(key string) *formEntry {
 
 // once runs make for the form named key with this content, unless it ran
 // already: then it returns what that made. made is the record an earlier
-// sending made, 0 if none. Sendings of one form wait for each other.
+// sending made, 0 if none. Sendings of one form wait for each other. A form
+// without a name, as a script may send it, is always a new one.
 func (b *formBook) once(key string, content [sha256.Size]byte, make func(made int64) (int64, error)) (int64, error) {
+	if key == "" {
+		return make(0)
+	}
 	e := b.entry(key)
 	e.mu.Lock()
 	defer e.mu.Unlock()

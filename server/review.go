@@ -144,8 +144,9 @@ func reviewOf(s *catalogue.Submission) views.Review {
 	row.Normalise()
 	v := views.Review{
 		ID: s.ID, State: s.State, Row: row, Sinuosity: num(row.Sinuosity), By: s.By.Name, Credit: s.By.Credit, ORCID: s.By.ORCID,
-		At: s.At, Messages: s.Messages, Changes: s.Changes, Groups: recordGroups(&row),
+		At: s.At, Messages: s.Messages, Changes: s.Changes,
 	}
+	v.Groups, v.Unsaid = recordGroups(&row)
 	if v.By == "" {
 		v.By = s.By.Credit
 	}
@@ -158,13 +159,19 @@ func reviewOf(s *catalogue.Submission) views.Review {
 	return v
 }
 
-// recordGroups lists what a row says, by group.
-func recordGroups(row *catalogue.Row) []views.RecordGroup {
-	var out []views.RecordGroup
+// recordGroups lists what a row says, by group, and the labels of the choices
+// it leaves unknown.
+func recordGroups(row *catalogue.Row) (out []views.RecordGroup, unsaid []string) {
 	for _, title := range catalogue.Groups {
 		g := views.RecordGroup{Title: strings.ToUpper(title[:1]) + title[1:]}
 		for _, c := range catalogue.Columns {
-			if text := c.Get(row); c.Group == title && text != "" {
+			text := c.Get(row)
+			if c.Group != title || text == "" {
+				continue
+			}
+			if text == "unknown" && c.Kind == catalogue.KindChoice && !c.Required {
+				unsaid = append(unsaid, views.FieldLabel(c.Name))
+			} else {
 				g.Fields = append(g.Fields, views.RecordField{Column: c.Name, Value: text, Unit: c.Unit, Choice: len(c.Choices) > 0})
 			}
 		}
@@ -172,7 +179,7 @@ func recordGroups(row *catalogue.Row) []views.RecordGroup {
 			out = append(out, g)
 		}
 	}
-	return out
+	return out, unsaid
 }
 
 // slugOf is the accepted system a submission belongs to, "" when it is new.

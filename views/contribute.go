@@ -54,6 +54,7 @@ type LineFact struct{ Label, Value, Column string }
 // ContributeForm is the form for one measurement.
 type ContributeForm struct {
 	Action       string // where it posts to
+	Name         string // of its system, as typed
 	ID           int64  // 0 = not saved yet
 	State        string
 	Token        string // names this filling-in of the form: sent twice, it counts once

@@ -86,6 +86,7 @@ type Review struct {
 	Slug              string // of the accepted system, "" when new
 	Changes           []catalogue.FieldChange
 	Groups            []RecordGroup
+	Unsaid            []string // choices left at "unknown", by label
 	Findings          []ReviewFinding
 	Messages          []catalogue.Message
 	Line              *LineReport
