@@ -816,9 +816,9 @@ func ReviewPage(p Page, r Review) templ.Component {
 				return templ_7745c5c3_Err
 			}
 			var templ_7745c5c3_Var43 string
-			templ_7745c5c3_Var43, templ_7745c5c3_Err = templ.JoinStringErrs(sinuosityText(r))
+			templ_7745c5c3_Var43, templ_7745c5c3_Err = templ.JoinStringErrs(givenSinuosity(r))
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/review.templ`, Line: 162, Col: 32}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/review.templ`, Line: 162, Col: 33}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var43))
 			if templ_7745c5c3_Err != nil {
@@ -1047,8 +1047,8 @@ func ReviewPage(p Page, r Review) templ.Component {
 	})
 }
 
-// sinuosityText is the value with the digits it was given with.
-func sinuosityText(r Review) string {
+// givenSinuosity is the value with the digits it was given with.
+func givenSinuosity(r Review) string {
 	if !r.Row.Sinuosity.Valid {
 		return unknownMark
 	}
