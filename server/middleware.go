@@ -20,7 +20,7 @@ import (
 // Largest bodies taken: a form, and a file to import or to measure.
 const (
 	maxForm   = 1 << 20
-	maxUpload = 32 << 20
+	maxUpload = 65 << 20 // a file of planform.MaxBytes in a form
 )
 
 // middleware hangs what every request passes through, outermost first. The

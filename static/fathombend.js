@@ -44,7 +44,7 @@
     const p = document.createElement("p");
     p.className = "errors in-place";
     p.setAttribute("role", "alert");
-    p.textContent = [...fresh.querySelectorAll("h1 ~ p:not(.small), .errors li")].map((e) => e.textContent.trim()).join(" ");
+    p.textContent = [...fresh.querySelectorAll("h1 ~ p:not(.small), .errors li")].map((e) => e.textContent.trim().replace(/[^.]$/, "$&.")).join(" ");
     form.prepend(p);
     return true;
   };
