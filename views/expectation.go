@@ -67,7 +67,7 @@ func (p ExpectationPage) timeText() string {
 		return "in " + upperFirst(u) + " time"
 	}
 	if a := p.Result.Age.Value; a > 0 {
-		return "at " + numberText(a, 3) + " Ma"
+		return "at " + tidyText(a, 4) + " Ma"
 	}
 	return "today"
 }
@@ -244,13 +244,13 @@ func (p ExpectationPage) dayPlot() Plot {
 	}
 	r := p.Result
 	q := Point{X: r.Age.Value, Y: r.DayLength.Value, Low: r.DayLength.Low, High: r.DayLength.High, Shape: "diamond", Class: "alarm", Size: 6,
-		Title: "this target, " + numberText(r.Age.Value, 3) + " Ma, " + fixedText(r.DayLength.Value, 2) + " h"}
+		Title: "this target, " + tidyText(r.Age.Value, 4) + " Ma, " + fixedText(r.DayLength.Value, 2) + " h"}
 	plot.Points = append(plot.Points, q)
 	return plot
 }
 
 func observationTitle(o earth.Observation) string {
-	s := numberText(o.AgeMa, 3) + " Ma, " + fixedText(o.LengthH, 2) + " h " + o.DayKind
+	s := tidyText(o.AgeMa, 4) + " Ma, " + fixedText(o.LengthH, 2) + " h " + o.DayKind
 	if o.Method != "" {
 		s += ", " + o.Method
 	}

@@ -24,7 +24,7 @@ type seriesColumn struct {
 }
 
 var seriesColumns = []seriesColumn{
-	{"time-latitude", "Palaeolatitude", "Palaeolatitude (degrees)", false, func(s expectation.SeriesPoint) (v, lo, hi float64) {
+	{"time-latitude", "Palaeolatitude", "Latitude (°)", false, func(s expectation.SeriesPoint) (v, lo, hi float64) {
 		return s.Palaeolatitude.Value, s.Palaeolatitude.Interval[0], s.Palaeolatitude.Interval[1]
 	}},
 	{"time-day", "Length of the day", "Day (solar hours)", false, func(s expectation.SeriesPoint) (v, lo, hi float64) {
@@ -50,7 +50,7 @@ func (p ExpectationPage) seriesPlots() []Plot {
 	}
 	var out []Plot
 	for i, c := range seriesColumns {
-		plot := Plot{ID: c.id, Title: c.title + " through time", Desc: "Value with its limits against age.", Left: 84, Width: 900, Height: 190,
+		plot := Plot{ID: c.id, Title: c.title + " through time", Desc: "Value with its limits against age.", Left: 92, Width: 900, Height: 190,
 			X: Axis{Min: 0, Max: math.Max(to, 1), Reverse: true}, Y: Axis{Label: c.axis}, Empty: c.title + ": no age could be answered."}
 		if i == len(seriesColumns)-1 {
 			plot.X.Label, plot.Height = "Age (Ma)", 216

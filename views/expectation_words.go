@@ -90,19 +90,19 @@ func (p ExpectationPage) palaeolatitudeText() string {
 	l := p.Result.Palaeolatitude
 	s := latitudeText(l.Value)
 	if l.SE > 0 {
-		s += ", standard error " + numberText(l.SE, 2) + "°, 95 % from " + latitudeText(l.Interval[0]) + " to " + latitudeText(l.Interval[1])
+		s += ", standard error " + tidyText(l.SE, 2) + "°, 95 % from " + latitudeText(l.Interval[0]) + " to " + latitudeText(l.Interval[1])
 	}
 	return s
 }
 
 func (p ExpectationPage) ageText() string {
 	a := p.Result.Age
-	s := numberText(a.Value, 4) + " Ma"
+	s := tidyText(a.Value, 4) + " Ma"
 	if a.Value == 0 {
 		s = "today"
 	}
 	if a.SE > 0 {
-		s += ", standard error " + numberText(a.SE, 2)
+		s += ", standard error " + tidyText(a.SE, 2)
 	}
 	return s
 }

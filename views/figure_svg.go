@@ -61,7 +61,7 @@ func (p Plot) draw(alone bool) string {
 		return c.String()
 	}
 	c.y = newScale(p.Y, ys, c.h-c.b, c.t)
-	if !p.NoFrame {
+	if !p.NoFrame && p.Left <= 0 {
 		c.l = c.roomForTicks(small)
 	}
 	c.x = newScale(p.X, xs, c.l, c.w-c.r)

@@ -24,6 +24,16 @@ func numberText(x float64, digits int) string {
 	return fixedText(x, decimals)
 }
 
+// tidyText is numberText without zeros at its end: for inputs, which are as
+// exact as they were given.
+func tidyText(x float64, digits int) string {
+	s := numberText(x, digits)
+	if strings.Contains(s, ".") && !strings.Contains(s, "×") {
+		s = strings.TrimRight(strings.TrimRight(s, "0"), ".")
+	}
+	return s
+}
+
 // fixedText writes x with the given number of decimals; a number too small to
 // read that way is written as a power of ten.
 func fixedText(x float64, decimals int) string {

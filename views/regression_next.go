@@ -40,7 +40,7 @@ func (p NextPage) rest() []string {
 	if len(p.Answer.Text) < 2 {
 		return nil
 	}
-	return p.Answer.Text[1:]
+	return slices.DeleteFunc(slices.Clone(p.Answer.Text[1:]), func(s string) bool { return s == p.Answer.Separation.Text })
 }
 
 // gridRow is one band of latitude of the grid.

@@ -244,12 +244,15 @@ func (p RegressionPage) plain(s string) string {
 			break
 		}
 	}
-	return signs.ReplaceAllString(s, "${1}−${2}")
+	return trueSigns(s)
 }
 
 // signs are hyphens that stand for a minus: before a digit, after a space or a
-// bracket.
-var signs = regexp.MustCompile(`(^|[\s\[(])-(\d)`)
+// bracket, or between spaces.
+var signs = regexp.MustCompile(`(^|[\s\[(])-( ?\d)`)
+
+// trueSigns sets the minus signs of a plain sentence for print.
+func trueSigns(s string) string { return signs.ReplaceAllString(s, "${1}−${2}") }
 
 // mainPanels and diagnosticPanels divide the figures of an analysis.
 func mainPanels(p RegressionPage) []string {
