@@ -14,44 +14,53 @@ import (
 
 	"github.com/labstack/echo/v4"
 
+	"fathombend/catalogue/planform"
 	"fathombend/views"
 )
 
 // Largest bodies taken: a form, and a file to import or to measure.
 const (
 	maxForm   = 1 << 20
-	maxUpload = 65 << 20 // a file of planform.MaxBytes in a form
+	maxUpload = planform.MaxBytes + 2<<20 // the largest file, and the form around it
 )
 
 // middleware hangs what every request passes through, outermost first. The
 // log stands outside the error handler's call so that it sees the status sent.
 func (a *App) middleware(e *echo.Echo) {
-	e.Use(a.identify, a.logged, securityHeaders, a.recovered, sameOrigin(), limitBody, compressed)
+	e.Use(a.identify, a.logged, securityHeaders, a.secured, a.recovered, sameOrigin(), limitBody, compressed, a.conditional)
 }
 
 // identify gives the request the id that the log and an error page share.
 func (a *App) identify(next echo.HandlerFunc) echo.HandlerFunc {
 	return func(c echo.Context) error {
-		var b [8]byte
-		rand.Read(b[:])
-		c.Response().Header().Set(echo.HeaderXRequestID, hex.EncodeToString(b[:]))
+		c.Response().Header().Set(echo.HeaderXRequestID, newRequestID())
+		c.Set(routeKnown, a.routes[c.Path()])
 		return next(c)
 	}
 }
 
+func newRequestID() string {
+	var b [8]byte
+	rand.Read(b[:]) // never fails
+	return hex.EncodeToString(b[:])
+}
+
 func requestID(c echo.Context) string { return c.Response().Header().Get(echo.HeaderXRequestID) }
 
-// logged writes one line a request. The query is left out: the target of an
-// expectation is confidential.
+// logged writes one line a request and counts it. The query is left out: the
+// target of an expectation is confidential. So is an address that no route
+// takes, since a query may have been typed into it, and who asked.
 func (a *App) logged(next echo.HandlerFunc) echo.HandlerFunc {
 	return func(c echo.Context) error {
 		began := time.Now()
 		if err := next(c); err != nil {
 			c.Error(err)
 		}
-		a.log.Info("request", "method", c.Request().Method, "path", c.Request().URL.Path,
+		took := time.Since(began)
+		a.metrics.observe(c, took)
+		a.log.Info("request", "method", c.Request().Method, "path", loggedPath(c.Request()), "route", routeOf(c),
 			"status", c.Response().Status, "bytes", c.Response().Size,
-			"ms", float64(time.Since(began).Microseconds())/1000, "request_id", requestID(c))
+			"ms", float64(took.Microseconds())/1000, "request_id", requestID(c))
 		return nil
 	}
 }

@@ -11,7 +11,7 @@ import (
 func planPlot(i int, name string, m *planform.Measured) Plot {
 	p := Plot{
 		ID: fmt.Sprintf("plan-%d", i), Title: "Plan view of " + name, Equal: true, Width: 720, Height: 380,
-		Desc:  "The measured line in local kilometres, upstream at the ringed end; small marks are inflections.",
+		Desc:  "The measured line in local kilometres, upstream at the ringed end.",
 		X:     Axis{Label: "East (km)"},
 		Y:     Axis{Label: "North (km)"},
 		Empty: "The line has no points to draw.",
@@ -21,10 +21,15 @@ func planPlot(i int, name string, m *planform.Measured) Plot {
 		l.X, l.Y = append(l.X, v.X/1000), append(l.Y, v.Y/1000)
 	}
 	p.Lines = []Line{l}
+	// As tall as the line asks for, so that a line from north to south is not
+	// drawn as a hair.
+	if x, y := p.extent(); x.ok && x.hi > x.lo {
+		p.Height = min(max(p.Width*(y.hi-y.lo)/(x.hi-x.lo), 280), 620)
+	}
 	if len(m.Plan) > 0 {
 		p.Points = append(p.Points, Point{X: m.Plan[0].X / 1000, Y: m.Plan[0].Y / 1000, Class: "hollow", Size: 7, Title: "upstream end"})
 	}
-	if len(m.Inflections) <= 400 {
+	if len(m.Inflections) <= mostMarks {
 		for _, k := range m.Inflections {
 			if k >= 0 && k < len(m.Plan) {
 				p.Points = append(p.Points, Point{X: m.Plan[k].X / 1000, Y: m.Plan[k].Y / 1000, Size: 2.2, Class: "ochre"})
@@ -33,6 +38,9 @@ func planPlot(i int, name string, m *planform.Measured) Plot {
 	}
 	return p
 }
+
+// mostMarks: more marks than this hide the line they stand on.
+const mostMarks = 60
 
 // thin keeps at most about n points, and the last.
 func thin(pts []planform.PlanPoint, n int) []planform.PlanPoint {
@@ -61,6 +69,9 @@ func profilePlots(i int, name string, m *planform.Measured) []Plot {
 	for _, w := range m.Windows {
 		mid := (w.FromM + w.ToM) / 2000
 		line.X, line.Y = append(line.X, mid), append(line.Y, w.Sinuosity)
+		if len(m.Windows) > mostMarks {
+			continue
+		}
 		sin.Points = append(sin.Points, Point{X: mid, Y: w.Sinuosity, Size: 2.6,
 			Title: fmt.Sprintf("window from %.1f to %.1f km: sinuosity %s", w.FromM/1000, w.ToM/1000, num2Fixed(w.Sinuosity))})
 	}

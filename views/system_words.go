@@ -3,8 +3,10 @@ package views
 import (
 	"fmt"
 	"math"
+	"strings"
 
 	"fathombend/catalogue"
+	"fathombend/catalogue/planform"
 )
 
 func bigRibbonBox(s Shape) string {
@@ -40,8 +42,8 @@ func lineOf(l SystemLine) string {
 
 func planCaption(l SystemLine) string {
 	m := l.Measured
-	return fmt.Sprintf("The stored line%s in local kilometres, %d vertices at a median spacing of %s m, %.1f km long over a chord of %.1f km; ring: upstream end; small marks: inflections. Sinuosity of the whole reach %s.",
-		lineOf(l), m.Vertices, cell(catalogue.Num(m.MedianSpacingM), 2), m.ChannelLengthM/1000, m.ChordM/1000, num2Fixed(m.ReachSinuosity))
+	return fmt.Sprintf("The stored line%s in local kilometres, %d vertices at a median spacing of %s m, %.1f km long over a chord of %.1f km; ring: upstream end%s. Sinuosity of the whole reach %s.",
+		lineOf(l), m.Vertices, cell(catalogue.Num(m.MedianSpacingM), 2), m.ChannelLengthM/1000, m.ChordM/1000, inflectionsText(m), num2Fixed(m.ReachSinuosity))
 }
 
 func windowsCaption(l SystemLine) string {
@@ -68,4 +70,17 @@ func clipped(s string) string {
 		return string(r[:120]) + "…"
 	}
 	return s
+}
+
+// ownNote is what a measurement's note says beside the mark that it is
+// invented, which the page shows on its own.
+func ownNote(r catalogue.Row) string {
+	return strings.TrimSpace(strings.TrimPrefix(r.Notes, catalogue.InventedMark))
+}
+
+func inflectionsText(m *planform.Measured) string {
+	if n := len(m.Inflections); n == 0 || n > mostMarks {
+		return ""
+	}
+	return "; small marks: inflections"
 }
