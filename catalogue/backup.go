@@ -29,8 +29,11 @@ func (s *Store) Backup(ctx context.Context, path string) error {
 }
 
 // Restore makes the new catalogue at path from the backup at from, checking
-// the backup first.
+// the backup first, also against its checksum if that lies beside it.
 func Restore(ctx context.Context, from, path string) error {
+	if _, err := VerifyChecksum(from); err != nil {
+		return err
+	}
 	s, err := Open(ctx, from, Options{ReadOnly: true})
 	if err != nil {
 		return err

@@ -13,6 +13,10 @@ const (
 	Conflict  Code = "conflict"  // someone else changed it first: 409
 	Forbidden Code = "forbidden" // 403
 	Internal  Code = "internal"  // 500: the cause is for the log only
+
+	// Unavailable: the file cannot be read or written at present (disk full,
+	// locked, not writable); nothing was stored and trying again may help: 503.
+	Unavailable Code = "unavailable"
 )
 
 // Error is what every exported method of this room returns on failure. Message

@@ -15,15 +15,17 @@ func (s *Store) Integrity(ctx context.Context) ([]string, error) {
 	if err != nil {
 		return nil, fault("check", err)
 	}
-	if s.w == nil {
+	if len(faults) > 0 { // a damaged file is not looked at any further
 		return faults, nil
+	}
+	if s.w == nil {
+		faults, err = s.textFaultsOfCopy(ctx)
+		return faults, fault("check", err)
 	}
 	// Comparing the words with the records word by word is a command, so it
 	// needs the writer; it changes nothing and is rolled back.
 	err = s.write(ctx, func(tx *sql.Tx) error {
-		if _, err := tx.ExecContext(ctx, `INSERT INTO search (search, rank) VALUES ('integrity-check', 1)`); err != nil {
-			faults = append(faults, "the text index does not agree with the records; rebuild it")
-		}
+		faults = append(faults, textFaults(ctx, tx)...)
 		return errNotStored
 	})
 	if err != nil && !errors.Is(err, errNotStored) {

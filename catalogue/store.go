@@ -208,16 +208,11 @@ func fault(doing string, err error) error {
 	if errors.As(err, &own) {
 		return err
 	}
-	msg := "the catalogue could not do that"
-	switch sqliteCode(err) {
-	case sqlite3.SQLITE_FULL:
-		msg = "the disk is full; nothing was stored"
-	case sqlite3.SQLITE_READONLY, sqlite3.SQLITE_IOERR:
-		msg = "the disk cannot be written; nothing was stored"
-	case sqlite3.SQLITE_BUSY:
-		msg = "another program holds the catalogue locked; nothing was stored, try again"
+	if e := unavailable(err); e != nil {
+		e.Cause = fmt.Errorf("%s: %w", doing, err)
+		return e
 	}
-	return &Error{Code: Internal, Message: msg, Cause: fmt.Errorf("%s: %w", doing, err)}
+	return &Error{Code: Internal, Message: "the catalogue could not do that", Cause: fmt.Errorf("%s: %w", doing, err)}
 }
 
 func (s *Store) stamp() string { return s.now().UTC().Format(time.RFC3339) }

@@ -140,7 +140,7 @@ func (p *accounts) signIn(c echo.Context) error {
 		Name: strings.TrimSpace(form.Get("name")), Return: localPath(form.Get("return")),
 		Carried: carried(form), CarriedTo: form.Get("carried_to"),
 	}
-	host := remoteHost(c)
+	host := p.askerHost(c)
 	key := host + "\x00" + strings.ToLower(v.Name)
 	if wait := max(p.byName.wait(key), p.byHost.wait(host)); wait > 0 {
 		minutes := int(wait.Minutes()) + 1
@@ -150,7 +150,7 @@ func (p *accounts) signIn(c echo.Context) error {
 	}
 	u, err := p.store.Authenticate(c.Request().Context(), v.Name, form.Get("password"))
 	if err != nil {
-		if catalogue.CodeOf(err) == catalogue.Internal {
+		if isFault(err) {
 			return err
 		}
 		p.byName.fail(key)

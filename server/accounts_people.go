@@ -203,7 +203,7 @@ func (p *accounts) changePassword(c echo.Context) error {
 		return refuse(http.StatusUnprocessableEntity, "again", "The two passwords differ; type both again.")
 	}
 	if _, err := p.store.Authenticate(ctx, u.Name, form.Get("current")); err != nil {
-		if catalogue.CodeOf(err) == catalogue.Internal {
+		if isFault(err) {
 			return err
 		}
 		p.byName.fail(key)

@@ -10,7 +10,7 @@ import (
 
 const backupHelp = `Writes a complete copy of a catalogue into the new file OUT while the catalogue
 may be in use. OUT must not exist yet. The copy is checked before it is given
-its name.`
+its name, and its SHA-256 is written beside it as OUT.sha256.`
 
 func runBackup(args []string, in io.Reader, out, errOut io.Writer) int {
 	c := newCall("backup", "backup -catalogue FILE OUT", backupHelp, in, out, errOut)
@@ -31,14 +31,15 @@ func runBackup(args []string, in io.Reader, out, errOut io.Writer) int {
 		return c.failed(err)
 	}
 	defer cleanup()
-	if err := s.Backup(ctx, rest[0]); err != nil {
+	if err := s.BackupWithChecksum(ctx, rest[0]); err != nil {
 		return c.failed(err)
 	}
 	fmt.Fprintf(out, "%s holds a checked copy of %s.\n", rest[0], *c.catalogue)
 	return exitOK
 }
 
-const restoreHelp = `Makes the new catalogue FILE from the backup IN, after checking the backup. FILE
+const restoreHelp = `Makes the new catalogue FILE from the backup IN, after checking the backup, also
+against its checksum if IN.sha256 lies beside it. FILE
 must not exist yet: an existing catalogue is never overwritten; move it away
 first.`
 
@@ -62,8 +63,8 @@ func runRestore(args []string, in io.Reader, out, errOut io.Writer) int {
 }
 
 const checkHelp = `Checks a catalogue file: that the database is whole, that every reference leads
-somewhere, that the text and place indexes agree with the records, and which
-accepted measurements the input checks find odd. Exit 0 when the file is sound,
+somewhere, that the text and place indexes agree with the records, that it fits
+its checksum when FILE.sha256 lies beside it (a backup has one), and which accepted measurements the input checks find odd. Exit 0 when the file is sound,
 1 when it is not; odd measurements are printed and do not change the exit code.`
 
 func runCheck(args []string, in io.Reader, out, errOut io.Writer) int {
@@ -88,6 +89,9 @@ func runCheck(args []string, in io.Reader, out, errOut io.Writer) int {
 	faults, err := s.Integrity(ctx)
 	if err != nil {
 		return c.failed(err)
+	}
+	if _, err := catalogue.VerifyChecksum(s.Path()); err != nil {
+		faults = append(faults, commandMessage(err))
 	}
 	for _, f := range faults {
 		fmt.Fprintln(out, "fault: "+f)

@@ -53,6 +53,13 @@ type badInput struct{ parameter, message string }
 func (b *badInput) Error() string                      { return b.parameter + ": " + b.message }
 func (b *badInput) Input() (parameter, message string) { return b.parameter, b.message }
 
+// isFault says whether err is a failure on this side rather than an answer: a
+// full disk must not read like a wrong password.
+func isFault(err error) bool {
+	code := catalogue.CodeOf(err)
+	return code == catalogue.Internal || code == catalogue.Unavailable
+}
+
 // problemOf maps any error to its status and what the user may read: the one
 // place where that is decided. Anything it does not know is a 500 whose cause
 // only the log sees.
@@ -65,7 +72,10 @@ func problemOf(err error) problem {
 		field, msg := in.Input()
 		return problem{Title: "That cannot be answered", Status: http.StatusBadRequest, Detail: msg, Field: field}
 	case errors.As(err, &ce) && ce.Code != catalogue.Internal:
-		status := map[catalogue.Code]int{catalogue.Invalid: 400, catalogue.NotFound: 404, catalogue.Conflict: 409, catalogue.Forbidden: 403}[ce.Code]
+		status := map[catalogue.Code]int{catalogue.Invalid: 400, catalogue.NotFound: 404, catalogue.Conflict: 409, catalogue.Forbidden: 403, catalogue.Unavailable: 503}[ce.Code]
+		if status == http.StatusServiceUnavailable {
+			return problem{Title: "Not possible at present", Status: status, Detail: sentence(ce.Message, ""), Expected: ce.Expected}
+		}
 		return problem{Title: http.StatusText(status), Status: status, Detail: ce.Message, Field: ce.Field, Expected: ce.Expected}
 	case errors.As(err, &he) && he.Code < 500:
 		return problem{Title: http.StatusText(he.Code), Status: he.Code, Detail: fmt.Sprint(he.Message)}
@@ -90,8 +100,11 @@ func (a *App) handleError(err error, c echo.Context) {
 	}
 	p := problemOf(err)
 	p.Type = "about:blank"
+	if p.Status == http.StatusServiceUnavailable {
+		c.Response().Header().Set(echo.HeaderRetryAfter, "60")
+	}
 	if p.Status >= 500 {
-		a.log.Error("request failed", "path", c.Request().URL.Path, "request_id", requestID(c), "err", err)
+		a.log.Error("request failed", "path", loggedPath(c), "request_id", requestID(c), "err", err)
 	}
 	if wantsData(c) {
 		c.Response().Header().Set(echo.HeaderContentType, "application/problem+json")
@@ -107,6 +120,9 @@ func (a *App) handleError(err error, c echo.Context) {
 	hint := ""
 	if p.Expected != "" {
 		hint = "Expected: " + p.Expected
+		if p.Status == http.StatusServiceUnavailable {
+			hint = "Needed: " + p.Expected + ". What you typed is kept when you go back."
+		}
 	}
 	_ = render(c, p.Status, views.ErrorPage(page, p.Status, detail, hint))
 }

@@ -28,26 +28,31 @@ func newSessions(store *catalogue.Store, log *slog.Logger, readOnly bool) *scs.S
 	m.Cookie.Name = "fathombend"
 	m.Cookie.HttpOnly = true
 	m.Cookie.SameSite = http.SameSiteLaxMode
-	m.ErrorFunc = func(w http.ResponseWriter, r *http.Request, err error) {
-		log.Error("session store failed", "path", r.URL.Path, "err", err)
-		http.Error(w, "The fault is on this side and has been logged.", http.StatusInternalServerError)
-	}
+	m.ErrorFunc = sessionFailed(log)
 	if !readOnly {
-		m.Store = sessionStore{store}
+		m.Store = sessionStore{store, log}
 	}
 	return m
 }
 
 // sessionStore lets the session manager write through the catalogue's own
 // writer, so that there is one writer to the file.
-type sessionStore struct{ store *catalogue.Store }
+type sessionStore struct {
+	store *catalogue.Store
+	log   *slog.Logger
+}
 
 func (s sessionStore) FindCtx(ctx context.Context, token string) ([]byte, bool, error) {
-	return s.store.SessionFind(ctx, token)
+	b, found, err := s.store.SessionFind(ctx, token)
+	if err != nil || !found {
+		return nil, false, err
+	}
+	b, err = withoutWritten(b)
+	return b, err == nil, err
 }
 
 func (s sessionStore) CommitCtx(ctx context.Context, token string, b []byte, expiry time.Time) error {
-	return s.store.SessionCommit(ctx, token, b, expiry)
+	return s.commit(ctx, token, b, expiry)
 }
 
 func (s sessionStore) DeleteCtx(ctx context.Context, token string) error {
@@ -87,7 +92,7 @@ func (a *App) user(c echo.Context) *catalogue.Account {
 
 // sessionInt64 reads a session value; 0 where there is no session.
 func (a *App) sessionInt64(c echo.Context, key string) int64 {
-	if sessionless(c.Request().URL.Path) {
+	if a.readOnly || sessionless(c.Request().URL.Path) {
 		return 0
 	}
 	return a.sessions.GetInt64(c.Request().Context(), key)
@@ -100,7 +105,7 @@ func (a *App) notice(c echo.Context, sentence string) {
 
 // takeNotice returns the kept sentence and forgets it.
 func (a *App) takeNotice(c echo.Context) string {
-	if sessionless(c.Request().URL.Path) {
+	if a.readOnly || sessionless(c.Request().URL.Path) {
 		return ""
 	}
 	return a.sessions.PopString(c.Request().Context(), sessionNotice)
@@ -109,5 +114,5 @@ func (a *App) takeNotice(c echo.Context) string {
 // sessionless says which addresses are answered without a session, so that
 // they stay cacheable and never touch the session table.
 func sessionless(path string) bool {
-	return strings.HasPrefix(path, "/static/") || path == "/healthz" || path == "/favicon.ico"
+	return strings.HasPrefix(path, "/static/") || path == "/healthz" || path == "/metrics" || path == "/favicon.ico"
 }
