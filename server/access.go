@@ -54,6 +54,7 @@ var access = map[string]role{
 	"POST /people/:id/role":     keeper,
 	"POST /people/:id/password": keeper,
 	"POST /people/:id/state":    keeper,
+	"GET /status":               keeper,
 
 	"GET /contribute":               contributor,
 	"POST /contribute":              contributor,
@@ -71,6 +72,7 @@ var access = map[string]role{
 	"POST /review/:id/edit":         curator,
 
 	// These take their question in the body and change nothing.
+	"POST /regression/freeze":       contributor,
 	"POST /regression/cancel":       reader,
 	"POST /expectation":             reader,
 	"POST /expectation.json":        reader,

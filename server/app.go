@@ -4,6 +4,7 @@ import (
 	"io"
 	"log/slog"
 	"net/http"
+	"time"
 
 	"github.com/alexedwards/scs/v2"
 	"github.com/labstack/echo/v4"
@@ -20,6 +21,12 @@ type App struct {
 	readOnly bool
 	fits     *cache
 	jobs     jobs // long fits on their way
+	metrics  *metrics
+	backups  *backups // nil = none scheduled
+	began    time.Time
+	routes   map[string]bool // patterns of every route
+	secure   bool            // reached over TLS, see behind
+	proxied  bool
 
 	// onListen run once, after the program listens: base is the address a
 	// person can open, say the console. For words that need the address.
@@ -28,7 +35,8 @@ type App struct {
 
 // newApp wires an App over an open store.
 func newApp(store *catalogue.Store, log *slog.Logger, readOnly bool) *App {
-	a := &App{store: store, log: log, readOnly: readOnly, fits: newCache(256)}
+	a := &App{store: store, log: log, readOnly: readOnly, fits: newCache(256), began: time.Now()}
+	a.metrics = newMetrics(a)
 	a.sessions = newSessions(store, log, readOnly)
 	return a
 }
@@ -50,6 +58,12 @@ func (a *App) router() *echo.Echo {
 	a.routesContribute(e)
 	a.routesReview(e)
 	a.routesMethods(e)
+	a.routesStatus(e)
+	a.routesChanges(e)
+	a.routes = map[string]bool{}
+	for _, r := range e.Routes() {
+		a.routes[r.Path] = true
+	}
 	return e
 }
 
@@ -60,7 +74,7 @@ func (a *App) handler() http.Handler {
 	// them; static files need none, and stay cacheable.
 	with := a.sessions.LoadAndSave(e)
 	return http.HandlerFunc(func(w http.ResponseWriter, r *http.Request) {
-		if sessionless(r.URL.Path) {
+		if a.readOnly || sessionless(r.URL.Path) {
 			e.ServeHTTP(w, r)
 			return
 		}

@@ -11,6 +11,7 @@ import (
 	"slices"
 	"strconv"
 	"strings"
+	"time"
 
 	"github.com/labstack/echo/v4"
 
@@ -67,6 +68,7 @@ func (a *App) expectationFits(ctx context.Context, f catalogue.Filter, response,
 		if err != nil {
 			return nil, err
 		}
+		defer a.metrics.fitted("expectation", time.Now())
 		return expectation.Fit(ctx, statsRows(rows), expectation.Options{
 			Response: response, MeasuredLine: line, Cluster: "parent_deposit", Seed: fitSeed, ClassLimits: classLimits,
 		})

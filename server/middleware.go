@@ -58,11 +58,19 @@ func (a *App) logged(next echo.HandlerFunc) echo.HandlerFunc {
 		}
 		took := time.Since(began)
 		a.metrics.observe(c, took)
-		a.log.Info("request", "method", c.Request().Method, "path", loggedPath(c.Request()), "route", routeOf(c),
+		a.log.Info("request", "method", c.Request().Method, "path", loggedPath(c), "route", routeOf(c),
 			"status", c.Response().Status, "bytes", c.Response().Size,
 			"ms", float64(took.Microseconds())/1000, "request_id", requestID(c))
 		return nil
 	}
+}
+
+// loggedPath is the path of a request that a route takes, "" for any other.
+func loggedPath(c echo.Context) string {
+	if routeOf(c) == noRoute {
+		return ""
+	}
+	return clip(c.Request().URL.Path)
 }
 
 func securityHeaders(next echo.HandlerFunc) echo.HandlerFunc {

@@ -29,13 +29,27 @@ type serveConfig struct {
 	Warm      bool      // compute the opening page before anyone asks for it
 	Say       io.Writer // what a person at the console reads
 	Log       *slog.Logger
+
+	TLSCert, TLSKey string        // files; "" = plain HTTP
+	BehindProxy     bool          // a proxy in front does TLS and names the asker
+	BackupDir       string        // "" = no scheduled backups
+	BackupEvery     time.Duration // between two of them
+	BackupKeep      int           // how many stay
+	Timeouts        timeouts      // zero = usualTimeouts
 }
 
 const serveHelp = `Usage: fathombend serve [-catalogue FILE] [-listen ADDR] [-read-only] [-demo-law LAW]
+                        [-tls-cert FILE -tls-key FILE] [-behind-proxy] [-log text|json]
+                        [-backup-dir DIR] [-backup-every TIME] [-backup-keep N]
 
 Runs the web application until it is interrupted. Without -catalogue it shows
 the demo, an invented survey, from a temporary copy: nothing entered there is
 kept. A new FILE starts empty.
+
+With -backup-dir it makes a checked copy of the catalogue at intervals, while it
+is in use, and keeps the newest ones. With -read-only nobody signs in, nothing is
+written, and answers say how long a proxy may keep them. With -behind-proxy the
+proxy in front must do TLS, pass the Host header on and set X-Forwarded-For.
 
 `
 
@@ -47,6 +61,14 @@ func runServe(args []string, in io.Reader, out, errOut io.Writer) int {
 	fs.StringVar(&cfg.Catalogue, "catalogue", "", "catalogue `FILE`; without it, the invented demo")
 	fs.StringVar(&cfg.Listen, "listen", "localhost:8080", "`ADDR` to listen on; port 0 takes a free one")
 	fs.BoolVar(&cfg.ReadOnly, "read-only", false, "show the catalogue, change nothing")
+	logAs := "text"
+	fs.StringVar(&logAs, "log", logAs, "how the log on the error output is written: text or json")
+	fs.StringVar(&cfg.TLSCert, "tls-cert", "", "certificate `FILE` (PEM) to serve over TLS")
+	fs.StringVar(&cfg.TLSKey, "tls-key", "", "its key `FILE` (PEM)")
+	fs.BoolVar(&cfg.BehindProxy, "behind-proxy", false, "a proxy in front does TLS and sets X-Forwarded-For")
+	fs.StringVar(&cfg.BackupDir, "backup-dir", "", "`FOLDER` for scheduled backups; without it, none are made")
+	fs.DurationVar(&cfg.BackupEvery, "backup-every", 24*time.Hour, "`TIME` between two scheduled backups")
+	fs.IntVar(&cfg.BackupKeep, "backup-keep", 14, "how many scheduled backups to keep")
 	fs.StringVar(&law, "demo-law", law, "law the demo is drawn from: coriolis, supply, both or none")
 	fs.Usage = func() { fmt.Fprint(errOut, serveHelp); fs.PrintDefaults() }
 	if err := fs.Parse(args); errors.Is(err, flag.ErrHelp) {
@@ -63,6 +85,13 @@ func runServe(args []string, in io.Reader, out, errOut io.Writer) int {
 		fmt.Fprintf(errOut, "serve: -demo-law %q is not a law; expected coriolis, supply, both or none\n", law)
 		return exitBadCall
 	}
+	if msg := cfg.badCall(logAs); msg != "" {
+		fmt.Fprintln(errOut, "serve:", msg)
+		return exitBadCall
+	}
+	if logAs == "json" {
+		cfg.Log = slog.New(slog.NewJSONHandler(errOut, nil))
+	}
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
 	defer stop()
 	_, shut, err := startServer(ctx, cfg)
@@ -74,6 +103,23 @@ func runServe(args []string, in io.Reader, out, errOut io.Writer) int {
 	fmt.Fprintln(out, "Stopping.")
 	shut()
 	return exitOK
+}
+
+// badCall says what is wrong with flags that parse one by one, "" if nothing is.
+func (cfg serveConfig) badCall(logAs string) string {
+	switch {
+	case logAs != "text" && logAs != "json":
+		return fmt.Sprintf("-log %q is not a way to log; expected text or json", logAs)
+	case (cfg.TLSCert == "") != (cfg.TLSKey == ""):
+		return "-tls-cert and -tls-key go together; give both or neither"
+	case cfg.BackupEvery < shortestBackup:
+		return fmt.Sprintf("-backup-every %s is too short; expected %s or more", cfg.BackupEvery, shortestBackup)
+	case cfg.BackupKeep < 1:
+		return fmt.Sprintf("-backup-keep %d would keep nothing; expected 1 or more", cfg.BackupKeep)
+	case cfg.BackupDir != "" && cfg.Catalogue == "":
+		return "-backup-dir needs a -catalogue; the demo is made anew at every start"
+	}
+	return ""
 }
 
 // userSentence keeps the operator's cause: a console reader is the operator.
@@ -98,19 +144,33 @@ func startServer(ctx context.Context, cfg serveConfig) (addr string, stop func()
 	if err != nil {
 		return "", nil, err
 	}
+	if listener, err = cfg.secured(listener); err != nil {
+		return "", nil, err
+	}
 	store, closeStore, err := openServed(ctx, cfg)
 	if err != nil {
 		listener.Close()
 		return "", nil, err
 	}
 	a := newApp(store, cfg.Log, cfg.ReadOnly)
+	a.behind(cfg.TLSCert != "", cfg.BehindProxy)
+	background, stopBackground, err := a.inBackground(cfg)
+	if err != nil {
+		listener.Close()
+		closeStore()
+		return "", nil, err
+	}
 	handler := a.handler()
+	limits := cfg.Timeouts
+	if limits == (timeouts{}) {
+		limits = usualTimeouts
+	}
 	srv := &http.Server{
 		Handler:           handler,
-		ReadHeaderTimeout: 10 * time.Second,
-		ReadTimeout:       60 * time.Second,
-		WriteTimeout:      120 * time.Second,
-		IdleTimeout:       120 * time.Second,
+		ReadHeaderTimeout: limits.header,
+		ReadTimeout:       limits.read,
+		WriteTimeout:      limits.write,
+		IdleTimeout:       limits.idle,
 		MaxHeaderBytes:    64 << 10,
 		ErrorLog:          slog.NewLogLogger(cfg.Log.Handler(), slog.LevelWarn),
 	}
@@ -122,10 +182,14 @@ func startServer(ctx context.Context, cfg serveConfig) (addr string, stop func()
 		}
 	}()
 	addr = listener.Addr().String()
-	cfg.Log.Info("listening", "address", addr, "url", "http://"+shownHost(cfg.Listen, addr))
-	fmt.Fprintf(cfg.Say, "Fathombend %s on http://%s\n", Version, shownHost(cfg.Listen, addr))
+	base := "http://" + shownHost(cfg.Listen, addr)
+	if cfg.TLSCert != "" {
+		base = "https://" + shownHost(cfg.Listen, addr)
+	}
+	cfg.Log.Info("listening", "address", addr, "url", base, "version", Version, "read_only", cfg.ReadOnly)
+	fmt.Fprintf(cfg.Say, "Fathombend %s on %s\n", Version, base)
 	for _, f := range a.onListen {
-		f("http://"+shownHost(cfg.Listen, addr), cfg.Say)
+		f(base, cfg.Say)
 	}
 	warmed := make(chan struct{})
 	go func() {
@@ -142,6 +206,8 @@ func startServer(ctx context.Context, cfg serveConfig) (addr string, stop func()
 		}
 		<-served
 		<-warmed
+		stopBackground()
+		<-background
 		closeStore()
 	}, nil
 }

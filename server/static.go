@@ -48,12 +48,6 @@ func hashedAddresses(files map[string][]byte) map[string]string {
 func (a *App) routesStatic(e *echo.Echo) {
 	get(e, "/static/*", serveStatic)
 	get(e, "/favicon.ico", func(c echo.Context) error { return serveStaticName(c, "favicon.svg") })
-	get(e, "/healthz", func(c echo.Context) error {
-		if _, err := a.store.Revision(c.Request().Context()); err != nil {
-			return err
-		}
-		return c.String(http.StatusOK, "ok\n")
-	})
 }
 
 func serveStatic(c echo.Context) error { return serveStaticName(c, c.Param("*")) }

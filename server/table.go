@@ -6,6 +6,7 @@ import (
 	"math"
 	"runtime"
 	"slices"
+	"time"
 
 	"fathombend/catalogue"
 	"fathombend/stats"
@@ -85,6 +86,7 @@ func (a *App) analyse(ctx context.Context, f catalogue.Filter, req stats.Request
 		}
 		ctx, j := a.jobs.start(ctx, key)
 		defer a.jobs.end(key, j)
+		defer a.metrics.fitted("regression", time.Now())
 		return stats.Analyse(ctx, slices.Clip(statsRows(rows)), req, j.progress)
 	})
 	if err != nil {
