@@ -2,7 +2,6 @@ package main
 
 import (
 	"context"
-	"encoding/json"
 	"fmt"
 	"io"
 	"net/url"
@@ -20,13 +19,16 @@ are those of the page, as name=value or -name value:
   regress model=linear:abs_latitude model=floor_decay:coriolis seed=7
   regress -model power:valley_slope -kind submarine -abs_lat_max 60
 
-With -json it prints the document of /regression.json. Without -catalogue it
+With -analysis NAME it runs a frozen analysis of the catalogue again, on the
+rows it was frozen with; the exit code is 1 when the digits differ from those of
+the day it was frozen. With -json it prints the document of /regression.json. Without -catalogue it
 uses the demo catalogue and says so.`
 
 func runRegress(args []string, in io.Reader, out, errOut io.Writer) int {
 	c := newCall("regress", "regress [-catalogue FILE] [-json] [name=value | -name value ...]", regressHelp, in, out, errOut)
 	c.withCatalogue()
 	asJSON := c.flags.Bool("json", false, "print the JSON document instead of tables")
+	frozen := c.flags.String("analysis", "", "run the frozen analysis `NAME` again")
 	q := url.Values{}
 	filterFlags(c, q)
 	for _, name := range regressionParameters {
@@ -60,20 +62,47 @@ func runRegress(args []string, in io.Reader, out, errOut io.Writer) int {
 		fmt.Fprintln(errOut, demoNote)
 	}
 	app := &App{store: s, fits: newCache(4)}
+	if *frozen != "" {
+		return c.rerun(ctx, app, *frozen, *asJSON)
+	}
 	analysis, err := app.analyse(ctx, f, req)
 	if err != nil {
 		return c.failed(err)
 	}
-	if *asJSON {
-		b, err := json.Marshal(finite(analysis))
-		if err != nil {
-			return c.failed(err)
-		}
-		fmt.Fprintf(out, "%s\n", b)
-		return exitOK
+	if err := writeAnalysis(out, analysis, *asJSON); err != nil {
+		return c.failed(err)
 	}
-	printAnalysis(out, analysis)
 	return exitOK
+}
+
+// rerun answers a frozen analysis again and says whether its digits stand.
+func (c *call) rerun(ctx context.Context, app *App, name string, asJSON bool) int {
+	f, err := app.frozen(ctx, name)
+	if err == nil {
+		err = writeAnalysis(c.out, f.analysis, asJSON)
+	}
+	if err != nil {
+		return c.failed(err)
+	}
+	if !f.same() {
+		fmt.Fprintf(c.err, "%s: the digits differ from those of version %s: SHA-256 %s now, %s then.\n", name, f.kept.Program, f.digest, f.kept.Digest)
+		return exitProblem
+	}
+	fmt.Fprintf(c.err, "%s: the same digits as on %s (SHA-256 %s).\n", name, f.kept.At.Format("2006-01-02"), f.digest)
+	return exitOK
+}
+
+func writeAnalysis(out io.Writer, analysis *stats.Analysis, asJSON bool) error {
+	if !asJSON {
+		printAnalysis(out, analysis)
+		return nil
+	}
+	document, _, err := documentOf(analysis)
+	if err != nil {
+		return err
+	}
+	_, err = out.Write(document)
+	return err
 }
 
 // printAnalysis writes an analysis as text: the sentence first, then what

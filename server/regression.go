@@ -23,6 +23,7 @@ func (a *App) routesRegression(e *echo.Echo) {
 	get(e, "/regression.csv", a.regressionCSV)
 	get(e, "/figures/regression.svg", a.regressionFigure)
 	e.POST("/regression/cancel", a.regressionCancel)
+	a.routesAnalyses(e)
 	get(e, "/regression/next", a.nextPage)
 	get(e, "/regression/next.json", a.nextJSON)
 }
@@ -182,20 +183,27 @@ func (a *App) regressionAnswer(c echo.Context) (catalogue.Filter, stats.Request,
 }
 
 // regressionFigure is one panel of the page alone, as a file; without panel=
-// it is the first.
+// it is the first; with analysis= it is that of a frozen analysis.
 func (a *App) regressionFigure(c echo.Context) error {
 	q, err := params(c)
 	if err != nil {
 		return err
 	}
-	panel := q.Get("panel")
+	panel, name := q.Get("panel"), q.Get("analysis")
 	q.Del("panel")
+	q.Del("analysis")
 	f, req, err := regressionQuestion(q)
 	if err != nil {
 		return err
 	}
-	analysis, err := a.analyse(c.Request().Context(), f, req)
-	if err != nil {
+	var analysis *stats.Analysis
+	if name != "" {
+		kept, ferr := a.frozen(c.Request().Context(), name)
+		if ferr != nil {
+			return ferr
+		}
+		analysis, req = kept.analysis, kept.request
+	} else if analysis, err = a.analyse(c.Request().Context(), f, req); err != nil {
 		return err
 	}
 	if names := views.RegressionPanels(analysis); panel != "" && !slices.Contains(names, panel) {

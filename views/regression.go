@@ -22,6 +22,15 @@ type RegressionPage struct {
 	Refused      string
 	RefusedField string
 	Progress     float64 // of a fit on its way, 0..1
+	Frozen       *FrozenAnalysis
+}
+
+// FrozenAnalysis is an analysis kept under a name and run again.
+type FrozenAnalysis struct {
+	catalogue.Analysis
+	Same    bool   // the digits are those of the day it was frozen
+	Digest  string // of the answer now
+	Program string // version running now
 }
 
 // question is the question the page answers, in the words of its models.

@@ -332,6 +332,10 @@ func systemHref(slug string) templ.SafeURL {
 // figureHref is the address of one panel as a file.
 func (p RegressionPage) figureHref(panel string) templ.SafeURL {
 	q := url.Values{"panel": {panel}}
+	if p.Frozen != nil {
+		q.Set("analysis", p.Frozen.Name)
+		return templ.SafeURL("/figures/regression.svg?" + q.Encode())
+	}
 	for k, v := range p.Query {
 		q[k] = v
 	}

@@ -1,0 +1,165 @@
+package main
+
+import (
+	"context"
+	"crypto/sha256"
+	"encoding/hex"
+	"encoding/json"
+	"net/http"
+	"net/url"
+	"runtime"
+	"strings"
+
+	"github.com/labstack/echo/v4"
+
+	"fathombend/catalogue"
+	"fathombend/stats"
+	"fathombend/views"
+)
+
+func (a *App) routesAnalyses(e *echo.Echo) {
+	get(e, "/analyses", a.analysesPage)
+	get(e, "/analyses/:name", a.analysisPage)
+	e.POST("/regression/freeze", a.freeze)
+}
+
+// documentOf is the JSON document of an analysis, byte for byte as it is
+// served, and its digest.
+func documentOf(analysis *stats.Analysis) (document []byte, digest string, err error) {
+	b, err := json.Marshal(finite(analysis))
+	if err != nil {
+		return nil, "", err
+	}
+	b = append(b, '\n')
+	sum := sha256.Sum256(b)
+	return b, hex.EncodeToString(sum[:]), nil
+}
+
+// freeze keeps the analysis of the question in the body under a name.
+func (a *App) freeze(c echo.Context) error {
+	q, err := params(c)
+	if err != nil {
+		return err
+	}
+	title, why := q.Get("title"), q.Get("why")
+	q = withoutEmpty(q)
+	q.Del("title")
+	q.Del("why")
+	f, req, err := regressionQuestion(q)
+	if err != nil {
+		return err
+	}
+	ctx := c.Request().Context()
+	revision, err := a.store.Revision(ctx)
+	if err != nil {
+		return err
+	}
+	rows, err := a.store.Rows(ctx, fitFilter(f, req.Group))
+	if err != nil {
+		return err
+	}
+	analysis, err := analyseRows(ctx, rows, req)
+	if err != nil {
+		return err
+	}
+	_, digest, err := documentOf(analysis)
+	if err != nil {
+		return err
+	}
+	by := int64(0)
+	if u := a.user(c); u != nil {
+		by = u.ID
+	}
+	name, err := a.store.FreezeAnalysis(ctx, catalogue.Analysis{Title: title, Why: why, Rows: rows, Digest: digest, Program: Version, Revision: revision,
+		Question: withValues(regressionFilter(f).Values(), regressionValues(req)).Encode()}, by)
+	if err != nil {
+		return err
+	}
+	a.notice(c, "The analysis is kept. Its address will give these digits again whatever becomes of the catalogue.")
+	return c.Redirect(http.StatusSeeOther, "/analyses/"+url.PathEscape(name))
+}
+
+func analyseRows(ctx context.Context, rows []catalogue.Row, req stats.Request) (*stats.Analysis, error) {
+	req.Workers = runtime.GOMAXPROCS(0)
+	return stats.Analyse(ctx, statsRows(rows), req, nil)
+}
+
+// frozenAnswer is a frozen analysis run again on its own rows.
+type frozenAnswer struct {
+	kept     *catalogue.Analysis
+	filter   catalogue.Filter
+	request  stats.Request
+	analysis *stats.Analysis
+	document []byte
+	digest   string
+}
+
+// same says whether the digits are those of the day it was frozen.
+func (f *frozenAnswer) same() bool { return f.digest == f.kept.Digest }
+
+// frozen runs a frozen analysis again. It never changes, so its answer is kept
+// under its name and the version of the program.
+func (a *App) frozen(ctx context.Context, name string) (*frozenAnswer, error) {
+	v, err := a.fits.do(ctx, "frozen|"+name, func(ctx context.Context) (any, error) {
+		kept, err := a.store.Analysis(ctx, name)
+		if err != nil {
+			return nil, err
+		}
+		q, err := url.ParseQuery(kept.Question)
+		if err != nil {
+			return nil, err
+		}
+		out := &frozenAnswer{kept: kept}
+		if out.filter, out.request, err = regressionQuestion(q); err != nil {
+			return nil, err
+		}
+		if out.analysis, err = analyseRows(ctx, kept.Rows, out.request); err != nil {
+			return nil, err
+		}
+		kept.Rows = nil // the answer holds them
+		out.document, out.digest, err = documentOf(out.analysis)
+		return out, err
+	})
+	if err != nil {
+		return nil, err
+	}
+	return v.(*frozenAnswer), nil
+}
+
+func (a *App) analysesPage(c echo.Context) error {
+	list, err := a.store.Analyses(c.Request().Context())
+	if err != nil {
+		return err
+	}
+	return render(c, http.StatusOK, views.Analyses(a.page(c, "Frozen analyses", "regression"), list))
+}
+
+// analysisPage shows a frozen analysis; with a suffix, its document or its
+// rows.
+func (a *App) analysisPage(c echo.Context) error {
+	name, suffix := c.Param("name"), ""
+	for _, s := range []string{".json", ".csv"} {
+		if n, ok := strings.CutSuffix(name, s); ok {
+			name, suffix = n, s
+		}
+	}
+	f, err := a.frozen(c.Request().Context(), name)
+	if err != nil {
+		return err
+	}
+	switch suffix {
+	case ".json":
+		return c.JSONBlob(http.StatusOK, f.document)
+	case ".csv":
+		h := c.Response().Header()
+		h.Set(echo.HeaderContentType, "text/csv; charset=utf-8; header=present")
+		h.Set(echo.HeaderContentDisposition, `attachment; filename="`+f.kept.Name+`.csv"`)
+		return writeUsedRows(c.Response(), f.analysis)
+	}
+	p := a.regressionFrame(c, f.filter, f.request)
+	p.Title = f.kept.Title
+	p.JSON, p.CSV = "/analyses/"+url.PathEscape(name)+".json", "/analyses/"+url.PathEscape(name)+".csv"
+	page := views.RegressionPage{Page: p, Request: f.request, Filter: f.filter, Analysis: f.analysis, Categories: stats.Categories,
+		Frozen: &views.FrozenAnalysis{Analysis: *f.kept, Same: f.same(), Digest: f.digest, Program: Version}}
+	return render(c, http.StatusOK, views.Regression(page))
+}
