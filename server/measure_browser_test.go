@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"os"
 	"os/exec"
+	"slices"
 	"strings"
 	"testing"
 	"time"
@@ -18,7 +19,7 @@ import (
 
 // openBrowser starts a headless Chromium with an empty profile. Everything it
 // says on its console fails the test.
-func openBrowser(t *testing.T) context.Context {
+func openBrowser(t *testing.T, expected ...string) context.Context {
 	t.Helper()
 	path := os.Getenv("CHROMIUM")
 	if path == "" {
@@ -45,7 +46,9 @@ func openBrowser(t *testing.T) context.Context {
 			if err != nil {
 				return
 			}
-			t.Errorf("the console says: %s", m)
+			if !slices.ContainsFunc(expected, func(e string) bool { return strings.Contains(m.String(), e) }) {
+				t.Errorf("the console says: %s", m)
+			}
 		}
 	}()
 	t.Cleanup(func() { cancel(); <-done })

@@ -6,6 +6,8 @@
   const form = document.querySelector("form[data-checks]");
   if (!form || !window.fetch) return;
   const touched = new Set();
+  // The buttons are named "action" and hide the property of that name.
+  const address = form.getAttribute("action");
   let timer = 0, running = null, dirty = false;
 
   const later = () => {
@@ -21,7 +23,7 @@
     body.delete("centreline");
     body.set("action", "check");
     try {
-      const answer = await fetch(form.action, { method: "POST", body, signal: mine.signal, redirect: "error" });
+      const answer = await fetch(address, { method: "POST", body, signal: mine.signal, redirect: "error" });
       if (!answer.ok) return;
       const page = new DOMParser().parseFromString(await answer.text(), "text/html");
       if (running === mine) show(page);

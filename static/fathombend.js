@@ -10,6 +10,7 @@
   const main = document.getElementById("main");
   if (!main) return;
   let asked = null; // the request in flight
+  let shown = location.pathname + location.search; // the view in front of the reader
 
   // Address of what the form says now; empty controls are left out.
   const addressOf = (form) => {
@@ -74,6 +75,7 @@
       const foot = document.querySelector("footer.site"), newFoot = page.querySelector("footer.site");
       if (foot && newFoot) foot.replaceChildren(...newFoot.childNodes);
       if (push) history.pushState({ live: true }, "", answer.url);
+      shown = location.pathname + location.search;
       const again = focus && main.querySelector(focus);
       if (again) {
         again.focus({ preventScroll: true });
@@ -122,7 +124,9 @@
     clearTimeout(wait);
     show(addressOf(e.target), true, e.target);
   });
-  addEventListener("popstate", (e) => { if (e.state && e.state.live || history.state === null) show(location.href, false); });
+  // Going to a place on the same page (#field) is a popstate too, and must not
+  // take away what is typed there.
+  addEventListener("popstate", () => { if (location.pathname + location.search !== shown) show(location.href, false); });
   if (document.querySelector("form[data-live]")) history.replaceState({ live: true }, "", location.href);
 
   // Copy a table as tab-separated text.
