@@ -134,7 +134,7 @@ func openError(path string, err error) error {
 	case sqliteCode(err) == sqlite3.SQLITE_NOTADB:
 		msg += ": it is not a SQLite file"
 	case sqliteCode(err) == sqlite3.SQLITE_CANTOPEN:
-		msg += ": the folder is missing or may not be written"
+		msg += ": the folder is missing or may not be written (a file system that is read only is served with -read-only)"
 	case sqliteCode(err) == sqlite3.SQLITE_READONLY:
 		msg += ": it may not be written; open it read only"
 	case sqliteCode(err) == sqlite3.SQLITE_BUSY:
