@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"math"
 	"net/http"
+	"net/url"
 	"slices"
 
 	"github.com/labstack/echo/v4"
@@ -20,41 +21,61 @@ var meridianParameters = []string{"fold", "colour"}
 
 func (a *App) routesMeridian(e *echo.Echo) {
 	get(e, "/", a.meridian)
+	get(e, "/figures/meridian.svg", a.meridianFigure)
 }
 
 // meridian is the opening page.
 func (a *App) meridian(c echo.Context) error {
-	q, err := params(c)
+	m, q, err := a.meridianQuestion(c)
 	if err != nil {
 		return err
 	}
-	if err := allow(q, meridianParameters, catalogue.FilterParameters); err != nil {
+	m.Page = a.page(c, "Meridian", "meridian")
+	m.Wide = true
+	table := m.Filter.Values()
+	m.CSV, m.JSON, m.GeoJSON = withQuery("/systems.csv", table), withQuery("/systems.json", table), withQuery("/systems.geojson", table)
+	m.FigureHref = withQuery("/figures/meridian.svg", withoutEmpty(q))
+	return render(c, http.StatusOK, views.Meridian(m))
+}
+
+// meridianFigure is the drawing alone, as a file.
+func (a *App) meridianFigure(c echo.Context) error {
+	m, _, err := a.meridianQuestion(c)
+	if err != nil {
 		return err
+	}
+	m.InventedRows = a.invented(c.Request().Context())
+	return writeFigureFile(c, "svg", m.Standalone())
+}
+
+// meridianQuestion reads the address and answers it, without the frame.
+func (a *App) meridianQuestion(c echo.Context) (m views.MeridianPage, q url.Values, err error) {
+	q, err = params(c)
+	if err != nil {
+		return m, q, err
+	}
+	if err := allow(q, meridianParameters, catalogue.FilterParameters); err != nil {
+		return m, q, err
 	}
 	f, err := filterOf(q)
 	if err != nil {
-		return err
+		return m, q, err
 	}
 	fold, err := oneOf(q, "fold", "no", []string{"no", "yes"})
 	if err != nil {
-		return err
+		return m, q, err
 	}
 	colour, err := oneOf(q, "colour", "slope", views.MeridianColours)
 	if err != nil {
-		return err
+		return m, q, err
 	}
-	ctx := c.Request().Context()
-	held, err := a.meridianAnswer(ctx, f)
+	held, err := a.meridianAnswer(c.Request().Context(), f)
 	if err != nil {
-		return err
+		return m, q, err
 	}
-	m := *held
-	m.Page = a.page(c, "Meridian", "meridian")
-	m.Wide = true
+	m = *held
 	m.Filter, m.Folded, m.Colour = f, fold == "yes", colour
-	table := f.Values()
-	m.CSV, m.JSON, m.GeoJSON = withQuery("/systems.csv", table), withQuery("/systems.json", table), withQuery("/systems.geojson", table)
-	return render(c, http.StatusOK, views.Meridian(m))
+	return m, q, nil
 }
 
 // meridianAnswer computes what the opening page shows of one filter, once a

@@ -3,6 +3,9 @@ package main
 import (
 	"context"
 	"encoding/json"
+	"encoding/xml"
+	"errors"
+	"io"
 	"net/http"
 	"path/filepath"
 	"strconv"
@@ -69,6 +72,44 @@ func TestMeridianTellsAncientAndRivers(t *testing.T) {
 	}
 	if !strings.Contains(d.Find("figcaption").Text(), "Invented data") {
 		t.Error("the caption says that the data are invented")
+	}
+}
+
+// TestMeridianFile: the drawing alone is well-formed, with its own colours and
+// the word that its data are invented.
+func TestMeridianFile(t *testing.T) {
+	v := newDemoSite(t).visitor()
+	a := v.get("/figures/meridian.svg?colour=grade&fold=yes").is(http.StatusOK)
+	d := xml.NewDecoder(strings.NewReader(a.body))
+	ribbons := 0
+	for {
+		tok, err := d.Token()
+		if errors.Is(err, io.EOF) {
+			break
+		}
+		if err != nil {
+			t.Fatal(err)
+		}
+		if e, ok := tok.(xml.StartElement); ok && e.Name.Local == "a" {
+			t.Fatal("a file has no links")
+		} else if ok && e.Name.Local == "g" {
+			ribbons++
+		}
+	}
+	if ribbons < systemsTotal(t, v, "") || !strings.Contains(a.body, "Invented data") || !strings.Contains(a.body, "<style>") {
+		t.Errorf("%d groups", ribbons)
+	}
+}
+
+// TestFigureFilesServed: every figure comes as drawing, picture and document.
+func TestFigureFilesServed(t *testing.T) {
+	v := newDemoSite(t).visitor()
+	for suffix, magic := range map[string]string{"svg": "<?xml", "png": "\x89PNG", "pdf": "%PDF"} {
+		for _, q := range []string{"regression." + suffix + "?model=linear:coriolis&resamples=199&permutations=99", "expectation." + suffix + "?palaeolatitude=30&age=70&draws=200"} {
+			if a := v.get("/figures/" + q).is(http.StatusOK); !strings.HasPrefix(a.body, magic) {
+				t.Errorf("%s: %.20q", q, a.body)
+			}
+		}
 	}
 }
 

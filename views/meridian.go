@@ -25,6 +25,8 @@ type MeridianPage struct {
 	Expected []MeridianExpected // at 0, 15 ... 75 degrees
 	Response string             // which sinuosity is expected, in words
 
+	FigureHref   string         // the drawing as a file
+	plain        bool           // drawn as a file: no links
 	Spin         []MeridianSpin // one palaeolatitude at several ages, under the Coriolis explanation alone
 	SpinLatitude float64
 }
