@@ -134,19 +134,23 @@ func (s *Store) Recomputation(ctx context.Context, name string) (*Recomputation,
 // of its system; the same rule as for the windows of a row.
 const standsFor = `coalesce(l.measurement_id, (SELECT CASE count(*) WHEN 1 THEN min(o.id) END FROM measurements o WHERE o.system_id = l.system_id))`
 
-// LinesToMeasure returns the next lines a recomputation has not reached, at
-// most limit of them, in the order in which they were stored.
-func (s *Store) LinesToMeasure(ctx context.Context, name string, limit int) ([]LineToMeasure, error) {
+// linesBytes is about how much of lines is held at once, bytes.
+const linesBytes = 16 << 20
+
+// LinesToMeasure returns the next lines a recomputation has not reached, past
+// the line numbered after, in the order in which they were stored: at most
+// limit of them, and fewer where they are long.
+func (s *Store) LinesToMeasure(ctx context.Context, name string, after int64, limit int) ([]LineToMeasure, error) {
 	rows, err := s.r.QueryContext(ctx, `SELECT l.id, s.slug, coalesce(m.measurement, ''), l.line, l.settings, l.sinuosities, m.sinuosity, coalesce(m.sinuosity_kind, ''), m.channel_width_m
 		FROM recomputations r JOIN centrelines l ON l.id <= r.last_line JOIN systems s ON s.id = l.system_id LEFT JOIN measurements m ON m.id = `+standsFor+`
-		WHERE r.name = ? AND NOT EXISTS (SELECT 1 FROM recomputed_values v WHERE v.recomputation = r.name AND v.centreline_id = l.id)
-		ORDER BY l.id LIMIT ?`, name, limit)
+		WHERE r.name = ? AND l.id > ? AND NOT EXISTS (SELECT 1 FROM recomputed_values v WHERE v.recomputation = r.name AND v.centreline_id = l.id)
+		ORDER BY l.id LIMIT ?`, name, after, limit)
 	if err != nil {
 		return nil, fault("lines", err)
 	}
 	defer rows.Close()
 	var out []LineToMeasure
-	for rows.Next() {
+	for bytes := 0; bytes < linesBytes && rows.Next(); {
 		var l LineToMeasure
 		var windows string
 		if err := rows.Scan(&l.ID, &l.System, &l.Measured, &l.Line, &l.Settings, &windows, &l.Recorded, &l.RecordedKind, &l.WidthM); err != nil {
@@ -155,7 +159,7 @@ func (s *Store) LinesToMeasure(ctx context.Context, name string, limit int) ([]L
 		if err := json.Unmarshal([]byte(windows), &l.Sinuosities); err != nil {
 			return nil, fault("lines", err)
 		}
-		out = append(out, l)
+		out, bytes = append(out, l), bytes+len(l.Line)
 	}
 	return out, fault("lines", rows.Err())
 }

@@ -31,7 +31,7 @@ func TestRecomputationRunsStopsAndGoesOn(t *testing.T) {
 	if err != nil || name != "windows-of-5-km" {
 		t.Fatal(name, err)
 	}
-	todo, err := s.LinesToMeasure(ctx, name, 10)
+	todo, err := s.LinesToMeasure(ctx, name, 0, 10)
 	if err != nil || len(todo) != 3 {
 		t.Fatalf("%d lines, %v", len(todo), err)
 	}
@@ -72,7 +72,7 @@ func TestRecomputationRunsStopsAndGoesOn(t *testing.T) {
 	if err := s.ResumeRecomputation(ctx, name); err != nil {
 		t.Fatal(err)
 	}
-	if todo, err := s.LinesToMeasure(ctx, name, 10); err != nil || len(todo) != 2 {
+	if todo, err := s.LinesToMeasure(ctx, name, 0, 10); err != nil || len(todo) != 2 {
 		t.Fatalf("%d lines left, %v", len(todo), err)
 	}
 	refused := RecomputedLine{Line: todo[2].ID, System: todo[2].System, Settings: `{}`, Remark: "no two different vertices"}
@@ -99,7 +99,7 @@ func TestRecomputationStays(t *testing.T) {
 	if err := s.DiscardRecomputation(ctx, name); CodeOf(err) != Conflict {
 		t.Errorf("a running one was discarded: %v", err)
 	}
-	todo, _ := s.LinesToMeasure(ctx, name, 10)
+	todo, _ := s.LinesToMeasure(ctx, name, 0, 10)
 	var all []RecomputedLine
 	for _, l := range todo {
 		all = append(all, RecomputedLine{Line: l.ID, System: l.System, Settings: `{}`, New: Levels{Reach: Num(1.2)}})

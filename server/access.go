@@ -70,6 +70,9 @@ var access = map[string]role{
 	"POST /review/:id":              curator,
 	"GET /review/:id/edit":          curator,
 	"POST /review/:id/edit":         curator,
+	"GET /recompute":                curator,
+	"POST /recompute":               curator,
+	"POST /recompute/:name":         curator,
 
 	// These take their question in the body and change nothing.
 	"POST /regression/freeze":       contributor,

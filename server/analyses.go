@@ -54,7 +54,7 @@ func (a *App) freeze(c echo.Context) error {
 	if err != nil {
 		return err
 	}
-	rows, err := a.store.Rows(ctx, fitFilter(f, req.Group))
+	rows, err := a.fitRows(ctx, fitFilter(f, req.Group), &req)
 	if err != nil {
 		return err
 	}
@@ -111,6 +111,9 @@ func (a *App) frozen(ctx context.Context, name string) (*frozenAnswer, error) {
 		}
 		out := &frozenAnswer{kept: kept}
 		if out.filter, out.request, err = regressionQuestion(q); err != nil {
+			return nil, err
+		}
+		if err := a.recomputedAs(ctx, &out.request); err != nil {
 			return nil, err
 		}
 		if out.analysis, err = analyseRows(ctx, kept.Rows, out.request); err != nil {

@@ -15,18 +15,19 @@ import (
 // App is the running web application: the open catalogue, the sessions and
 // the caches. Handlers are its methods.
 type App struct {
-	store    *catalogue.Store
-	sessions *scs.SessionManager
-	log      *slog.Logger
-	readOnly bool
-	fits     *cache
-	jobs     jobs // long fits on their way
-	metrics  *metrics
-	backups  *backups // nil = none scheduled
-	began    time.Time
-	routes   map[string]bool // patterns of every route
-	secure   bool            // reached over TLS, see behind
-	proxied  bool
+	store      *catalogue.Store
+	sessions   *scs.SessionManager
+	log        *slog.Logger
+	readOnly   bool
+	fits       *cache
+	jobs       jobs // long fits on their way
+	recomputes *recomputer
+	metrics    *metrics
+	backups    *backups // nil = none scheduled
+	began      time.Time
+	routes     map[string]bool // patterns of every route
+	secure     bool            // reached over TLS, see behind
+	proxied    bool
 
 	// onListen run once, after the program listens: base is the address a
 	// person can open, say the console. For words that need the address.
@@ -37,6 +38,7 @@ type App struct {
 func newApp(store *catalogue.Store, log *slog.Logger, readOnly bool) *App {
 	a := &App{store: store, log: log, readOnly: readOnly, fits: newCache(256), began: time.Now()}
 	a.metrics = newMetrics(a)
+	a.recomputes = newRecomputer(store, log)
 	a.sessions = newSessions(store, log, readOnly)
 	return a
 }
@@ -57,6 +59,7 @@ func (a *App) router() *echo.Echo {
 	a.routesAccounts(e)
 	a.routesContribute(e)
 	a.routesReview(e)
+	a.routesRecompute(e)
 	a.routesMethods(e)
 	a.routesStatus(e)
 	a.routesChanges(e)

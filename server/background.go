@@ -26,8 +26,8 @@ func (cfg serveConfig) secured(l net.Listener) (net.Listener, error) {
 // sweepEvery is how often sessions that have ended are deleted.
 const sweepEvery = time.Hour
 
-// inBackground starts what runs beside the requests: scheduled backups, and the
-// sweep of ended sessions. done is closed when all of it has stopped.
+// inBackground starts what runs beside the requests: scheduled backups, the
+// sweep of ended sessions, and recomputations left unfinished. done is closed when all of it has stopped.
 func (a *App) inBackground(cfg serveConfig) (done <-chan struct{}, stop func(), err error) {
 	ctx, stop := context.WithCancel(context.Background())
 	var running sync.WaitGroup
@@ -39,6 +39,11 @@ func (a *App) inBackground(cfg serveConfig) (done <-chan struct{}, stop func(), 
 		running.Go(func() { a.backups.run(ctx) })
 	}
 	if !cfg.ReadOnly {
+		a.recomputes.resume()
+		running.Go(func() {
+			<-ctx.Done()
+			a.recomputes.halt()
+		})
 		running.Go(func() { a.sweep(ctx) })
 	}
 	ended := make(chan struct{})

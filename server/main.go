@@ -31,6 +31,7 @@ func commands() []command {
 		{"import", "read a CSV of measurements into a catalogue", runImport},
 		{"export", "write measurements as CSV", runExport},
 		{"measure", "measure the planform of centrelines", runMeasure},
+		{"recompute", "measure every stored centreline again", runRecompute},
 		{"regress", "fit regressions and print them", runRegress},
 		{"expect", "answer a CSV of targets", runExpect},
 		{"expectation", "the same as expect", runExpect},

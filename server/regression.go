@@ -50,6 +50,9 @@ func (a *App) regressionPage(c echo.Context) error {
 	if page.Facets, err = a.facets(ctx, f); err != nil {
 		return err
 	}
+	if page.Recomputations, err = a.finishedRecomputations(ctx); err != nil {
+		return err
+	}
 	var working *job
 	page.Analysis, working, err = a.analyseWatched(c, f, req)
 	switch {
@@ -90,6 +93,9 @@ func (a *App) regressionRefused(c echo.Context, q url.Values, err error) error {
 		RefusedField: p.Field, Refused: p.Detail}
 	page.JSON, page.CSV = "", ""
 	if page.Facets, ferr = a.facets(c.Request().Context(), f); ferr != nil {
+		return ferr
+	}
+	if page.Recomputations, ferr = a.finishedRecomputations(c.Request().Context()); ferr != nil {
 		return ferr
 	}
 	return render(c, http.StatusBadRequest, views.Regression(page))

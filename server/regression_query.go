@@ -14,7 +14,7 @@ import (
 // in the order they are listed to users and stand in an address.
 var regressionParameters = []string{
 	"model", "joint", "interaction", "group", "response", "measured_line", "scale", "k", "cluster", "interval", "level",
-	"resamples", "permutations", "seed", "time", "pick", "measurement_error", "thin_straight", "thin_sinuous",
+	"resamples", "permutations", "seed", "time", "pick", "measurement_error", "thin_straight", "thin_sinuous", "recomputed",
 }
 
 var yesNo = []string{"no", "yes"}
@@ -60,6 +60,7 @@ func regressionRequest(q url.Values) (stats.Request, error) {
 	if err := readRegressionChoices(q, &r); err != nil {
 		return r, err
 	}
+	r.Recomputed = strings.TrimSpace(q.Get("recomputed"))
 	return r, readRegressionNumbers(q, &r)
 }
 
@@ -215,6 +216,7 @@ func regressionValues(r stats.Request) url.Values {
 	}
 	set("thin_straight", short(r.ThinStraight), "0")
 	set("thin_sinuous", short(r.ThinSinuous), "0")
+	set("recomputed", r.Recomputed, "")
 	return q
 }
 

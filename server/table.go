@@ -80,7 +80,7 @@ func (a *App) analyse(ctx context.Context, f catalogue.Filter, req stats.Request
 	f = fitFilter(f, req.Group)
 	req.Workers = runtime.GOMAXPROCS(0)
 	v, err := a.fits.do(ctx, key, func(ctx context.Context) (any, error) {
-		rows, err := a.store.Rows(ctx, f)
+		rows, err := a.fitRows(ctx, f, &req)
 		if err != nil {
 			return nil, err
 		}

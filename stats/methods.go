@@ -18,6 +18,9 @@ func (s *study) methodsText(a *Analysis) string {
 	say("%s, %s unless the form sets its own scale, was regressed on %s in %s from %s and %s (%s).",
 		upperFirst(response), scale, list(mapSlice(predictorsIn(r), nameOf)), plural(a.Rows, "row", "rows"), plural(a.Systems, "system", "systems"),
 		plural(a.Clusters, clusterOne(r.Cluster), clusterNoun(r.Cluster)), droppedText(a.Dropped))
+	if r.Recomputed != "" {
+		say("Sinuosity was measured anew on the stored centrelines, all with one set of settings (recomputation %s%s).", r.Recomputed, prefixed(": ", r.RecomputedAs))
+	}
 	if a.InventedRows > 0 {
 		say("%s invented.", plural(a.InventedRows, "row is", "rows are"))
 	}
@@ -60,6 +63,13 @@ func (s *study) methodsText(a *Analysis) string {
 		say("%s", x.Text)
 	}
 	return strings.TrimSpace(b.String())
+}
+
+func prefixed(prefix, s string) string {
+	if s == "" {
+		return ""
+	}
+	return prefix + s
 }
 
 func predictorsIn(r *Request) []string {

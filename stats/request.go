@@ -26,6 +26,8 @@ var (
 	IntervalKinds = []string{"studentised", "cr2", "bca", "percentile"}
 	Times         = []string{"of_deposition", "present"}
 	Picks         = []string{"all", "best"}
+	// RecomputedResponses are the responses a centreline measured again gives.
+	RecomputedResponses = []string{"peak", "p90", "mean", "reach", "standardised_peak"}
 )
 
 // setsOwnScale tells the forms whose name fixes the response scale.
@@ -48,6 +50,9 @@ func (r Request) Validate() error {
 		if !slices.Contains(c.choices, c.value) {
 			return refuse(c.parameter, "%q is not one of its values. Expected one of: %s", c.value, strings.TrimPrefix(strings.Join(c.choices, ", "), ", "))
 		}
+	}
+	if r.Recomputed != "" && !slices.Contains(RecomputedResponses, r.Response) {
+		return refuse("response", "%q cannot be taken from a recomputation. Expected one of: %s", r.Response, strings.Join(RecomputedResponses, ", "))
 	}
 	if err := r.validateNumbers(); err != nil {
 		return err
@@ -145,7 +150,7 @@ func (r Request) settings() map[string]any {
 	if r.Interaction[0] != "" {
 		interaction = r.Interaction[0] + "," + r.Interaction[1]
 	}
-	return map[string]any{
+	out := map[string]any{
 		"model": models, "joint": strings.Join(r.Joint, ","), "interaction": interaction, "group": r.Group,
 		"response": r.Response, "measured_line": r.MeasuredLine, "scale": r.Scale, "k": r.K,
 		"cluster": r.Cluster, "interval": r.Interval, "level": r.Level,
@@ -153,6 +158,10 @@ func (r Request) settings() map[string]any {
 		"time": r.Time, "pick": r.Pick, "measurement_error": yes[r.MeasurementError],
 		"thin_straight": r.ThinStraight, "thin_sinuous": r.ThinSinuous,
 	}
+	if r.Recomputed != "" {
+		out["recomputed"] = r.Recomputed
+	}
+	return out
 }
 
 func finite(x float64) bool { return !math.IsNaN(x) && !math.IsInf(x, 0) }

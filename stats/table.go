@@ -95,6 +95,9 @@ func wantedResponse(r *Row, req *Request) derived {
 		return derived{why: "measured along another line than " + req.MeasuredLine}
 	}
 	p := r.Sinuosity
+	if req.Recomputed != "" && !finite(p) {
+		return derived{why: "no centreline that was measured again"}
+	}
 	switch req.Response {
 	case "any":
 	case "standardised_peak":
@@ -206,7 +209,7 @@ func consider(rows []Row, req *Request) []UsedRow {
 			}
 		}
 	}
-	if req.Response == "standardised_peak" {
+	if req.Response == "standardised_peak" || req.Recomputed != "" {
 		dropSameWindows(used)
 	}
 	if req.Pick == "best" {

@@ -74,6 +74,9 @@ type Request struct {
 	MeasurementError bool
 	ThinStraight     float64 // fraction 0..1
 	ThinSinuous      float64
+	// Recomputed names the recomputation that gave the rows' sinuosities and
+	// windows, "" = they are as stored; RecomputedAs is its settings in words.
+	Recomputed, RecomputedAs string
 
 	Workers int // cores to use; no effect on any number
 }

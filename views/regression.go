@@ -14,15 +14,16 @@ import (
 // was refused; Refused then says why.
 type RegressionPage struct {
 	Page
-	Analysis     *stats.Analysis
-	Request      stats.Request
-	Filter       catalogue.Filter
-	Facets       []catalogue.Facet
-	Categories   []string // that may stand in a joint model
-	Refused      string
-	RefusedField string
-	Progress     float64 // of a fit on its way, 0..1
-	Frozen       *FrozenAnalysis
+	Analysis       *stats.Analysis
+	Request        stats.Request
+	Filter         catalogue.Filter
+	Facets         []catalogue.Facet
+	Categories     []string // that may stand in a joint model
+	Refused        string
+	RefusedField   string
+	Recomputations []string // finished ones, by name
+	Progress       float64  // of a fit on its way, 0..1
+	Frozen         *FrozenAnalysis
 }
 
 // FrozenAnalysis is an analysis kept under a name and run again.

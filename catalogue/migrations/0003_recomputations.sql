@@ -28,8 +28,8 @@ CREATE TABLE recomputed_values (
   measurement TEXT NOT NULL, -- the measurement the line stands for, '' if none
   recorded REAL, -- sinuosity in the record of that measurement, NULL without one
   recorded_kind TEXT NOT NULL, -- and its kind
-  old_reach REAL, -- with the settings stored beside the line, NULL where those give nothing
-  old_mean REAL, -- mean of the stored windows
+  old_reach REAL, -- as recorded, where the record is of the reach; the old levels are NULL where unknown
+  old_mean REAL, -- mean of the windows stored beside the line; without any, as recorded, and so for the next two
   old_p90 REAL, -- 90th percentile of the stored windows
   old_peak REAL, -- largest of the stored windows
   old_standardised REAL, -- expected largest of k of the stored windows, with the k of this recomputation
