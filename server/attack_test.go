@@ -97,7 +97,9 @@ func TestHeaderInjection(t *testing.T) {
 func TestHugeQueriesAndManyValues(t *testing.T) {
 	s := newDemoSite(t)
 	v := s.visitor()
-	many := func(name, value string, n int) string { return strings.TrimSuffix(strings.Repeat(name+"="+value+"&", n), "&") }
+	many := func(name, value string, n int) string {
+		return strings.TrimSuffix(strings.Repeat(name+"="+value+"&", n), "&")
+	}
 	for what, q := range map[string]string{
 		"3,000 values of one filter": many("kind", "river", 3000), "10,000 empty ones": many("a", "", 10_000), "one long text": "q=" + strings.Repeat("x", 40_000),
 		"an endless query": "q=" + strings.Repeat("x", 200_000), "many names": strings.Repeat("a&", 20_000), "nested escapes": "q=" + strings.Repeat("%25", 10_000),
