@@ -44,7 +44,7 @@ var licences = []string{"CC BY 4.0", "CC0 1.0"}
 func formColumn(c catalogue.Column) catalogue.Column {
 	switch c.Name {
 	case "licence":
-		c.Choices, c.Required = licences, true
+		c.Kind, c.Choices, c.Required = catalogue.KindChoice, licences, true
 		c.Help = "You agree that the record is published under it."
 	case "longitude_deg":
 		c.Help += " Degrees and minutes are read too, as 12 34.5 W."
@@ -92,9 +92,20 @@ func (r *record) need() {
 	r.checkedAll = true
 	for _, c := range formColumns {
 		if c.Required && strings.TrimSpace(r.typed.Get(c.Name)) == "" && r.errors[c.Name] == "" {
-			r.errors[c.Name] = sentence("this is needed", c.Expected())
+			r.errors[c.Name] = missing(c)
 		}
 	}
+}
+
+// missing says that a needed field is empty.
+func missing(c catalogue.Column) string {
+	switch {
+	case slices.Contains(c.Choices, "unknown"):
+		return "Choose one; unknown is an answer too."
+	case len(c.Choices) > 0:
+		return "Choose one."
+	}
+	return sentence("this is needed", c.Expected())
 }
 
 // take sorts the findings of the checks: hard ones are errors beside their

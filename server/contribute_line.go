@@ -234,6 +234,14 @@ func (r *record) fillFrom(l *formLine) (filled []string) {
 			set(column, strconv.FormatFloat(v, 'g', -1, 64))
 		}
 	}
+	// Places and lengths in whole decimetres, 1e-6 degrees being one: digits
+	// beyond are the computer's. Sinuosity and slope keep theirs, so that the
+	// stored line gives the stored number.
+	fixed := func(column string, v float64, decimals int) {
+		if scale := math.Pow10(decimals); isFinite(v) {
+			number(column, math.Round(v*scale)/scale)
+		}
+	}
 	given := func(column string, v *float64) {
 		if v != nil {
 			number(column, *v)
@@ -252,27 +260,27 @@ func (r *record) fillFrom(l *formLine) (filled []string) {
 		set("grade", gradeOf(m))
 		set("extraction", "centreline")
 		if kind != "reach" {
-			number("window_m", m.WindowLengthM)
+			fixed("window_m", m.WindowLengthM, 1)
 			number("windows", float64(len(m.Windows)))
 		}
 	}
 	set("valley_line", "end_to_end")
-	number("reach_length_m", m.ChannelLengthM)
-	number("vertex_spacing_m", m.MedianSpacingM)
+	fixed("reach_length_m", m.ChannelLengthM, 1)
+	fixed("vertex_spacing_m", m.MedianSpacingM, 1)
 	given("valley_slope", m.ValleySlope)
 	given("channel_slope", m.ChannelSlope)
 	if p := m.Place; p != nil {
-		number("latitude_deg", p.MiddleLat)
-		number("longitude_deg", p.MiddleLon)
-		number("start_latitude_deg", p.StartLat)
-		number("start_longitude_deg", p.StartLon)
-		number("end_latitude_deg", p.EndLat)
-		number("end_longitude_deg", p.EndLon)
+		fixed("latitude_deg", p.MiddleLat, 6)
+		fixed("longitude_deg", p.MiddleLon, 6)
+		fixed("start_latitude_deg", p.StartLat, 6)
+		fixed("start_longitude_deg", p.StartLon, 6)
+		fixed("end_latitude_deg", p.EndLat, 6)
+		fixed("end_longitude_deg", p.EndLon, 6)
 	}
 	if t := m.Typical; t != nil {
-		number("wavelength_m", t.WavelengthM)
-		number("amplitude_m", t.AmplitudeM)
-		number("radius_m", t.RadiusM)
+		fixed("wavelength_m", t.WavelengthM, 1)
+		fixed("amplitude_m", t.AmplitudeM, 1)
+		fixed("radius_m", t.RadiusM, 1)
 	}
 	return filled
 }
