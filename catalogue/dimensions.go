@@ -37,7 +37,11 @@ func (s *Store) DimensionQuantiles(ctx context.Context, f Filter) ([]Dimension, 
 		}
 		query += d.expr
 	}
-	rows, err := s.r.QueryContext(ctx, query+fromRows+w.String(), w.args...)
+	q, err := at(ctx, s.r, f.Release)
+	if err != nil {
+		return nil, fault("dimensions", err)
+	}
+	rows, err := q.QueryContext(ctx, query+fromRows+w.String(), w.args...)
 	if err != nil {
 		return nil, fault("dimensions", err)
 	}

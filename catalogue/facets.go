@@ -21,10 +21,14 @@ func (s *Store) Facets(ctx context.Context, f Filter) ([]Facet, error) {
 	var ix *facetIndex
 	var under map[int64]bool // rows under the other parameters, nil = all
 	err := s.read(ctx, func(tx *sql.Tx) (err error) {
-		if ix, err = s.facets.current(ctx, tx); err != nil {
+		q, err := at(ctx, tx, f.Release)
+		if err != nil {
 			return err
 		}
-		under, err = rowsWithoutChoices(ctx, tx, f)
+		if ix, err = s.facets.of(ctx, q, f.Release); err != nil {
+			return err
+		}
+		under, err = rowsWithoutChoices(ctx, q, f)
 		return err
 	})
 	if err != nil {
@@ -39,10 +43,14 @@ func (s *Store) Facets(ctx context.Context, f Filter) ([]Facet, error) {
 
 // rowsWithoutChoices finds the measurements under all of the filter but its
 // choices; nil when there is nothing else in it.
-func rowsWithoutChoices(ctx context.Context, tx *sql.Tx, f Filter) (map[int64]bool, error) {
+func rowsWithoutChoices(ctx context.Context, tx querier, f Filter) (map[int64]bool, error) {
 	f.Choices = nil
+	alone := Filter{Release: f.Release}
 	w, err := f.condition()
-	if err != nil || len(w.parts) == 0 {
+	if err != nil {
+		return nil, err
+	}
+	if all, err := alone.condition(); err != nil || len(w.parts) == len(all.parts) {
 		return nil, err
 	}
 	rows, err := tx.QueryContext(ctx, "SELECT m.id"+fromRows+w.String(), w.args...)
@@ -64,21 +72,58 @@ func rowsWithoutChoices(ctx context.Context, tx *sql.Tx, f Filter) (map[int64]bo
 // facetIndex holds the choices of every accepted measurement as small numbers.
 type facetIndex struct {
 	revision int64
+	release  string
 	ids      []int64   // measurements, those of one system together
 	systems  []int64   // their systems
 	codes    [][]int32 // per choice parameter and measurement, an index into texts
 	texts    [][]string
 }
 
-// facetIndexes keeps the index of the latest revision.
+// facetIndexes keeps the index of the latest revision, and those of the
+// releases asked for last.
 type facetIndexes struct {
-	mu   sync.Mutex
-	last *facetIndex
+	mu     sync.Mutex
+	last   *facetIndex
+	frozen []*facetIndex // newest use last
+}
+
+// maxFrozenFacets is how many indexes of releases are kept: each holds some 60
+// bytes a measurement.
+const maxFrozenFacets = 3
+
+// of returns the index of a release, or, without a name, of the catalogue as
+// it is.
+func (x *facetIndexes) of(ctx context.Context, q querier, release string) (*facetIndex, error) {
+	if release == "" {
+		return x.current(ctx, q)
+	}
+	x.mu.Lock()
+	defer x.mu.Unlock()
+	var ix *facetIndex
+	x.frozen = slices.DeleteFunc(x.frozen, func(have *facetIndex) bool {
+		found := strings.EqualFold(have.release, release)
+		if found {
+			ix = have
+		}
+		return found
+	})
+	if ix == nil {
+		var err error
+		if ix, err = readFacetIndex(ctx, q); err != nil {
+			return nil, err
+		}
+		ix.release = release
+	}
+	x.frozen = append(x.frozen, ix)
+	if len(x.frozen) > maxFrozenFacets {
+		x.frozen = slices.Delete(x.frozen, 0, 1)
+	}
+	return ix, nil
 }
 
 // current returns the index as of the snapshot of tx, reading it anew when the
 // catalogue has changed.
-func (x *facetIndexes) current(ctx context.Context, tx *sql.Tx) (*facetIndex, error) {
+func (x *facetIndexes) current(ctx context.Context, tx querier) (*facetIndex, error) {
 	var revision int64
 	if err := tx.QueryRowContext(ctx, `SELECT coalesce(max(id), 0) FROM revisions`).Scan(&revision); err != nil {
 		return nil, err
@@ -99,7 +144,7 @@ func (x *facetIndexes) current(ctx context.Context, tx *sql.Tx) (*facetIndex, er
 	return ix, nil
 }
 
-func readFacetIndex(ctx context.Context, tx *sql.Tx) (*facetIndex, error) {
+func readFacetIndex(ctx context.Context, tx querier) (*facetIndex, error) {
 	n := len(ChoiceParameters)
 	ix := &facetIndex{codes: make([][]int32, n), texts: make([][]string, n)}
 	exprs := make([]string, n)

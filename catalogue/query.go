@@ -29,10 +29,11 @@ func (w *where) String() string {
 
 // condition turns the filter into SQL.
 func (f *Filter) condition() (*where, error) {
-	if f.Release != "" {
-		return nil, &Error{Code: Invalid, Field: "release", Message: fmt.Sprintf("there is no release named %q", f.Release), Expected: "leave it out: no release has been made yet"}
-	}
 	w := &where{}
+	if f.Release != "" {
+		// True of every row of a release; see frozenWith.
+		w.add("m.release = ? COLLATE NOCASE", f.Release)
+	}
 	for _, name := range ChoiceParameters {
 		values := f.Choices[name]
 		if len(values) == 0 {
@@ -54,17 +55,17 @@ func (f *Filter) condition() (*where, error) {
 		}
 	}
 	if f.Text != "" {
-		w.addText(f.Text)
+		w.addText(f.Text, f.Release)
 	}
 	if f.BBox != nil {
-		w.addBox(*f.BBox)
+		w.addBox(*f.BBox, f.Release)
 	}
 	return w, nil
 }
 
 // addText asks for all words of the text, the last letters of each open. Every
 // word is quoted: nothing of it is MATCH syntax.
-func (w *where) addText(text string) {
+func (w *where) addText(text, release string) {
 	words := strings.FieldsFunc(text, func(r rune) bool { return !unicode.IsLetter(r) && !unicode.IsNumber(r) && !unicode.IsMark(r) })
 	if len(words) == 0 {
 		w.add("0")
@@ -73,17 +74,25 @@ func (w *where) addText(text string) {
 	for i, x := range words {
 		words[i] = `"` + x + `"*`
 	}
-	w.add("m.id IN (SELECT rowid FROM search WHERE search MATCH ?)", strings.Join(words, " "))
+	match := strings.Join(words, " ")
+	if release != "" {
+		w.add("m.version IN (SELECT rowid FROM frozen_search WHERE frozen_search MATCH ?)", match)
+		return
+	}
+	w.add("m.id IN (SELECT rowid FROM search WHERE search MATCH ?)", match)
 }
 
 // addBox preselects with the R*Tree, whose 32-bit boxes are rounded outwards,
 // and decides with the doubles.
-func (w *where) addBox(b BBox) {
+func (w *where) addBox(b BBox, release string) {
 	const lon = "(m.longitude_deg - 360 * (m.longitude_deg > 180))"
 	w.add("m.latitude_deg BETWEEN ? AND ?", b.South, b.North)
+	indexed := release == "" // the R*Tree is of the rows as they are now
 	if b.West > b.East {
-		w.add("m.id IN (SELECT id FROM places WHERE north >= ? AND south <= ? AND east >= ? UNION ALL SELECT id FROM places WHERE north >= ? AND south <= ? AND west <= ?)",
-			b.South, b.North, b.West, b.South, b.North, b.East)
+		if indexed {
+			w.add("m.id IN (SELECT id FROM places WHERE north >= ? AND south <= ? AND east >= ? UNION ALL SELECT id FROM places WHERE north >= ? AND south <= ? AND west <= ?)",
+				b.South, b.North, b.West, b.South, b.North, b.East)
+		}
 		w.add("("+lon+" >= ? OR "+lon+" <= ?)", b.West, b.East)
 		return
 	}
@@ -91,10 +100,12 @@ func (w *where) addBox(b BBox) {
 	box := "m.id IN (SELECT id FROM places WHERE north >= ? AND south <= ? AND east >= ? AND west <= ?"
 	exact := "(" + lon + " BETWEEN ? AND ?"
 	if b.West == -180 || b.East == 180 {
-		w.add(box+" UNION SELECT id FROM places WHERE north >= ? AND south <= ? AND (east >= 180 OR west <= -180))",
-			b.South, b.North, b.West, b.East, b.South, b.North)
+		if indexed {
+			w.add(box+" UNION SELECT id FROM places WHERE north >= ? AND south <= ? AND (east >= 180 OR west <= -180))",
+				b.South, b.North, b.West, b.East, b.South, b.North)
+		}
 		exact += " OR abs(" + lon + ") = 180"
-	} else {
+	} else if indexed {
 		w.add(box+")", b.South, b.North, b.West, b.East)
 	}
 	w.add(exact+")", b.West, b.East)

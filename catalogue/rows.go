@@ -104,7 +104,11 @@ func (s *Store) EachRow(ctx context.Context, f Filter, visit func(Row) error) er
 	if err != nil {
 		return err
 	}
-	return fault("rows", eachRow(ctx, s.r, w.String()+order, w.args, func(r *Row, _ rowMeta) error { return visit(*r) }))
+	q, err := at(ctx, s.r, f.Release)
+	if err != nil {
+		return fault("rows", err)
+	}
+	return fault("rows", eachRow(ctx, q, w.String()+order, w.args, func(r *Row, _ rowMeta) error { return visit(*r) }))
 }
 
 // Rows returns all accepted measurements under the filter (no paging), sorted;
@@ -137,11 +141,15 @@ func (s *Store) RowsPage(ctx context.Context, f Filter) (rows []Row, total int, 
 	}
 	limit, offset := f.paging()
 	err = s.read(ctx, func(tx *sql.Tx) error {
-		if err := tx.QueryRowContext(ctx, "SELECT count(*)"+fromRows+w.String(), w.args...).Scan(&total); err != nil {
+		q, err := at(ctx, tx, f.Release)
+		if err != nil {
+			return err
+		}
+		if err := q.QueryRowContext(ctx, "SELECT count(*)"+fromRows+w.String(), w.args...).Scan(&total); err != nil {
 			return err
 		}
 		args := append(append([]any{}, w.args...), limit, offset)
-		return eachRow(ctx, tx, w.String()+order+" LIMIT ? OFFSET ?", args, func(r *Row, _ rowMeta) error {
+		return eachRow(ctx, q, w.String()+order+" LIMIT ? OFFSET ?", args, func(r *Row, _ rowMeta) error {
 			rows = append(rows, *r)
 			return nil
 		})

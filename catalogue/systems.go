@@ -24,14 +24,18 @@ func (s *Store) Systems(ctx context.Context, f Filter) ([]System, int, error) {
 	var systems []System
 	var total int
 	err = s.read(ctx, func(tx *sql.Tx) error {
-		if err := tx.QueryRowContext(ctx, "SELECT count(DISTINCT m.system_id)"+fromRows+w.String(), w.args...).Scan(&total); err != nil {
+		q, err := at(ctx, tx, f.Release)
+		if err != nil {
 			return err
 		}
-		ids, err := systemPage(ctx, tx, w, order, limit, offset)
+		if err := q.QueryRowContext(ctx, "SELECT count(DISTINCT m.system_id)"+fromRows+w.String(), w.args...).Scan(&total); err != nil {
+			return err
+		}
+		ids, err := systemPage(ctx, q, w, order, limit, offset)
 		if err != nil || len(ids) == 0 {
 			return err
 		}
-		systems, err = systemsByID(ctx, tx, w, ids)
+		systems, err = systemsByID(ctx, q, w, ids)
 		return err
 	})
 	return systems, total, err
@@ -39,11 +43,11 @@ func (s *Store) Systems(ctx context.Context, f Filter) ([]System, int, error) {
 
 // systemPage finds the ids of one page: one representative row a system, its
 // best-graded, then newest under the filter.
-func systemPage(ctx context.Context, tx *sql.Tx, w *where, order string, limit, offset int) ([]int64, error) {
+func systemPage(ctx context.Context, db querier, w *where, order string, limit, offset int) ([]int64, error) {
 	q := `SELECT m.system_id FROM (SELECT m.id, row_number() OVER (PARTITION BY m.system_id ORDER BY m.grade_rank, m.id DESC) AS place` +
 		fromRows + w.String() + `) best JOIN measurements m ON m.id = best.id JOIN systems s ON s.id = m.system_id JOIN sources c ON c.id = m.source_id
 		WHERE best.place = 1` + order + ` LIMIT ? OFFSET ?`
-	rows, err := tx.QueryContext(ctx, q, append(append([]any{}, w.args...), limit, offset)...)
+	rows, err := db.QueryContext(ctx, q, append(append([]any{}, w.args...), limit, offset)...)
 	if err != nil {
 		return nil, err
 	}
@@ -88,9 +92,18 @@ func (y *System) take(r *Row, meta rowMeta) {
 
 // System returns everything the page of one system shows.
 func (s *Store) System(ctx context.Context, slug string) (*Detail, error) {
+	return s.SystemAt(ctx, slug, "")
+}
+
+// SystemAt is System as of a release, "" for the catalogue as it is now.
+func (s *Store) SystemAt(ctx context.Context, slug, release string) (*Detail, error) {
 	var d Detail
 	err := s.read(ctx, func(tx *sql.Tx) error {
-		err := eachRow(ctx, tx, " WHERE s.slug = ? ORDER BY m.grade_rank, m.id DESC", []any{slug}, func(r *Row, meta rowMeta) error {
+		q, err := at(ctx, tx, release)
+		if err != nil {
+			return err
+		}
+		err = eachRow(ctx, q, " WHERE s.slug = ? ORDER BY m.grade_rank, m.id DESC", []any{slug}, func(r *Row, meta rowMeta) error {
 			d.take(r, meta)
 			return nil
 		})
@@ -98,21 +111,41 @@ func (s *Store) System(ctx context.Context, slug string) (*Detail, error) {
 			return err
 		}
 		if len(d.Measurements) == 0 {
-			return &Error{Code: NotFound, Message: "there is no accepted system of that name", Field: "system"}
+			return noSuchSystem(release)
 		}
-		if d.Sources, err = sourcesOf(ctx, tx, slug); err != nil {
+		if d.Sources, err = sourcesOf(ctx, q, slug); err != nil {
 			return err
 		}
-		if d.Centrelines, err = centrelinesOf(ctx, tx, slug); err != nil {
+		if d.Centrelines, err = centrelinesOf(ctx, q, slug); err != nil {
 			return err
 		}
-		d.History, err = historyOf(ctx, tx, &d)
-		return err
+		if d.History, err = historyOf(ctx, tx, &d); err != nil || release == "" {
+			return err
+		}
+		return d.historyUntil(ctx, tx, release)
 	})
 	if err != nil {
 		return nil, err
 	}
 	return &d, nil
+}
+
+func noSuchSystem(release string) error {
+	e := &Error{Code: NotFound, Message: "there is no accepted system of that name", Field: "system"}
+	if release != "" {
+		e.Message = "there is no system of that name in release " + release
+	}
+	return e
+}
+
+// historyUntil leaves out what happened after the release.
+func (d *Detail) historyUntil(ctx context.Context, q querier, release string) error {
+	var last int64
+	if err := q.QueryRowContext(ctx, `SELECT revision FROM releases WHERE name = ?`, release).Scan(&last); err != nil {
+		return err
+	}
+	d.History = slices.DeleteFunc(d.History, func(v Revision) bool { return v.ID > last })
+	return nil
 }
 
 func sourcesOf(ctx context.Context, q querier, slug string) ([]Source, error) {
