@@ -81,6 +81,8 @@ var access = map[string]role{
 	"POST /expectation.json":        reader,
 	"POST /expectation.csv":         reader,
 	"POST /figures/expectation.svg": reader,
+	"POST /figures/expectation.png": reader,
+	"POST /figures/expectation.pdf": reader,
 	"POST /expectation/time":        reader,
 	"POST /expectation/time.json":   reader,
 	"POST /expectation/report":      reader,

@@ -21,7 +21,9 @@ func (a *App) routesRegression(e *echo.Echo) {
 	get(e, "/regression", a.regressionPage)
 	get(e, "/regression.json", a.regressionJSON)
 	get(e, "/regression.csv", a.regressionCSV)
-	get(e, "/figures/regression.svg", a.regressionFigure)
+	for _, kind := range figureKinds {
+		get(e, "/figures/regression."+kind, a.regressionFigure)
+	}
 	e.POST("/regression/cancel", a.regressionCancel)
 	a.routesAnalyses(e)
 	get(e, "/regression/next", a.nextPage)
