@@ -28,6 +28,8 @@ func (a *App) routesExpectation(e *echo.Echo) {
 		{"/expectation", a.expectationPage},
 		{"/expectation.json", a.expectationJSON},
 		{"/figures/expectation.svg", a.expectationFigure},
+		{"/figures/expectation.png", a.expectationFigure},
+		{"/figures/expectation.pdf", a.expectationFigure},
 	} {
 		get(e, r.path, noStore(r.h))
 		e.POST(r.path, noStore(r.h))
