@@ -1,6 +1,7 @@
 package main
 
 import (
+	"bytes"
 	"context"
 	"encoding/csv"
 	"errors"
@@ -232,9 +233,18 @@ func (a *App) expectationCSV(c echo.Context) error {
 	fits := func(ctx context.Context, response, line string) (*expectation.Fits, error) {
 		return a.expectationFits(ctx, f, response, line)
 	}
-	_, err = answerTargets(c.Request().Context(), in, out, targetValues(q), fits, func(int) { c.Response().Flush() })
+	// The whole answer may take longer than an ordinary page is given: every
+	// piece that leaves wins time for the next.
+	deadline := http.NewResponseController(c.Response().Writer)
+	_, err = answerTargets(c.Request().Context(), in, out, targetValues(q), fits, func(int) {
+		c.Response().Flush()
+		_ = deadline.SetWriteDeadline(time.Now().Add(batchPatience))
+	})
 	return err
 }
+
+// batchPatience is how long one piece of a batch may take.
+const batchPatience = 2 * time.Minute
 
 // lateHeader sends the header with the first byte, so that a file that is no
 // table at all can still be refused with its own status.
@@ -278,7 +288,13 @@ func targetsBody(c echo.Context, q url.Values) (io.ReadCloser, url.Values, error
 		q.Del("targets")
 		return io.NopCloser(strings.NewReader(text)), q, nil
 	}
-	return r.Body, q, nil
+	// Read at once: answering as it arrives could outlast the time a request is
+	// given to arrive in. The size is bounded for every body.
+	b, err := io.ReadAll(r.Body)
+	if err != nil {
+		return nil, nil, err
+	}
+	return io.NopCloser(bytes.NewReader(b)), q, nil
 }
 
 func bodyError(err error) error {

@@ -198,7 +198,7 @@ func (a *App) reportPage(c echo.Context) error {
 
 func (a *App) reportOn(c echo.Context, n namedTarget, f catalogue.Filter, posted bool) (views.ExpectationPage, error) {
 	page := a.expectationFrame(c, n.query, posted)
-	page.Query, page.Filter, page.Name = n.query, f, n.name
+	page.Query, page.Filter, page.Name, page.Report = n.query, f, n.name, true
 	t, err := targetOf(n.query)
 	if err == nil {
 		page.Target = t

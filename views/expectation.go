@@ -25,6 +25,7 @@ type ExpectationPage struct {
 	Days         DayFigure
 	Series       []expectation.SeriesPoint // the site through time
 	Name         string                    // of the target in a report on several
+	Report       bool                      // printed: nothing stays folded
 	Columns      []ColumnHelp
 	Refused      string
 	RefusedField string
