@@ -51,4 +51,7 @@ func TestFreezeAnalysis(t *testing.T) {
 	if _, err := s.w.ExecContext(ctx, `UPDATE analyses SET digest = ?`, strings.Repeat("aa", 32)); err == nil {
 		t.Error("a frozen analysis was changed")
 	}
+	if _, err := s.w.ExecContext(ctx, `DELETE FROM analyses`); err == nil {
+		t.Error("a frozen analysis was deleted")
+	}
 }

@@ -5,6 +5,7 @@ import (
 	"crypto/sha256"
 	"encoding/hex"
 	"encoding/json"
+	"errors"
 	"net/http"
 	"net/url"
 	"runtime"
@@ -72,11 +73,31 @@ func (a *App) freeze(c echo.Context) error {
 	}
 	name, err := a.store.FreezeAnalysis(ctx, catalogue.Analysis{Title: title, Why: why, Rows: rows, Digest: digest, Program: Version, Revision: revision,
 		Question: withValues(regressionFilter(f).Values(), regressionValues(req)).Encode()}, by)
+	var refused *catalogue.Error
+	if errors.As(err, &refused) && refused.Field != "" {
+		return a.freezeRefused(c, f, req, analysis, views.Freezing{Title: title, Why: why, Field: refused.Field, Refused: sentence(refused.Message, "")}, refused.Code)
+	}
 	if err != nil {
 		return err
 	}
 	a.notice(c, "The analysis is kept. Its address will give these digits again whatever becomes of the catalogue.")
 	return c.Redirect(http.StatusSeeOther, "/analyses/"+url.PathEscape(name))
+}
+
+// freezeRefused shows the analysis again with why it was not frozen, and what
+// was typed.
+func (a *App) freezeRefused(c echo.Context, f catalogue.Filter, req stats.Request, analysis *stats.Analysis, typed views.Freezing, code catalogue.Code) error {
+	status := http.StatusUnprocessableEntity
+	if code == catalogue.Conflict {
+		status = http.StatusConflict
+	}
+	page := views.RegressionPage{Page: a.regressionFrame(c, f, req), Request: req, Filter: f, Analysis: analysis, Categories: stats.Categories, Freezing: typed}
+	page.Path = "/regression"
+	var err error
+	if page.Facets, err = a.facets(c.Request().Context(), f); err != nil {
+		return err
+	}
+	return render(c, status, views.Regression(page))
 }
 
 func analyseRows(ctx context.Context, rows []catalogue.Row, req stats.Request) (*stats.Analysis, error) {

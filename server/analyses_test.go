@@ -48,12 +48,13 @@ func TestFrozenAnalysis(t *testing.T) {
 	}
 	v.get("/figures/regression.svg?analysis=figure-3&panel=residuals").is(http.StatusOK)
 	v.get("/analyses").is(http.StatusOK).says("Figure 3", "Credit of ada")
-	if a := v.post("/regression/freeze", form); a.status != http.StatusConflict {
-		t.Errorf("a taken name: status %d", a.status)
-	}
-	form.Set("title", "  ")
-	if a := v.post("/regression/freeze", form); a.status != http.StatusBadRequest {
-		t.Errorf("no name: status %d", a.status)
+	// Refused: the analysis stands on the page still, with what was typed.
+	for title, status := range map[string]int{"Figure 3": http.StatusConflict, "  ": http.StatusUnprocessableEntity} {
+		form.Set("title", title)
+		kept := v.post("/regression/freeze", form).is(status).form("form[action^='/regression/freeze']")
+		if kept.Get("title") != title || kept.Get("why") != "of the manuscript" || kept.Get("seed") != "4" || kept.Get("model") != "linear:abs_latitude" {
+			t.Errorf("refused with %d, the form holds %v", status, kept)
+		}
 	}
 	v.get("/analyses/none").is(http.StatusNotFound)
 	v.get("/analyses/none.json").is(http.StatusNotFound)

@@ -22,6 +22,7 @@ type RegressionPage struct {
 	Refused        string
 	RefusedField   string
 	Recomputations []string // finished ones, by name
+	Freezing       Freezing // as typed, when it was refused
 	Progress       float64  // of a fit on its way, 0..1
 	Frozen         *FrozenAnalysis
 }

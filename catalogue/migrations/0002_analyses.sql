@@ -14,3 +14,4 @@ CREATE TABLE analyses (
   created_at TEXT NOT NULL -- when it was frozen
 ) STRICT, WITHOUT ROWID;
 CREATE TRIGGER analyses_stay BEFORE UPDATE ON analyses BEGIN SELECT RAISE (ABORT, 'frozen analyses are never changed'); END;
+CREATE TRIGGER analyses_last BEFORE DELETE ON analyses BEGIN SELECT RAISE (ABORT, 'frozen analyses are never deleted'); END;
