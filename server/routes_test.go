@@ -11,8 +11,9 @@ import (
 // here or into the table access, so that nobody opens one by forgetting it.
 var openToAll = []string{
 	"/", "/systems", "/systems.csv", "/systems.json", "/systems.geojson", "/systems/dimensions.csv", "/systems/:slug",
-	"/regression", "/regression.json", "/regression.csv", "/regression/next", "/regression/next.json", "/figures/regression.svg",
+	"/regression", "/regression.json", "/regression.csv", "/regression/next", "/regression/next.json", "/figures/regression.svg", "/figures/regression.png", "/figures/regression.pdf",
 	"/expectation", "/expectation.json", "/expectation/time", "/expectation/time.json", "/expectation/report", "/figures/expectation.svg",
+	"/figures/expectation.png", "/figures/expectation.pdf",
 	"/expectation/columns.csv", "/expectation/deep-time", "/expectation/deep-time.json", "/analyses", "/analyses/:name", "/figures/meridian.svg",
 	"/measure", "/methods", "/changes", "/static/*", "/favicon.ico", "/healthz", "/metrics",
 }

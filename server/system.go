@@ -16,6 +16,7 @@ import (
 	"github.com/labstack/echo/v4"
 
 	"fathombend/catalogue"
+	"fathombend/catalogue/land"
 	"fathombend/catalogue/planform"
 	"fathombend/stats"
 	"fathombend/views"
@@ -53,7 +54,7 @@ func (a *App) system(c echo.Context) error {
 
 func (a *App) systemPage(c echo.Context, d *catalogue.Detail) error {
 	ctx := c.Request().Context()
-	p := views.SystemPage{Detail: d, Item: meridianItem(d.Best())}
+	p := views.SystemPage{Detail: d, Item: meridianItem(d.Best()), Land: land.Rings(), LandCredit: land.Credit}
 	var err error
 	if p.Lines, err = a.systemLines(ctx, d); err != nil {
 		return err

@@ -18,6 +18,9 @@ type SystemPage struct {
 	Item   MeridianItem
 	Lines  []SystemLine
 
+	Land       [][][2]float64 // rings of longitude and latitude, degrees, for the locator
+	LandCredit string
+
 	Fit                  *stats.Model // sinuosity on the Coriolis parameter, all submarine systems; nil = none
 	FitRows, FitClusters int
 	FitWhy               string // why there is no fit, or why it does not concern this system

@@ -16,9 +16,9 @@ func bigRibbonBox(s Shape) string {
 }
 
 // globe is centred on the system.
-func (p SystemPage) globe(rings [][][2]float64) Globe {
+func (p SystemPage) globe() Globe {
 	r := p.best()
-	g := Globe{ID: "place", Title: "Where " + p.Detail.Name + " lies on the globe, marked in the middle", Rings: rings, Lat: math.NaN()}
+	g := Globe{ID: "place", Title: "Where " + p.Detail.Name + " lies on the globe, marked in the middle", Rings: p.Land, Lat: math.NaN()}
 	if r.LatitudeDeg.Valid && r.LongitudeDeg.Valid {
 		g.Lat, g.Lon = r.LatitudeDeg.V, r.LongitudeDeg.V
 		g.Marks = [][2]float64{{g.Lon, g.Lat}}
