@@ -64,12 +64,14 @@ CREATE TRIGGER line_places_delete AFTER DELETE ON centrelines BEGIN
 END;
 
 CREATE TRIGGER line_places_insert AFTER INSERT ON centrelines BEGIN
-  INSERT INTO line_places SELECT new.id, min(p.value ->> 0), max(p.value ->> 0), min(p.value ->> 1), max(p.value ->> 1) FROM json_each(new.line, '$.coordinates') p;
+  INSERT INTO line_places SELECT new.id, CASE WHEN max(p.value ->> 0) - min(p.value ->> 0) > 180 THEN -180 ELSE min(p.value ->> 0) END, CASE WHEN max(p.value ->> 0) - min(p.value ->> 0) > 180 THEN 180 ELSE max(p.value ->> 0) END,
+    min(p.value ->> 1), max(p.value ->> 1) FROM json_each(new.line, '$.coordinates') p;
 END;
 
 CREATE TRIGGER line_places_update AFTER UPDATE OF line ON centrelines BEGIN
   DELETE FROM line_places WHERE id = old.id;
-  INSERT INTO line_places SELECT new.id, min(p.value ->> 0), max(p.value ->> 0), min(p.value ->> 1), max(p.value ->> 1) FROM json_each(new.line, '$.coordinates') p;
+  INSERT INTO line_places SELECT new.id, CASE WHEN max(p.value ->> 0) - min(p.value ->> 0) > 180 THEN -180 ELSE min(p.value ->> 0) END, CASE WHEN max(p.value ->> 0) - min(p.value ->> 0) > 180 THEN 180 ELSE max(p.value ->> 0) END,
+    min(p.value ->> 1), max(p.value ->> 1) FROM json_each(new.line, '$.coordinates') p;
 END;
 
 CREATE TABLE change_sets (

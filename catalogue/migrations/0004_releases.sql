@@ -220,19 +220,23 @@ CREATE TRIGGER frozen_search_insert AFTER INSERT ON frozen_measurements BEGIN
     FROM frozen_systems s, frozen_sources c WHERE s.version = new.system_version AND c.version = new.source_version;
 END;
 
--- Where lines lie: their boxes, as given (a line may run past 180 degrees).
+-- Where lines lie: their boxes, as given (a line may run past 180 degrees). One
+-- that jumps from 180 to -180 has the box of all longitudes.
 CREATE VIRTUAL TABLE line_places USING rtree (id, west, east, south, north);
 CREATE TRIGGER line_places_insert AFTER INSERT ON centrelines BEGIN
-  INSERT INTO line_places SELECT new.id, min(p.value ->> 0), max(p.value ->> 0), min(p.value ->> 1), max(p.value ->> 1) FROM json_each(new.line, '$.coordinates') p;
+  INSERT INTO line_places SELECT new.id, CASE WHEN max(p.value ->> 0) - min(p.value ->> 0) > 180 THEN -180 ELSE min(p.value ->> 0) END, CASE WHEN max(p.value ->> 0) - min(p.value ->> 0) > 180 THEN 180 ELSE max(p.value ->> 0) END,
+    min(p.value ->> 1), max(p.value ->> 1) FROM json_each(new.line, '$.coordinates') p;
 END;
 CREATE TRIGGER line_places_update AFTER UPDATE OF line ON centrelines BEGIN
   DELETE FROM line_places WHERE id = old.id;
-  INSERT INTO line_places SELECT new.id, min(p.value ->> 0), max(p.value ->> 0), min(p.value ->> 1), max(p.value ->> 1) FROM json_each(new.line, '$.coordinates') p;
+  INSERT INTO line_places SELECT new.id, CASE WHEN max(p.value ->> 0) - min(p.value ->> 0) > 180 THEN -180 ELSE min(p.value ->> 0) END, CASE WHEN max(p.value ->> 0) - min(p.value ->> 0) > 180 THEN 180 ELSE max(p.value ->> 0) END,
+    min(p.value ->> 1), max(p.value ->> 1) FROM json_each(new.line, '$.coordinates') p;
 END;
 CREATE TRIGGER line_places_delete AFTER DELETE ON centrelines BEGIN
   DELETE FROM line_places WHERE id = old.id;
 END;
-INSERT INTO line_places SELECT l.id, min(p.value ->> 0), max(p.value ->> 0), min(p.value ->> 1), max(p.value ->> 1) FROM centrelines l, json_each(l.line, '$.coordinates') p GROUP BY l.id;
+INSERT INTO line_places SELECT l.id, CASE WHEN max(p.value ->> 0) - min(p.value ->> 0) > 180 THEN -180 ELSE min(p.value ->> 0) END, CASE WHEN max(p.value ->> 0) - min(p.value ->> 0) > 180 THEN 180 ELSE max(p.value ->> 0) END,
+    min(p.value ->> 1), max(p.value ->> 1) FROM centrelines l, json_each(l.line, '$.coordinates') p GROUP BY l.id;
 
 -- Newly accepted systems, for the feed.
 CREATE INDEX systems_created ON systems (created_at, id);
