@@ -74,7 +74,11 @@ func (sc *rowScanner) scan(rows interface{ Scan(...any) error }, r *Row) (rowMet
 
 // eachRow visits the rows of a query over rowColumns.
 func eachRow(ctx context.Context, q querier, tail string, args []any, visit func(*Row, rowMeta) error) error {
-	rows, err := q.QueryContext(ctx, "SELECT "+rowColumns+fromRows+tail, args...)
+	return scanRows(ctx, q, "SELECT "+rowColumns+fromRows+tail, args, visit)
+}
+
+func scanRows(ctx context.Context, q querier, query string, args []any, visit func(*Row, rowMeta) error) error {
+	rows, err := q.QueryContext(ctx, query, args...)
 	if err != nil {
 		return err
 	}

@@ -5,14 +5,17 @@ import (
 	"fmt"
 )
 
-// State names what the catalogue shows to a signed-out reader: it changes with
-// every accepted change and with every release.
+// State names what the catalogue shows to a signed-out reader: it differs from
+// that of any other catalogue, and changes with every accepted change, every
+// frozen analysis and every release.
 func (s *Store) State(ctx context.Context) (string, error) {
 	rev, err := s.Revision(ctx)
 	if err != nil {
 		return "", err
 	}
-	var analyses int64
-	err = s.r.QueryRowContext(ctx, `SELECT count(*) FROM analyses`).Scan(&analyses)
-	return fmt.Sprint(rev, analyses), fault("state", err)
+	var uuid string
+	var analyses, releases int64
+	err = s.r.QueryRowContext(ctx, `SELECT (SELECT uuid FROM catalogue_identity), (SELECT count(*) FROM analyses),
+		(SELECT count(*) FROM releases) + (SELECT count(*) FROM release_dois)`).Scan(&uuid, &analyses, &releases)
+	return fmt.Sprint(uuid, " ", rev, " ", analyses, " ", releases), fault("state", err)
 }
