@@ -7,6 +7,7 @@ import (
 	"io"
 	"math"
 	"net/http"
+	"net/url"
 	"strconv"
 	"strings"
 	"unicode/utf8"
@@ -215,74 +216,93 @@ func rounded(v float64) string {
 	return strconv.FormatFloat(v, 'g', 4, 64)
 }
 
+// filler puts measured values into fields of a form that are empty, and keeps
+// which.
+type filler struct {
+	typed  url.Values
+	filled []string
+}
+
+func (f *filler) set(column, text string) {
+	now := strings.TrimSpace(f.typed.Get(column))
+	c, ok := catalogue.ColumnByName(column)
+	if !ok || text == "" || (now != "" && !(len(c.Choices) > 0 && now == c.Default)) || now == text {
+		return
+	}
+	f.typed.Set(column, text)
+	f.typed.Del(column + ".unit")
+	f.filled = append(f.filled, column)
+}
+
+func (f *filler) number(column string, v float64) {
+	if isFinite(v) {
+		f.set(column, strconv.FormatFloat(v, 'g', -1, 64))
+	}
+}
+
+func (f *filler) given(column string, v *float64) {
+	if v != nil {
+		f.number(column, *v)
+	}
+}
+
+// length and degrees write decimetres, 1e-6 degrees being one: digits beyond
+// are the computer's. Sinuosity and slope keep theirs, so that the stored line
+// gives the stored number.
+func (f *filler) length(column string, v float64)  { f.number(column, math.Round(v*10)/10) }
+func (f *filler) degrees(column string, v float64) { f.number(column, math.Round(v*1e6)/1e6) }
+
 // fillFrom puts what the line measures into fields that are empty, and returns
 // which.
-func (r *record) fillFrom(l *formLine) (filled []string) {
-	m := l.planform
-	set := func(column, text string) {
-		now := strings.TrimSpace(r.typed.Get(column))
-		c, ok := catalogue.ColumnByName(column)
-		if !ok || text == "" || (now != "" && !(len(c.Choices) > 0 && now == c.Default)) || now == text {
-			return
-		}
-		r.typed.Set(column, text)
-		r.typed.Del(column + ".unit")
-		filled = append(filled, column)
+func (r *record) fillFrom(l *formLine) []string {
+	f, m := &filler{typed: r.typed}, l.planform
+	f.sinuosity(m)
+	f.set("valley_line", "end_to_end")
+	f.length("reach_length_m", m.ChannelLengthM)
+	f.length("vertex_spacing_m", m.MedianSpacingM)
+	f.given("valley_slope", m.ValleySlope)
+	f.given("channel_slope", m.ChannelSlope)
+	if p := m.Place; p != nil {
+		f.degrees("latitude_deg", p.MiddleLat)
+		f.degrees("longitude_deg", p.MiddleLon)
+		f.degrees("start_latitude_deg", p.StartLat)
+		f.degrees("start_longitude_deg", p.StartLon)
+		f.degrees("end_latitude_deg", p.EndLat)
+		f.degrees("end_longitude_deg", p.EndLon)
 	}
-	number := func(column string, v float64) {
-		if isFinite(v) {
-			set(column, strconv.FormatFloat(v, 'g', -1, 64))
-		}
+	if t := m.Typical; t != nil {
+		f.length("wavelength_m", t.WavelengthM)
+		f.length("amplitude_m", t.AmplitudeM)
+		f.length("radius_m", t.RadiusM)
 	}
-	// Places and lengths in whole decimetres, 1e-6 degrees being one: digits
-	// beyond are the computer's. Sinuosity and slope keep theirs, so that the
-	// stored line gives the stored number.
-	fixed := func(column string, v float64, decimals int) {
-		if scale := math.Pow10(decimals); isFinite(v) {
-			number(column, math.Round(v*scale)/scale)
-		}
+	return f.filled
+}
+
+// sinuosity fills the sinuosity of the kind chosen, or the peak where there is
+// more than one window, with how it was measured. A sinuosity that was typed
+// stays, and so does what it says of itself.
+func (f *filler) sinuosity(m *planform.Measured) {
+	if strings.TrimSpace(f.typed.Get("sinuosity")) != "" {
+		return
 	}
-	given := func(column string, v *float64) {
-		if v != nil {
-			number(column, *v)
-		}
-	}
-	kind := r.typed.Get("sinuosity_kind")
+	kind := f.typed.Get("sinuosity_kind")
 	if kind == "" && len(m.Windows) > 1 {
 		kind = "peak"
 	} else if kind == "" {
 		kind = "reach"
 	}
-	of := map[string]float64{"reach": m.ReachSinuosity, "mean": m.MeanSinuosity, "p90": m.P90Sinuosity, "peak": m.PeakSinuosity}
-	if v, ok := of[kind]; ok && strings.TrimSpace(r.typed.Get("sinuosity")) == "" {
-		number("sinuosity", v)
-		set("sinuosity_kind", kind)
-		set("grade", gradeOf(m))
-		set("extraction", "centreline")
-		if kind != "reach" {
-			fixed("window_m", m.WindowLengthM, 1)
-			number("windows", float64(len(m.Windows)))
-		}
+	v, ok := map[string]float64{"reach": m.ReachSinuosity, "mean": m.MeanSinuosity, "p90": m.P90Sinuosity, "peak": m.PeakSinuosity}[kind]
+	if !ok {
+		return
 	}
-	set("valley_line", "end_to_end")
-	fixed("reach_length_m", m.ChannelLengthM, 1)
-	fixed("vertex_spacing_m", m.MedianSpacingM, 1)
-	given("valley_slope", m.ValleySlope)
-	given("channel_slope", m.ChannelSlope)
-	if p := m.Place; p != nil {
-		fixed("latitude_deg", p.MiddleLat, 6)
-		fixed("longitude_deg", p.MiddleLon, 6)
-		fixed("start_latitude_deg", p.StartLat, 6)
-		fixed("start_longitude_deg", p.StartLon, 6)
-		fixed("end_latitude_deg", p.EndLat, 6)
-		fixed("end_longitude_deg", p.EndLon, 6)
+	f.number("sinuosity", v)
+	f.set("sinuosity_kind", kind)
+	f.set("grade", gradeOf(m))
+	f.set("extraction", "centreline")
+	if kind != "reach" {
+		f.length("window_m", m.WindowLengthM)
+		f.number("windows", float64(len(m.Windows)))
 	}
-	if t := m.Typical; t != nil {
-		fixed("wavelength_m", t.WavelengthM, 1)
-		fixed("amplitude_m", t.AmplitudeM, 1)
-		fixed("radius_m", t.RadiusM, 1)
-	}
-	return filled
 }
 
 // gradeOf is the grade of a value measured here: remeasured needs a vertex

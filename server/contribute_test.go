@@ -331,7 +331,13 @@ func TestAnotherMeasurementOfASystem(t *testing.T) {
 	s, ann, cy := newContribution(t)
 	first := ann.post("/contribute", press(ann.newRecord(goodRecord()), "submit")).is(http.StatusOK)
 	cy.post("/review/"+strings.TrimPrefix(first.url.Path, "/contribute/"), url.Values{"action": {"accept"}}).is(http.StatusOK)
-	slug := strings.Split(s.csv()[1], ",")[1]
+	slug, id := strings.Split(s.csv()[1], ",")[1], strings.Split(s.csv()[1], ",")[0]
+	system := ann.get("/systems/" + slug).is(http.StatusOK).doc()
+	for _, way := range []string{"/contribute?system=" + slug, "/contribute?measurement=" + id} {
+		if system.Find("main a[href='"+way+"']").Length() == 0 {
+			t.Errorf("the page of the system has no way to %s", way)
+		}
+	}
 	form := ann.get("/contribute?system=" + slug).is(http.StatusOK).says("Another measurement of Tarn Hollow Channel").form("form.record")
 	if form.Get("parent_deposit") != "Tarn Hollow Fan" || form.Get("sinuosity") != "" {
 		t.Errorf("prefilled: deposit %q, sinuosity %q", form.Get("parent_deposit"), form.Get("sinuosity"))
