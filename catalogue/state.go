@@ -15,7 +15,7 @@ func (s *Store) State(ctx context.Context) (string, error) {
 	}
 	var uuid string
 	var analyses, releases int64
-	err = s.r.QueryRowContext(ctx, `SELECT (SELECT uuid FROM catalogue_identity), (SELECT count(*) FROM analyses),
+	err = s.r.QueryRowContext(ctx, `SELECT (SELECT uuid FROM catalogue_identity), (SELECT count(*) FROM analyses) + (SELECT count(*) FROM recomputations),
 		(SELECT count(*) FROM releases) + (SELECT count(*) FROM release_dois)`).Scan(&uuid, &analyses, &releases)
 	return fmt.Sprint(uuid, " ", rev, " ", analyses, " ", releases), fault("state", err)
 }

@@ -64,7 +64,8 @@ func runRestore(args []string, in io.Reader, out, errOut io.Writer) int {
 
 const checkHelp = `Checks a catalogue file: that the database is whole, that every reference leads
 somewhere, that the text and place indexes agree with the records, that it fits
-its checksum when FILE.sha256 lies beside it (a backup has one), and which accepted measurements the input checks find odd. Exit 0 when the file is sound,
+its checksum when FILE.sha256 lies beside it (a backup has one), that each release
+is still what was frozen, and which accepted measurements the input checks find odd. Exit 0 when the file is sound,
 1 when it is not; odd measurements are printed and do not change the exit code.`
 
 func runCheck(args []string, in io.Reader, out, errOut io.Writer) int {
@@ -93,6 +94,11 @@ func runCheck(args []string, in io.Reader, out, errOut io.Writer) int {
 	if _, err := catalogue.VerifyChecksum(s.Path()); err != nil {
 		faults = append(faults, commandMessage(err))
 	}
+	if len(faults) == 0 {
+		if faults, err = releaseFaults(ctx, s); err != nil {
+			return c.failed(err)
+		}
+	}
 	for _, f := range faults {
 		fmt.Fprintln(out, "fault: "+f)
 	}
@@ -105,6 +111,24 @@ func runCheck(args []string, in io.Reader, out, errOut io.Writer) int {
 		return exitProblem
 	}
 	return exitOK
+}
+
+// releaseFaults reads every release back and compares it with its checksum.
+func releaseFaults(ctx context.Context, s *catalogue.Store) (faults []string, err error) {
+	all, err := s.Releases(ctx)
+	if err != nil {
+		return nil, err
+	}
+	for _, r := range all {
+		whole, err := s.VerifyRelease(ctx, r.Name)
+		if err != nil {
+			return faults, err
+		}
+		if !whole {
+			faults = append(faults, "release "+r.Name+" is not what was frozen: its checksum differs")
+		}
+	}
+	return faults, nil
 }
 
 // printOdd prints what the input checks find on every accepted measurement.
