@@ -314,6 +314,9 @@ func TestChangeOfAnAcceptedRecord(t *testing.T) {
 
 	// The second was written before the first was accepted: both versions.
 	review := strings.Replace(two, "contribute", "review", 1)
+	if seen := cy.get(review).is(http.StatusOK).says("changed after this was written"); seen.doc().Find(".conflict tbody tr").Length() != 2 {
+		t.Errorf("both versions before deciding:\n%s", seen.doc().Find(".conflict").Text())
+	}
 	conflict := cy.post(review, url.Values{"action": {"accept"}, "comment": {"typed comment"}}).is(http.StatusConflict).says("1.62", "1.8", "1.9")
 	if conflict.doc().Find("#comment").Text() != "typed comment" {
 		t.Error("the comment is lost")

@@ -91,6 +91,7 @@ type Review struct {
 	Messages          []catalogue.Message
 	Line              *LineReport
 	Conflict          []ThreeWay // not empty: the record changed since the author saw it
+	Refused           bool       // the decision was refused because of it
 	ConflictNote      string
 	Comment           string // typed, kept on error
 	Errors            map[string]string
