@@ -317,12 +317,15 @@ func (b *batch) expect(ctx context.Context, row []string) (*expectation.Result, 
 	}
 	q := withValues(b.base)
 	for i, name := range b.columns {
+		if !utf8.ValidString(row[i]) {
+			return nil, &badInput{name, "is not UTF-8 text, so its signs cannot be passed through. Save the file as CSV UTF-8"}
+		}
 		if !slices.Contains(targetParameters, name) {
 			continue
 		}
 		v := strings.TrimSpace(catalogue.Plain(row[i]))
-		if !utf8.ValidString(v) || len(v) > maxCell {
-			return nil, &badInput{name, "is not readable UTF-8 text of ordinary length"}
+		if len(v) > maxCell {
+			return nil, &badInput{name, "is longer than any value of it can be"}
 		}
 		if v != "" {
 			q.Set(name, v)

@@ -85,17 +85,19 @@ func finiteStruct(r reflect.Value) any {
 	var out orderedObject
 	for i := range r.NumField() {
 		f := r.Type().Field(i)
-		if !f.IsExported() {
-			continue
-		}
 		name, opts, _ := strings.Cut(f.Tag.Get("json"), ",")
 		if name == "-" {
 			continue
 		}
+		// The members of an embedded struct are the outer struct's own, as in
+		// encoding/json, even where the embedded type itself is not exported.
 		if f.Anonymous && name == "" && f.Type.Kind() == reflect.Struct {
 			if inner, ok := finiteStruct(r.Field(i)).(orderedObject); ok {
 				out = append(out, inner...)
 			}
+			continue
+		}
+		if !f.IsExported() {
 			continue
 		}
 		if strings.Contains(opts, "omitempty") && r.Field(i).IsZero() {

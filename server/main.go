@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"io"
 	"os"
+	"slices"
 )
 
 // Version of the program; see the change log.
@@ -50,8 +51,15 @@ func run(args []string, in io.Reader, out, errOut io.Writer) int {
 	name := "serve"
 	if len(args) > 0 && len(args[0]) > 0 && args[0][0] != '-' {
 		name, args = args[0], args[1:]
+	} else if len(args) == 1 && slices.Contains([]string{"-h", "-help", "--help"}, args[0]) {
+		listCommands(out)
+		fmt.Fprintln(out, "\nWithout a command: serve, which takes")
 	} else if len(args) > 0 && (args[0] == "-version" || args[0] == "--version") {
 		fmt.Fprintln(out, "fathombend", Version)
+		return exitOK
+	}
+	if name == "help" {
+		listCommands(out)
 		return exitOK
 	}
 	for _, c := range commands() {
@@ -59,9 +67,15 @@ func run(args []string, in io.Reader, out, errOut io.Writer) int {
 			return c.run(args, in, out, errOut)
 		}
 	}
-	fmt.Fprintf(errOut, "fathombend: no command %q. Commands:\n", name)
-	for _, c := range commands() {
-		fmt.Fprintf(errOut, "  %-12s %s\n", c.name, c.summary)
-	}
+	fmt.Fprintf(errOut, "fathombend: no command %q.\n", name)
+	listCommands(errOut)
 	return exitBadCall
+}
+
+// listCommands prints every command with its summary.
+func listCommands(out io.Writer) {
+	fmt.Fprintln(out, "Commands; each answers -h:")
+	for _, c := range commands() {
+		fmt.Fprintf(out, "  %-12s %s\n", c.name, c.summary)
+	}
 }

@@ -55,7 +55,8 @@ func judge(models []Model, level float64) {
 		if m.Failure != "" {
 			continue
 		}
-		holds := m.PermutationP <= (1-level)/float64(max(len(asked), 1))
+		m.alpha = (1 - level) / float64(max(len(asked), 1))
+		holds := m.PermutationP <= m.alpha
 		m.Found = holds && m.OutOfSampleR2 > 0 && m.RSquaredInterval[0] >= leastShare && (m.Form == "joint" || m.anyExcludesZero())
 	}
 }
@@ -92,6 +93,10 @@ func (s *study) headline(models []Model) string {
 	}
 	text := goes + "."
 	switch c := m.slope(); {
+	case !m.Found && m.RSquared < leastShare:
+		text = fmt.Sprintf("Nothing is found: %s goes with no part of the variance here (%s).", m.subject(), m.whyNot(s.req))
+	case !m.Found && m.related():
+		text = goes + fmt.Sprintf(", but it is not a relation to predict from: %s.", m.whyNot(s.req))
 	case !m.Found:
 		text = fmt.Sprintf("Nothing is found: %s, which these rows cannot tell from no relation (%s).", lowerFirst(goes), m.whyNot(s.req))
 	case m.Form == "joint":
@@ -107,6 +112,14 @@ func (m *Model) subject() string {
 		return list(mapSlice(splitComma(m.Predictor), nameOf)) + " together"
 	}
 	return nameOf(m.Predictor)
+}
+
+// related says whether a model that does not count as found still stands apart
+// from no relation at all: both its sign-flip test and the interval asked for
+// say so.
+func (m *Model) related() bool {
+	c := m.slope()
+	return m.Form != "joint" && c != nil && m.PermutationP <= m.alpha && c.Interval.excludes(0)
 }
 
 // whyNot gives the reason a model does not count as found.

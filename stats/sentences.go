@@ -26,6 +26,7 @@ func (s *study) warnings(a *Analysis) []string {
 	}
 	out = append(out, s.mixed()...)
 	out = append(out, s.ranges()...)
+	out = append(out, s.oddSlopes()...)
 	for _, m := range s.out {
 		if m.Failure != "" {
 			add("%s was not fitted. %s", m.name(), m.Failure)
@@ -245,6 +246,37 @@ func (s *study) ranges() []string {
 		}
 	}
 	return out
+}
+
+// Valley slopes outside these limits are likely degrees or per mille typed as
+// m/m (common practice, no source; the same limits warn at the import).
+const (
+	leastSlope    = 1e-4 // m/m
+	greatestSlope = 0.1  // m/m
+)
+
+// oddSlopes names the steepest row outside the usual limits: one such row can
+// rule a straight line in slope.
+func (s *study) oddSlopes() []string {
+	predictors, _ := s.req.needs()
+	if !slices.Contains(predictors, "valley_slope") && !slices.Contains(predictors, "log10_slope") {
+		return nil
+	}
+	odd, worst := 0, -1
+	for i, r := range s.t.source {
+		if r.ValleySlope >= leastSlope && r.ValleySlope <= greatestSlope {
+			continue
+		}
+		odd++
+		if worst < 0 || r.ValleySlope > s.t.source[worst].ValleySlope {
+			worst = i
+		}
+	}
+	if odd == 0 {
+		return nil
+	}
+	return []string{fmt.Sprintf("%s a valley slope outside %s to %s m/m (%s: %s): is it degrees or per mille? Such a row can rule a slope fit by itself. Check the record, or leave it out with slope_max=%s.",
+		plural(odd, "row has", "rows have"), number(leastSlope), number(greatestSlope), s.t.label[worst], number(s.t.source[worst].ValleySlope), number(greatestSlope))}
 }
 
 func (s *study) size() string {

@@ -246,6 +246,8 @@ type Model struct {
 	Influence            []Influence `json:"influence"`
 	Carrier              string      `json:"carrier"` // cluster whose leaving out moves the slope farthest
 	Found                bool        `json:"found"`   // see Analysis.Headline: interval, sign-flip test and out-of-sample score all speak for it
+
+	alpha float64 // the level its sign-flip test had to reach, see judge
 }
 
 // Level is a category of a joint model with its levels and their rows.

@@ -201,11 +201,25 @@ func (l rowLesson) sentence() string {
 	return "little"
 }
 
+// sameExplanation says whether a model is of latitude in one of its guises:
+// |latitude|, its sine and the Coriolis parameter are nearly one number on
+// modern rows, and a difference between them tells of their forms.
+func sameExplanation(model string) bool {
+	_, predictor, _ := strings.Cut(model, ":")
+	switch predictor {
+	case "abs_latitude", "sin_abs_latitude", "coriolis":
+		return true
+	}
+	return false
+}
+
 // comparisonSentence reads a paired difference.
 func comparisonSentence(c stats.Comparison) string {
 	switch {
 	case !finiteInterval(c.Interval):
 		return "no interval could be formed"
+	case sameExplanation(c.A) && sameExplanation(c.B):
+		return "one explanation on these rows: their difference is not a finding"
 	case c.Interval[0] > 0:
 		return "the first goes with more of the variance"
 	case c.Interval[1] < 0:
