@@ -92,12 +92,32 @@ func (s *Store) SetRole(ctx context.Context, name, role string) error {
 	if err := checkRole(role); err != nil {
 		return err
 	}
+	if role != "keeper" {
+		if err := s.notTheLastKeeper(ctx, name); err != nil {
+			return err
+		}
+	}
 	return s.setAccount(ctx, name, "role", role)
 }
 
 // SetDisabled stops an account from signing in, or lets it again.
 func (s *Store) SetDisabled(ctx context.Context, name string, disabled bool) error {
 	return s.setAccount(ctx, name, "disabled", disabled)
+}
+
+// notTheLastKeeper refuses when name is the only keeper who can sign in: without
+// one nobody could add people or renew a forgotten password in the browser.
+func (s *Store) notTheLastKeeper(ctx context.Context, name string) error {
+	var is, others int
+	err := s.r.QueryRowContext(ctx, `SELECT count(CASE WHEN name = ?1 THEN 1 END), count(CASE WHEN name <> ?1 THEN 1 END)
+		FROM accounts WHERE role = 'keeper' AND NOT disabled`, strings.TrimSpace(name)).Scan(&is, &others)
+	if err != nil {
+		return fault("role", err)
+	}
+	if is == 1 && others == 0 {
+		return &Error{Code: Invalid, Field: "role", Message: strconv.Quote(Clip(name)) + " is the only keeper, and a catalogue needs one", Expected: "keeper, or another account made keeper first"}
+	}
+	return nil
 }
 
 func (s *Store) setAccount(ctx context.Context, name, column string, value any) error {

@@ -5,6 +5,7 @@ import (
 	"database/sql"
 	"errors"
 	"fmt"
+	"strconv"
 )
 
 // applier writes accepted rows inside one transaction: one change set.
@@ -184,6 +185,12 @@ func (a *applier) locate(ctx context.Context, p *Row) (ex examined, err error) {
 	}
 	ex.findings = append(ex.findings, unsaid(p)...)
 	p.Normalise()
+	if ex.current != nil && ex.current.Invented && !p.Invented {
+		// The mark lives in the notes, and no edit of them may make a survey of
+		// what nobody measured.
+		ex.findings = append(ex.findings, Finding{Column: "notes", Key: "invented_mark", Hard: true,
+			Message: "this row is invented, and its notes must go on saying so", Expected: "notes that begin with " + strconv.Quote(InventedMark)})
+	}
 	return ex, nil
 }
 

@@ -92,7 +92,7 @@ func TestLifeOfAContribution(t *testing.T) {
 		t.Errorf("%+v", best)
 	}
 	h := d.History[len(d.History)-1]
-	if h.Who != "Ada Invented" || !strings.Contains(h.Why, "Good.") || !strings.Contains(h.Why, "a cliff") || h.Action != "create" {
+	if h.Who != "Ada Invented, accepted by Cy Invented" || !strings.Contains(h.Why, "Good.") || !strings.Contains(h.Why, "a cliff") || h.Action != "create" {
 		t.Errorf("%+v", h)
 	}
 	for name, err := range map[string]error{

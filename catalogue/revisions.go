@@ -10,10 +10,15 @@ const whoExpr = `coalesce(a.credit, 'command line')`
 
 func lineRecord(id int64) string { return "centreline:" + strconv.FormatInt(id, 10) }
 
+// partiesExpr names both people of a change: whose contribution it was, and who
+// let it into the catalogue (and may have edited it on the way).
+const partiesExpr = `CASE WHEN t.author_id <> t.account_id THEN b.credit || ', accepted by ' || a.credit ELSE coalesce(b.credit, a.credit, 'command line') END`
+
 // revisionsOf returns the revisions of one record, newest first.
 func revisionsOf(ctx context.Context, q querier, record string) ([]Revision, error) {
-	rows, err := q.QueryContext(ctx, `SELECT v.id, t.at, `+whoExpr+`, t.why, v.record, v.field, v.before, v.after, v.action
-		FROM revisions v JOIN change_sets t ON t.id = v.change_set_id LEFT JOIN accounts a ON a.id = coalesce(t.author_id, t.account_id)
+	rows, err := q.QueryContext(ctx, `SELECT v.id, t.at, `+partiesExpr+`, t.why, v.record, v.field, v.before, v.after, v.action
+		FROM revisions v JOIN change_sets t ON t.id = v.change_set_id
+		LEFT JOIN accounts a ON a.id = t.account_id LEFT JOIN accounts b ON b.id = t.author_id
 		WHERE v.record = ? ORDER BY v.id DESC`, record)
 	if err != nil {
 		return nil, err
