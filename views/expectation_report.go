@@ -25,6 +25,14 @@ type ReportSource struct {
 	Rows          int
 }
 
+func (s ReportSource) text() string {
+	t := strings.TrimSuffix(strings.TrimSpace(s.Citation), ".")
+	if s.DOI != "" {
+		t += ", doi " + s.DOI
+	}
+	return t + " (" + countText(s.Rows, "row", "rows") + ")"
+}
+
 // reportInput is one input of a target as it was given.
 type reportInput struct{ Name, Value string }
 

@@ -50,10 +50,10 @@ func (p ExpectationPage) seriesPlots() []Plot {
 	}
 	var out []Plot
 	for i, c := range seriesColumns {
-		plot := Plot{ID: c.id, Title: c.title + " through time", Desc: "Value with its limits against age.", Left: 92, Width: 900, Height: 190,
+		plot := Plot{ID: c.id, Title: c.title + " through time", Desc: "Value with its limits against age.", Left: 74, Width: 540, Height: 150,
 			X: Axis{Min: 0, Max: math.Max(to, 1), Reverse: true}, Y: Axis{Label: c.axis}, Empty: c.title + ": no age could be answered."}
 		if i == len(seriesColumns)-1 {
-			plot.X.Label, plot.Height = "Age (Ma)", 216
+			plot.X.Label, plot.Height = "Age (Ma)", 172
 		}
 		var b Band
 		var l Line
