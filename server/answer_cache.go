@@ -45,7 +45,7 @@ func (a *App) conditional(next echo.HandlerFunc) echo.HandlerFunc {
 		if err != nil {
 			return next(c) // the handler meets the same error and says it
 		}
-		sum := sha256.Sum256([]byte(buildTag + "\n" + state + "\n" + r.URL.RequestURI()))
+		sum := sha256.Sum256([]byte(buildTag + "\n" + state + "\n" + r.Host + "\n" + r.Header.Get("Accept") + "\n" + r.URL.RequestURI()))
 		tag := `W/"` + hex.EncodeToString(sum[:12]) + `"`
 		rule := ownCache
 		if a.readOnly {
@@ -57,12 +57,21 @@ func (a *App) conditional(next echo.HandlerFunc) echo.HandlerFunc {
 			h.Set("Cache-Control", rule)
 			return c.NoContent(http.StatusNotModified)
 		}
+		key := answerKey(tag, r)
+		if keepable(c) {
+			if f := a.answers.get(key); f != nil {
+				return f.replay(c)
+			}
+		}
 		c.Response().Before(func() {
 			if c.Response().Status == http.StatusOK && h.Get("Cache-Control") == "" && h.Get("Set-Cookie") == "" {
 				h.Set("ETag", tag)
 				h.Set("Cache-Control", rule)
 			}
 		})
+		if keepable(c) {
+			return a.recorded(c, key, next)
+		}
 		return next(c)
 	}
 }

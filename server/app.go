@@ -23,6 +23,7 @@ type App struct {
 	jobs       jobs // long fits on their way
 	recomputes *recomputer
 	metrics    *metrics
+	answers    *answers // finished, for signed-out readers
 	backups    *backups // nil = none scheduled
 	began      time.Time
 	routes     map[string]bool // patterns of every route
@@ -36,7 +37,7 @@ type App struct {
 
 // newApp wires an App over an open store.
 func newApp(store *catalogue.Store, log *slog.Logger, readOnly bool) *App {
-	a := &App{store: store, log: log, readOnly: readOnly, fits: newCache(256), began: time.Now()}
+	a := &App{store: store, log: log, readOnly: readOnly, fits: newCache(256), began: time.Now(), answers: newAnswers()}
 	a.metrics = newMetrics(a)
 	a.recomputes = newRecomputer(store, log)
 	a.sessions = newSessions(store, log, readOnly)

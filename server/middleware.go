@@ -27,7 +27,7 @@ const (
 // middleware hangs what every request passes through, outermost first. The
 // log stands outside the error handler's call so that it sees the status sent.
 func (a *App) middleware(e *echo.Echo) {
-	e.Use(a.identify, a.logged, securityHeaders, a.secured, a.recovered, sameOrigin(), limitBody, compressed, a.conditional)
+	e.Use(a.identify, a.logged, securityHeaders, a.secured, a.recovered, sameOrigin(), limitBody, a.conditional, compressed)
 }
 
 // identify gives the request the id that the log and an error page share.

@@ -15,6 +15,7 @@ var openToAll = []string{
 	"/expectation", "/expectation.json", "/expectation/time", "/expectation/time.json", "/expectation/report", "/figures/expectation.svg",
 	"/figures/expectation.png", "/figures/expectation.pdf",
 	"/expectation/columns.csv", "/expectation/deep-time", "/expectation/deep-time.json", "/analyses", "/analyses/:name", "/figures/meridian.svg",
+	"/chart", "/chart.json", "/chart/land.json", "/chart/lines.json", "/recompute.json", "/recompute/:name",
 	"/measure", "/methods", "/changes", "/static/*", "/favicon.ico", "/healthz", "/metrics",
 }
 
