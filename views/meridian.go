@@ -6,6 +6,8 @@ import (
 	"strconv"
 	"sync"
 
+	"github.com/a-h/templ"
+
 	"fathombend/catalogue"
 )
 
@@ -29,6 +31,17 @@ type MeridianPage struct {
 	plain        bool           // drawn as a file: no links
 	Spin         []MeridianSpin // one palaeolatitude at several ages, under the Coriolis explanation alone
 	SpinLatitude float64
+}
+
+// analysisHref is the address of the analysis behind the headline: the same
+// rows, and sinuosity as it stands.
+func (m MeridianPage) analysisHref() templ.SafeURL {
+	q := m.Filter.Values()
+	for _, name := range []string{"sort", "page", "per_page"} {
+		q.Del(name)
+	}
+	q.Set("scale", "raw")
+	return templ.SafeURL("/regression?" + q.Encode())
 }
 
 // MeridianSpin is the expectation at the rotation rate of one age.
