@@ -68,7 +68,7 @@ func band(lat float64) int { return min(int(math.Floor(lat))+90, 179) }
 // touches.
 var fineBands = sync.OnceValue(func() *[180][]edge {
 	var b [180][]edge
-	for _, r := range mustDecode(fineText) {
+	for _, r := range fine() {
 		for i, v := range r {
 			n := r[(i+1)%len(r)]
 			for k := band(min(v[1], n[1])); k <= band(max(v[1], n[1])); k++ {
@@ -131,3 +131,9 @@ func decode(text string) ([][][2]float64, error) {
 	}
 	return rings, sc.Err()
 }
+
+// FineRings are the rings that Contains uses, as Rings gives the coarse ones:
+// for maps of a region.
+func FineRings() [][][2]float64 { return fine() }
+
+var fine = sync.OnceValue(func() [][][2]float64 { return mustDecode(fineText) })
