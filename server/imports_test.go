@@ -24,7 +24,7 @@ var mayImport = map[string][]string{
 	"stats":              {"stats/earth"},
 	"stats/earth":        {},
 	"stats/expectation":  {"stats", "stats/earth"},
-	"views":              {"catalogue", "catalogue/planform", "stats", "stats/earth", "stats/expectation"},
+	"views":              {"catalogue", "catalogue/planform", "catalogue/land", "stats", "stats/earth", "stats/expectation"},
 	"static":             {},
 	"seed":               {"catalogue", "catalogue/planform", "catalogue/land", "stats/earth"},
 }
