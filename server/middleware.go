@@ -193,10 +193,3 @@ func (a *App) invented(ctx context.Context) int {
 	}
 	return v.(int)
 }
-
-// twin is the address of the same view as data: the page's path with a suffix
-// and the same query.
-func twin(c echo.Context, suffix string) string {
-	u := url.URL{Path: strings.TrimSuffix(c.Request().URL.Path, "/") + suffix, RawQuery: c.Request().URL.RawQuery}
-	return u.String()
-}
