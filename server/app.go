@@ -54,6 +54,7 @@ func (a *App) router() *echo.Echo {
 	a.routesStatic(e)
 	a.routesMeridian(e)
 	a.routesSystems(e)
+	a.routesChart(e)
 	a.routesRegression(e)
 	a.routesExpectation(e)
 	a.routesMeasure(e)

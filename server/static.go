@@ -7,6 +7,7 @@ import (
 	"mime"
 	"net/http"
 	"path"
+	"slices"
 	"strings"
 
 	"github.com/labstack/echo/v4"
@@ -15,7 +16,7 @@ import (
 )
 
 // assets are the files served under /static/. The faces are put before the
-// style sheet: one request instead of two.
+// style sheet and the chart's after it: one request instead of three.
 var assets = readAssets(static.Files)
 
 func readAssets(files fs.FS) map[string][]byte {
@@ -28,7 +29,7 @@ func readAssets(files fs.FS) map[string][]byte {
 		out[name] = b
 		return err
 	})
-	out["fathombend.css"] = append(append([]byte{}, out["fonts.css"]...), out["fathombend.css"]...)
+	out["fathombend.css"] = slices.Concat(out["fonts.css"], out["fathombend.css"], out["chart.css"])
 	return out
 }
 

@@ -25,6 +25,9 @@ type Page struct {
 	Version      string
 	Assets       map[string]string // file name under static/ -> address with its content hash
 	Wide         bool              // the main column takes the full width
+	Release      string            // the page shows this release, "" = the catalogue as it is
+	Live         string            // address of the same view of the catalogue as it is
+	LinkedData   string            // JSON-LD about the page, "" = none
 }
 
 // User is who is signed in.
@@ -50,6 +53,7 @@ func navigation(p Page) []navItem {
 	items := []navItem{
 		{"meridian", "/", "Meridian"},
 		{"systems", "/systems", "Systems"},
+		{"chart", "/chart", "Chart"},
 		{"regression", "/regression", "Regression"},
 		{"expectation", "/expectation", "Expectation"},
 		{"measure", "/measure", "Measure"},
