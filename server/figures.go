@@ -19,7 +19,11 @@ var figureKinds = []string{"svg", "png", "pdf"}
 // policy may allow that one thing.
 func (a *App) writeFigure(c echo.Context, p views.Plot) error {
 	kind := strings.TrimPrefix(path.Ext(c.Request().URL.Path), ".")
-	b, err := p.File(kind)
+	width, err := oneOf(c.QueryParams(), "width", "", views.FigureWidths)
+	if err != nil {
+		return err
+	}
+	b, err := p.File(kind, width)
 	if err != nil {
 		return err
 	}

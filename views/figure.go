@@ -32,6 +32,7 @@ type Plot struct {
 	Equal         bool    // one unit is as long on both axes: plan views
 	NoFrame       bool    // no axes and no grid: sketches and locator maps
 	Empty         string  // sentence drawn instead of a figure with nothing in it; "" = a plain one
+	Print         Print   // what a file of the figure carries below the drawing
 }
 
 // Axis of a plot. Min = Max takes the range from the data with a margin of
@@ -102,12 +103,6 @@ func (p Plot) SVG() templ.Component {
 		_, err := io.WriteString(w, p.draw(false))
 		return err
 	})
-}
-
-// Standalone is the figure as a file of its own: the same drawing with its
-// colours inside, on white, without links.
-func (p Plot) Standalone() []byte {
-	return []byte(`<?xml version="1.0" encoding="UTF-8"?>` + "\n" + p.draw(true) + "\n")
 }
 
 // IsEmpty says whether there is anything to draw.

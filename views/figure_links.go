@@ -29,3 +29,8 @@ func figureFile(svg, kind, width string) templ.SafeURL {
 }
 
 func upper(kind string) string { return strings.ToUpper(kind) }
+
+// figureAs is the address of a figure as another kind of file.
+func figureAs(svg templ.SafeURL, kind string) templ.SafeURL {
+	return templ.SafeURL(strings.Replace(string(svg), ".svg", "."+kind, 1))
+}

@@ -73,13 +73,3 @@ func (c *canvas) tip(q Point, x, y float64) {
 	}
 	c.put(`<text class="tip" x="`, num2(x+dx), `" y="`, num2(y-8), `" text-anchor="`, anchor, `">`, esc(text), `</text>`)
 }
-
-// standaloneStyle colours a figure that stands alone: the light theme on
-// white, in fonts every machine has.
-const standaloneStyle = `text{font:15px "Source Sans 3",Helvetica,Arial,sans-serif;fill:#3A4750}.axis-label,.label{fill:#14212B}.label{font-size:14px}` +
-	`.halo{paint-order:stroke;stroke:#fff;stroke-width:4px;stroke-linejoin:round}.frame,.tick{stroke:#7C858C;fill:none}.grid{stroke:#E2DED4;fill:none}` +
-	`.band{fill:#3A8EA1;fill-opacity:.18}.band.b2{fill:#B5762A}.line{fill:none;stroke:#164E65;stroke-width:2.25;stroke-linejoin:round}.line.l2{stroke:#B5762A}.line.l3{stroke:#4A5862}.line.l4{stroke:#3A8EA1}` +
-	`.dash{stroke-dasharray:7 5}.dot-dash{stroke-dasharray:1.5 4;stroke-linecap:round}.rule{stroke:#4A5862;stroke-width:1.25;fill:none}` +
-	`.mark{stroke:#20647A;fill:#20647A;fill-opacity:.75;stroke-width:1.25}.mark.ochre{stroke:#B5762A;fill:#B5762A}.mark.alarm{stroke:#A6322A;fill:#A6322A}.mark.soft{stroke:#80868A;fill:#80868A}` +
-	`.mark.f0{fill:#80868A;stroke:#80868A}.mark.f1{fill:#3A8EA1;stroke:#3A8EA1}.mark.f2{fill:#2C7A8F;stroke:#2C7A8F}.mark.f3{fill:#20647A;stroke:#20647A}.mark.f4{fill:#164E65;stroke:#164E65}.mark.f5{fill:#0E384C;stroke:#0E384C}.mark.f6{fill:#082436;stroke:#082436}` +
-	`.mark.hollow{fill:#fff;fill-opacity:1;stroke-width:1.75}.whisker{stroke:#4A5862;stroke-width:1.25;fill:none}.land{fill:#F1ECE0;stroke:#7C858C;stroke-width:.6}`

@@ -15,6 +15,7 @@ type canvas struct {
 	l, r, t, b float64 // margins
 	x, y       scale
 	alone      bool // a file of its own: no links
+	foot       foot // of a file: key, caption and settings below the drawing
 }
 
 func esc(s string) string { return html.EscapeString(s) }
@@ -35,7 +36,7 @@ func (p Plot) draw(alone bool) string {
 	if c.h <= 0 {
 		c.h = 440
 	}
-	small := c.w < 560
+	small := c.w < 560 || alone // files are lettered alike at every width
 	c.l, c.r, c.t, c.b = 76, 18, 16, 62
 	if small {
 		c.l, c.b = 58, 52
@@ -54,10 +55,13 @@ func (p Plot) draw(alone bool) string {
 	if empty {
 		c.h = 96
 	}
+	if alone {
+		c.foot = newFoot(p.Print, p.Title, c.w, c.h)
+	}
 	c.open(small)
 	if empty {
 		c.sentence()
-		c.put("</svg>")
+		c.put(c.foot.markup, "</svg>")
 		return c.String()
 	}
 	c.y = newScale(p.Y, ys, c.h-c.b, c.t)
@@ -89,7 +93,7 @@ func (p Plot) draw(alone bool) string {
 		c.point(q)
 	}
 	c.labels()
-	c.put("</svg>")
+	c.put(c.foot.markup, "</svg>")
 	return c.String()
 }
 
@@ -101,14 +105,15 @@ func (c *canvas) open(small bool) {
 	id := esc(c.p.ID)
 	c.put(`<svg `)
 	if c.alone {
-		c.put(`xmlns="http://www.w3.org/2000/svg" width="`, num2(c.w), `" height="`, num2(c.h), `" `)
+		height := c.h + c.foot.height
+		c.put(`xmlns="http://www.w3.org/2000/svg" width="`, mm(c.w), `" height="`, mmHeight(c.w, height), `" `)
 	} else {
 		c.put(`id="`, id, `" `)
 	}
-	c.put(`class="`, class, `" viewBox="0 0 `, num2(c.w), " ", num2(c.h), `" role="group" aria-labelledby="`, id, `-t" aria-describedby="`, id, `-d">`)
+	c.put(`class="`, class, `" viewBox="0 0 `, num2(c.w), " ", num2(c.h+c.foot.height), `" role="group" aria-labelledby="`, id, `-t" aria-describedby="`, id, `-d">`)
 	c.put(`<title id="`, id, `-t">`, esc(c.p.Title), `</title><desc id="`, id, `-d">`, esc(c.p.Desc), `</desc>`)
 	if c.alone {
-		c.put(`<style>`, standaloneStyle, `</style><rect width="100%" height="100%" fill="#fff"/>`)
+		c.put(`<rect x="0" y="0" width="`, num2(c.w), `" height="`, num2(c.h+c.foot.height), `" fill="#fff"/>`)
 	}
 }
 
