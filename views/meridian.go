@@ -248,6 +248,9 @@ type crowd struct {
 
 const crowdRow = 16.0
 
+// hair is far less than can be seen and far more than rounding, page units.
+const hair = 1e-6
+
 func newCrowd(height float64) *crowd {
 	return &crowd{rows: make([][][4]float64, int(height/crowdRow)+2)}
 }
@@ -265,14 +268,16 @@ func (g *crowd) take(x0, x1, y0, y1 float64) {
 }
 
 // free is the leftmost start at or right of x where the span from left to
-// right of it is free between y0 and y1.
+// right of it is free between y0 and y1. Touching within a hair is free:
+// x moved to the end of a span must not be found inside it again by rounding,
+// which would never end.
 func (g *crowd) free(x, y0, y1, left, right, pad float64) float64 {
 	a, b := g.span(y0, y1)
 	for moved := true; moved; {
 		moved = false
 		for i := a; i <= b; i++ {
 			for _, t := range g.rows[i] {
-				if t[2] < y1 && t[3] > y0 && t[0] < x+right+pad && t[1] > x+left-pad {
+				if t[2] < y1 && t[3] > y0 && t[0] < x+right+pad && t[1] > x+left-pad+hair {
 					x, moved = t[1]-left+pad, true
 				}
 			}
