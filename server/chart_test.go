@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"math"
 	"net/http"
+	"net/url"
 	"strings"
 	"testing"
 
@@ -211,6 +212,45 @@ func TestBrowserChartMoves(t *testing.T) {
 		t.Fatal(err)
 	}
 	waitFor(t, ctx, `!location.search.includes("zoom=6")`)
+}
+
+func TestBrowserChartBox(t *testing.T) {
+	s := newDemoSite(t)
+	ctx := openBrowser(t)
+	open(t, ctx, s.base+"/chart")
+	waitFor(t, ctx, chartReady)
+	all := evaluate[int](t, ctx, `document.querySelectorAll("#chart-list li").length`)
+	if err := chromedp.Do(ctx, chromedp.Click("#chart-box")); err != nil {
+		t.Fatal(err)
+	}
+	drag(t, ctx, 0.05, 0.02, 0.95, 0.4)
+	waitFor(t, ctx, `location.search.includes("bbox=") && `+chartReady)
+	var box [4]float64
+	q, err := url.ParseQuery(strings.TrimPrefix(evaluate[string](t, ctx, `location.search`), "?"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	if _, err := fmt.Sscanf(q.Get("bbox"), "%g,%g,%g,%g", &box[0], &box[1], &box[2], &box[3]); err != nil || !(box[1] < box[3]) || box[3] < 70 {
+		t.Errorf("bbox %q", q.Get("bbox"))
+	}
+	some := evaluate[int](t, ctx, `document.querySelectorAll("#chart-list li").length`)
+	if some == 0 || some >= all {
+		t.Errorf("%d systems in the box, %d in all", some, all)
+	}
+	if n := len(s.visitor().chartData("/chart.json?bbox=" + url.QueryEscape(q.Get("bbox"))).Systems); n != some {
+		t.Errorf("the list has %d systems, the data of the address %d", some, n)
+	}
+	if v := evaluate[string](t, ctx, `document.getElementById("f-bbox").value`); v != q.Get("bbox") {
+		t.Errorf("the field says %q, the address %q", v, q.Get("bbox"))
+	}
+	// Without dragging: what is in the view becomes the filter, in the polar
+	// view a cap.
+	open(t, ctx, s.base+"/chart?view=north")
+	waitFor(t, ctx, chartReady)
+	if err := chromedp.Do(ctx, chromedp.Click("#chart-take")); err != nil {
+		t.Fatal(err)
+	}
+	waitFor(t, ctx, `new URLSearchParams(location.search).get("bbox") === "-180,30,180,90"`)
 }
 
 // The map that moves and the one the server draws agree to a hundredth of a

@@ -19,9 +19,22 @@ window.chartHands = (api) => {
   };
   api.boxButton.addEventListener("click", () => setBoxing(!boxing));
 
+  // The place under the pointer; off the map, the nearest on its level, or on
+  // the nearest level that has one.
+  const placeAt = ([x, y]) => {
+    const p = api.projection();
+    for (let up = 0; p && up <= 1; up += 0.01) {
+      for (let along = 0; along <= 1; along += 0.01) {
+        const q = p.place(x + along * (p.w / 2 - x), y + up * (p.h / 2 - y));
+        if (q) return q;
+      }
+    }
+    return null;
+  };
+
   // The box from the first corner to here; it goes round the way the pointer went.
-  const boxTo = ([x, y]) => {
-    const q = api.projection()?.place(x, y);
+  const boxTo = (at) => {
+    const q = placeAt(at);
     if (!q || !corner) return null;
     const step = M.difference(q[1], corner.at);
     corner.at = q[1];
@@ -46,9 +59,9 @@ window.chartHands = (api) => {
     if (pointers.size === 2) { pinchFrom(); corner = null; return; }
     if (boxing || e.shiftKey) {
       if (corner) return; // the second corner of two presses
-      const q = api.projection().place(...at);
+      const q = placeAt(at);
       if (!boxing) setBoxing(true);
-      if (q) corner = { lat: q[0], lon: q[1], at: q[1], east: 0 };
+      if (q) corner = { lat: q[0], lon: q[1], at: q[1], east: 0, pressed: at };
       return;
     }
     grab = { at, p: api.projection(), view: { ...api.view() } };
@@ -81,7 +94,7 @@ window.chartHands = (api) => {
     }
     if (corner) {
       state.selecting = boxTo(at) || state.selecting;
-      moved = moved || true;
+      moved = true;
       api.redraw();
       return;
     }
@@ -103,11 +116,10 @@ window.chartHands = (api) => {
     if (!pointers.delete(e.pointerId)) return;
     canvas.classList.remove("moving");
     if (pinch) { if (!pointers.size) pinch = null; grab = null; return; }
-    const at = where(e), p = api.projection();
+    const at = where(e);
     if (corner) {
-      const [x, y] = p.at(corner.lat, corner.lon);
       // A press without a drag sets the first corner; the next one ends the box.
-      if (Math.hypot(at[0] - x, at[1] - y) < 6) { state.selecting = null; return; }
+      if (Math.hypot(at[0] - corner.pressed[0], at[1] - corner.pressed[1]) < 6) { state.selecting = null; return; }
       finish(boxTo(at) || state.selecting);
       return;
     }

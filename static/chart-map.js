@@ -197,6 +197,24 @@ window.chartMap = (() => {
     if (p.azimuthal && east - west < 300) { b.lon0 = p.view.lon + west; b.span = east - west; }
     return b;
   };
+  // The box of meridians and parallels that holds a view: west, south, east, north.
+  const viewBox = (p) => {
+    const n = 60, b = bounds(p), edge = p.view.name === "north" ? [polarEdge, 90] : p.view.name === "south" ? [-90, -polarEdge] : [-90, 90];
+    let { south, north } = b, off = false;
+    for (let i = 0; i <= n; i++) for (const [px, py] of [[0, i / n], [1, i / n], [i / n, 0], [i / n, 1]]) {
+      const q = p.place(p.w * px, p.h * py);
+      if (!q) off = true; else { south = Math.min(south, q[0]); north = Math.max(north, q[0]); }
+    }
+    if (p.polar && off) { if (p.lat0 > 0) south = polarEdge; else north = -polarEdge; }
+    if (!p.azimuthal) { if (!p.place(p.w / 2, 0)) north = 90; if (!p.place(p.w / 2, p.h)) south = -90; }
+    let west = b.lon0, span = b.span;
+    if (!p.azimuthal && !off) {
+      const d = [0, 1].flatMap((px) => Array.from({ length: n + 1 }, (_, i) => difference(p.place(p.w * px, p.h * i / n)[1], p.lon0)));
+      west = p.lon0 + Math.min(...d); span = Math.max(...d) - Math.min(...d);
+    }
+    const round = span >= 359;
+    return [round ? -180 : wrap(west), clamp(south, ...edge), round ? 180 : wrap(west + span), clamp(north, ...edge)];
+  };
   const degreeStep = (d) => [0.0005, 0.001, 0.002, 0.005, 0.01, 0.02, 0.05, 0.1, 0.2, 0.5, 1, 2, 5, 10, 15].find((s) => d <= s) || 30;
   const steps = (p, b) => {
     const room = Math.min(95, p.w / 4);
@@ -307,5 +325,5 @@ window.chartMap = (() => {
     return runs;
   };
 
-  return { project, wrap, difference, arc, equalEarth, ringsOf, ringsOfDifferences, landOnPage, outline, bounds, steps, graticule, labels, scaleBar, boxRuns, latText, lonText, tidy, near, maxZoom };
+  return { project, wrap, difference, arc, equalEarth, ringsOf, ringsOfDifferences, landOnPage, outline, bounds, viewBox, steps, graticule, labels, scaleBar, boxRuns, latText, lonText, tidy, near, maxZoom };
 })();

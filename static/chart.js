@@ -116,8 +116,7 @@
       if (!p) return;
       if (p.r > 900 && !state.fine) get(root.dataset.fine).then((a) => { state.rings = M.ringsOfDifferences(a); state.fine = true; redraw(); }).catch(() => { /* the coarse one stays */ });
       if (!p.azimuthal || view.zoom < M.near) return;
-      const b = M.bounds(p), round = b.span >= 360;
-      const box = [round ? -180 : M.wrap(b.lon0), Math.max(b.south, -90), round ? 180 : M.wrap(b.lon0 + b.span), Math.min(b.north, 90)].map((v) => M.tidy(v));
+      const box = M.viewBox(p).map((v) => M.tidy(v, 1e4));
       const url = new URL(root.dataset.lines, location.href);
       url.searchParams.set("in", box.join(","));
       const address = url.pathname + url.search;
@@ -202,12 +201,7 @@
     const api = { root, canvas, view: () => view, projection: () => p, redraw, move, shift, hits, hover, openCard, closeCard, say, state, whole: () => move(whole(view.name)), boxButton,
       select: (box) => { const field = byId("f-bbox"); field.value = box ? box.map((v) => M.tidy(v, 1e4)).join(",") : ""; field.dispatchEvent(new Event("change", { bubbles: true })); } };
     window.chartHands(api);
-    takeButton.addEventListener("click", () => {
-      if (!p) return;
-      const b = M.bounds(p), round = b.span >= 360 || !p.azimuthal && view.zoom < 1.2;
-      const edge = view.name === "north" ? [30, 90] : view.name === "south" ? [-90, -30] : [-90, 90];
-      api.select([round ? -180 : M.wrap(b.lon0), Math.max(b.south, edge[0]), round ? 180 : M.wrap(b.lon0 + b.span), Math.min(b.north, edge[1])]);
-    });
+    takeButton.addEventListener("click", () => { if (p) api.select(M.viewBox(p)); });
     for (const a of root.parentElement.querySelectorAll(".chart-steps a")) {
       a.addEventListener("click", (e) => {
         if (e.ctrlKey || e.metaKey || e.shiftKey || e.button !== 0) return;
