@@ -7,9 +7,9 @@ import (
 	"testing"
 )
 
-// slowQuestion takes the program some seconds: the broken line with as many
+// slowQuestion takes the program some seconds: the broken line and two quantile lines with as many
 // resamples as are allowed.
-const slowQuestion = "model=broken_line:abs_latitude&response=any&scale=raw&cluster=parent_deposit&resamples=100000&permutations=9999&seed=11"
+const slowQuestion = "model=broken_line:abs_latitude&model=quantile_50:abs_latitude&model=quantile_10:abs_latitude&response=any&scale=raw&cluster=parent_deposit&resamples=100000&permutations=9999&seed=11"
 
 // TestProgress: a person sees how far a long fit has come and can cancel it; a
 // program waits for the answer.
