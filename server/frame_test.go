@@ -32,7 +32,7 @@ func TestEveryPageHasItsFrame(t *testing.T) {
 		if n := d.Find("[style]").Length(); n > 0 {
 			t.Errorf("%s: %d style attributes", p, n)
 		}
-		if n := d.Find("script:not([src]), [onclick], [onchange]").Length(); n > 0 {
+		if n := d.Find("script:not([src]):not([type='application/ld+json']), [onclick], [onchange]").Length(); n > 0 {
 			t.Errorf("%s: %d inline scripts", p, n)
 		}
 		uniqueIDs(t, p, d)
