@@ -19,11 +19,11 @@ func (s *Store) Export(ctx context.Context, w io.Writer, f Filter) (rows int, er
 		Record(&r, record)
 		return out.Write(record)
 	})
-	out.Flush()
-	if err == nil {
-		err = out.Error()
+	if err != nil {
+		return rows, fault("export", err) // not even the header, if nothing came before it
 	}
-	return rows, fault("export", err)
+	out.Flush()
+	return rows, fault("export", out.Error())
 }
 
 // Record fills a CSV record with the cells of a row as Export writes them;

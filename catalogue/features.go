@@ -206,7 +206,7 @@ func (s *Store) EachSystem(ctx context.Context, f Filter, visit func(Row) error)
 type Extent struct {
 	BBox     BBox
 	From, To time.Time
-	Count    int // systems, or lines
+	Count    int // measurements, or lines
 }
 
 // Extents returns those of the systems, and of their measurements, in a release
@@ -222,4 +222,48 @@ func (s *Store) Extents(ctx context.Context, release string) (e Extent, err erro
 	e.BBox = BBox{west.V, south.V, east.V, north.V}
 	e.From, e.To = parseTime(from.String), parseTime(to.String)
 	return e, err
+}
+
+// NewSystem is a newly accepted system.
+type NewSystem struct {
+	Slug, Name string
+	At         time.Time // when it was accepted
+	Best       Row
+}
+
+// NewSystems lists the systems accepted last, newest first.
+func (s *Store) NewSystems(ctx context.Context, most int) ([]NewSystem, error) {
+	f := Filter{}
+	w, err := f.condition()
+	if err != nil {
+		return nil, err
+	}
+	var out []NewSystem
+	err = s.read(ctx, func(tx *sql.Tx) error {
+		rows, err := tx.QueryContext(ctx, "SELECT s.id, s.created_at FROM systems s WHERE EXISTS (SELECT 1 FROM (SELECT m.system_id AS y"+fromRows+w.String()+
+			") WHERE y = s.id) ORDER BY s.created_at DESC, s.id DESC LIMIT ?", append(w.args, most)...)
+		if err != nil {
+			return err
+		}
+		defer rows.Close()
+		var ids []int64
+		at := map[int64]string{}
+		for rows.Next() {
+			var id int64
+			var text string
+			if err := rows.Scan(&id, &text); err != nil {
+				return err
+			}
+			ids, at[id] = append(ids, id), text
+		}
+		if err := rows.Err(); err != nil || len(ids) == 0 {
+			return err
+		}
+		systems, err := systemsByID(ctx, tx, w, ids)
+		for i, y := range systems {
+			out = append(out, NewSystem{y.Slug, y.Name, parseTime(at[ids[i]]), y.Best()})
+		}
+		return err
+	})
+	return out, err
 }

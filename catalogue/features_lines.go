@@ -273,3 +273,26 @@ func CutAtAntimeridian(positions [][]float64) [][][]float64 {
 	}
 	return parts
 }
+
+// LineExtents is Extents of the stored lines.
+func (s *Store) LineExtents(ctx context.Context, release string) (e Extent, err error) {
+	e.BBox = BBox{West: 180, South: 90, East: -180, North: -90}
+	err = s.EachLine(ctx, Filter{Release: release}, func(l *LineFeature) error {
+		if e.Count == 0 || l.Updated.Before(e.From) {
+			e.From = l.Updated
+		}
+		if l.Updated.After(e.To) {
+			e.To = l.Updated
+		}
+		e.Count++
+		positions, err := Positions(l.Line)
+		for _, part := range CutAtAntimeridian(positions) {
+			for _, p := range part {
+				e.BBox.West, e.BBox.East = min(e.BBox.West, p[0]), max(e.BBox.East, p[0])
+				e.BBox.South, e.BBox.North = min(e.BBox.South, p[1]), max(e.BBox.North, p[1])
+			}
+		}
+		return err
+	})
+	return e, err
+}

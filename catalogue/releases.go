@@ -210,3 +210,101 @@ func (s *Store) LastChange(ctx context.Context) (time.Time, error) {
 	}
 	return parseTime(at.String), fault("last change", err)
 }
+
+// ReleaseCounts is what to look at before a release is frozen.
+type ReleaseCounts struct {
+	Waiting            int // submissions that wait for review
+	WithoutLicence     int // measurements whose licence is not said
+	WithoutContributor int
+	Invented           int
+}
+
+// ReleaseCounts counts over the rows a release would hold.
+func (s *Store) ReleaseCounts(ctx context.Context) (n ReleaseCounts, err error) {
+	f := Filter{}
+	w, err := f.condition()
+	if err != nil {
+		return n, err
+	}
+	err = s.r.QueryRowContext(ctx, `SELECT (SELECT count(*) FROM submissions WHERE state = 'submitted'), count(CASE WHEN m.licence = '' THEN 1 END),
+		count(CASE WHEN m.contributor = '' THEN 1 END), count(CASE WHEN substr(m.notes, 1, ?) = ? THEN 1 END)`+fromRows+w.String(),
+		append([]any{len(InventedMark), InventedMark}, w.args...)...).Scan(&n.Waiting, &n.WithoutLicence, &n.WithoutContributor, &n.Invented)
+	return n, fault("release counts", err)
+}
+
+// Summary is what rows hold together.
+type Summary struct {
+	Systems, Measurements, Invented int
+	Authors                         []Author
+	Licence                         string // the widest of ReleaseLicences that the rows allow
+}
+
+// Summary sums up the rows under a filter.
+func (s *Store) Summary(ctx context.Context, f Filter) (*Summary, error) {
+	w, err := f.condition()
+	if err != nil {
+		return nil, err
+	}
+	out := &Summary{}
+	err = s.read(ctx, func(tx *sql.Tx) error {
+		q, err := at(ctx, tx, f.Release)
+		if err != nil {
+			return err
+		}
+		if err := q.QueryRowContext(ctx, "SELECT count(*), count(DISTINCT m.system_id), count(CASE WHEN substr(m.notes, 1, ?) = ? THEN 1 END)"+fromRows+w.String(),
+			append([]any{len(InventedMark), InventedMark}, w.args...)...).Scan(&out.Measurements, &out.Systems, &out.Invented); err != nil {
+			return err
+		}
+		authors, err := countBy(ctx, q, "m.contributor", w)
+		if err != nil {
+			return err
+		}
+		if out.Authors, err = authorsOf(ctx, tx, authors); err != nil {
+			return err
+		}
+		licences, err := countBy(ctx, q, "m.licence", w)
+		r := Release{}
+		for v, n := range licences {
+			r.Licences = append(r.Licences, FacetValue{v, n})
+		}
+		if err != nil || r.settleLicence() != nil {
+			return err
+		}
+		out.Licence = r.Licence
+		return nil
+	})
+	return out, err
+}
+
+func countBy(ctx context.Context, q querier, expr string, w *where) (map[string]int, error) {
+	rows, err := q.QueryContext(ctx, "SELECT "+expr+", count(*)"+fromRows+w.String()+" GROUP BY 1", w.args...)
+	if err != nil {
+		return nil, err
+	}
+	defer rows.Close()
+	out := map[string]int{}
+	for rows.Next() {
+		var text string
+		var n int
+		if err := rows.Scan(&text, &n); err != nil {
+			return nil, err
+		}
+		out[text] = n
+	}
+	return out, rows.Err()
+}
+
+// SystemCounts counts the measurements under a filter by the slug of their
+// system.
+func (s *Store) SystemCounts(ctx context.Context, f Filter) (map[string]int, error) {
+	w, err := f.condition()
+	if err != nil {
+		return nil, err
+	}
+	q, err := at(ctx, s.r, f.Release)
+	if err != nil {
+		return nil, fault("count", err)
+	}
+	out, err := countBy(ctx, q, "s.slug", w)
+	return out, fault("count", err)
+}

@@ -20,7 +20,11 @@ func FormatNumber(n Number) string {
 // Get returns the cell of the column as text.
 func (c Column) Get(r *Row) string {
 	if c.num != nil {
-		return FormatNumber(*c.num(r))
+		n := *c.num(r)
+		if c.Kind == KindCount && n.Valid {
+			return strconv.FormatFloat(n.V, 'f', -1, 64) // 1000000, never 1e+06
+		}
+		return FormatNumber(n)
 	}
 	return *c.text(r)
 }

@@ -74,6 +74,9 @@ var access = map[string]role{
 	"POST /recompute":               curator,
 	"POST /recompute/:name":         curator,
 
+	"POST /releases":           curator,
+	"POST /releases/:name/doi": curator,
+
 	// These take their question in the body and change nothing.
 	"POST /regression/freeze":       contributor,
 	"POST /regression/cancel":       reader,

@@ -63,6 +63,7 @@ func (a *App) router() *echo.Echo {
 	a.routesReview(e)
 	a.routesRecompute(e)
 	a.routesMethods(e)
+	a.routesTakingAway(e)
 	a.routesStatus(e)
 	a.routesChanges(e)
 	a.routes = map[string]bool{}

@@ -88,7 +88,11 @@ func (a *App) expect(ctx context.Context, f catalogue.Filter, t expectation.Targ
 	if err != nil {
 		return nil, err
 	}
-	return fits.Expect(ctx, t)
+	result, err := fits.Expect(ctx, t)
+	if err == nil && f.Release != "" {
+		result.Settings["release"], err = a.store.ReleaseName(ctx, f.Release)
+	}
+	return result, err
 }
 
 // expectationPage shows the form, and under it the answer when something was

@@ -37,6 +37,7 @@ func commands() []command {
 		{"expect", "answer a CSV of targets", runExpect},
 		{"expectation", "the same as expect", runExpect},
 		{"account", "add people, set their passwords and roles", runAccount},
+		{"release", "freeze the accepted catalogue under a name", runRelease},
 		{"backup", "copy a catalogue while it is in use", runBackup},
 		{"restore", "make a catalogue from a backup", runRestore},
 		{"check", "look for faults and odd values", runCheck},

@@ -31,6 +31,9 @@ func (a *App) meridian(c echo.Context) error {
 		return err
 	}
 	m.Page = a.page(c, "Meridian", "meridian")
+	if m.LinkedData, err = a.catalogueLinkedData(c.Request().Context(), a.baseAddress(c)); err != nil {
+		return err
+	}
 	m.Wide = true
 	table := m.Filter.Values()
 	m.CSV, m.JSON, m.GeoJSON = withQuery("/systems.csv", table), withQuery("/systems.json", table), withQuery("/systems.geojson", table)
@@ -112,7 +115,7 @@ func (a *App) computeMeridian(ctx context.Context, f catalogue.Filter) (*views.M
 		m.Items = append(m.Items, meridianItem(r))
 	}
 	m.Layouts = views.NewMeridianLayouts(m.Items)
-	if _, m.Total, err = a.store.Systems(ctx, catalogue.Filter{PerPage: 1}); err != nil {
+	if _, m.Total, err = a.store.Systems(ctx, catalogue.Filter{PerPage: 1, Release: f.Release}); err != nil {
 		return nil, err
 	}
 	if m.Total == 0 {

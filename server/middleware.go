@@ -164,6 +164,8 @@ func (a *App) page(c echo.Context, title, nav string) views.Page {
 		Assets: assetAddresses, Notice: a.takeNotice(c),
 	}
 	p.InventedRows = a.invented(ctx)
+	p.Base = a.baseAddress(c)
+	a.nameReleaseOf(ctx, &p)
 	if u := a.user(c); u != nil {
 		p.User = &views.User{Name: u.Name, Credit: u.Credit, Role: u.Role}
 	}

@@ -87,7 +87,7 @@ func problemOf(err error) problem {
 // wantsData says whether the address asks for data rather than a page.
 func wantsData(c echo.Context) bool {
 	switch path.Ext(c.Request().URL.Path) {
-	case ".json", ".csv", ".geojson":
+	case ".json", ".csv", ".geojson", ".zip", ".bib", ".ris", ".atom":
 		return true
 	}
 	return strings.HasPrefix(c.Request().URL.Path, "/features")

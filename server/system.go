@@ -28,7 +28,11 @@ func (a *App) system(c echo.Context) error {
 	if err != nil {
 		return err
 	}
-	if err := allow(q); err != nil {
+	if err := allow(q, []string{"release"}); err != nil {
+		return err
+	}
+	f, err := filterOf(q)
+	if err != nil {
 		return err
 	}
 	slug, err := url.PathUnescape(c.Param("slug"))
@@ -39,7 +43,7 @@ func (a *App) system(c echo.Context) error {
 	if suffix != ".json" && suffix != ".geojson" {
 		suffix = ""
 	}
-	detail, err := a.store.System(c.Request().Context(), strings.TrimSuffix(slug, suffix))
+	detail, err := a.store.SystemAt(c.Request().Context(), strings.TrimSuffix(slug, suffix), f.Release)
 	if err != nil {
 		return err
 	}
@@ -49,23 +53,25 @@ func (a *App) system(c echo.Context) error {
 	case ".geojson":
 		return writeGeoJSON(c, systemFeatures(detail))
 	}
-	return a.systemPage(c, detail)
+	return a.systemPage(c, detail, f)
 }
 
-func (a *App) systemPage(c echo.Context, d *catalogue.Detail) error {
+// systemPage shows a system as of the release of f.
+func (a *App) systemPage(c echo.Context, d *catalogue.Detail, f catalogue.Filter) error {
 	ctx := c.Request().Context()
 	p := views.SystemPage{Detail: d, Item: meridianItem(d.Best()), Land: land.Rings(), LandCredit: land.Credit}
 	var err error
 	if p.Lines, err = a.systemLines(ctx, d); err != nil {
 		return err
 	}
-	if err := a.systemFit(ctx, &p); err != nil {
+	if err := a.systemFit(ctx, f, &p); err != nil {
 		return err
 	}
 	p.Page = a.page(c, d.Name, "systems")
 	base := "/systems/" + d.Slug
-	p.JSON, p.GeoJSON = base+".json", base+".geojson"
-	p.CSV = withQuery("/systems.csv", url.Values{"q": {`"` + d.Name + `"`}})
+	p.JSON, p.GeoJSON = withQuery(base+".json", f.Values()), withQuery(base+".geojson", f.Values())
+	f.Text = `"` + d.Name + `"`
+	p.CSV = withQuery("/systems.csv", f.Values())
 	return render(c, http.StatusOK, views.System(p))
 }
 
@@ -73,6 +79,9 @@ func (a *App) systemPage(c echo.Context, d *catalogue.Detail) error {
 // a revision.
 func (a *App) systemLines(ctx context.Context, d *catalogue.Detail) ([]views.SystemLine, error) {
 	key := fmt.Sprintf("lines|%s|%d", d.Slug, d.Revision)
+	for _, l := range d.Centrelines {
+		key += fmt.Sprintf("|%d", l.ID)
+	}
 	v, err := a.fits.do(ctx, key, func(context.Context) (any, error) {
 		var out []views.SystemLine
 		for _, l := range d.Centrelines {
@@ -116,8 +125,8 @@ func drawnLine(l catalogue.Centreline) views.SystemLine {
 
 // systemFit places the system among all submarine systems: the default
 // regression on the Coriolis parameter, and the nearest in it.
-func (a *App) systemFit(ctx context.Context, p *views.SystemPage) error {
-	analysis, err := a.analyse(ctx, catalogue.Filter{}, stats.DefaultRequest())
+func (a *App) systemFit(ctx context.Context, f catalogue.Filter, p *views.SystemPage) error {
+	analysis, err := a.analyse(ctx, catalogue.Filter{Release: f.Release}, stats.DefaultRequest())
 	var refused interface{ Input() (string, string) }
 	if errors.As(err, &refused) {
 		_, p.FitWhy = refused.Input()

@@ -75,21 +75,13 @@ func (a *App) systemsCSV(c echo.Context) error {
 		return err
 	}
 	f.Page, f.PerPage = 0, 0
-	h := c.Response().Header()
-	h.Set(echo.HeaderContentType, "text/csv; charset=utf-8")
-	h.Set(echo.HeaderContentDisposition, `attachment; filename="fathombend-systems.csv"`)
-	if c.Request().Method == http.MethodHead {
-		return c.NoContent(http.StatusOK)
-	}
-	if _, err := a.store.Export(c.Request().Context(), c.Response(), f); err != nil {
-		if c.Response().Committed {
-			a.log.Error("export broke off", "request_id", requestID(c), "err", err)
-			panic(http.ErrAbortHandler)
-		}
-		h.Del(echo.HeaderContentDisposition)
+	if done, err := a.download(c, "text/csv; charset=utf-8; header=present", fileName("systems", f.Release, ".csv"), f.Release); done || err != nil {
 		return err
 	}
-	return nil
+	return a.stream(c, func(w *patientWriter) error {
+		_, err := a.store.Export(c.Request().Context(), w, f)
+		return err
+	})
 }
 
 // dimensionsCSV is the table of quantiles under the table of systems.

@@ -21,8 +21,8 @@ type featureCollection struct {
 	Type         string    `json:"type"`
 	Matched      int       `json:"numberMatched"`
 	Returned     int       `json:"numberReturned"`
-	InventedRows int       `json:"invented_rows"`
 	Features     []feature `json:"features"`
+	InventedRows int       `json:"invented_rows"`
 }
 
 type pointGeometry struct {
@@ -31,36 +31,80 @@ type pointGeometry struct {
 }
 
 // systemsGeoJSON is one point a system, where its best measurement was made,
-// with that measurement's columns. Without page and per_page it has all.
+// with that measurement's columns. Without page and per_page it has all, one
+// after the other, in the order of acceptance or of sort.
 func (a *App) systemsGeoJSON(c echo.Context) error {
 	q, f, err := systemsQuestion(c)
 	if err != nil {
 		return err
 	}
 	ctx := c.Request().Context()
-	all := q.Get("page") == "" && q.Get("per_page") == ""
-	if all {
-		f.PerPage = catalogue.MaxPerPage
+	if q.Get("page") != "" || q.Get("per_page") != "" {
+		return a.systemsGeoJSONPage(c, f)
 	}
-	out := featureCollection{Type: "FeatureCollection"}
-	for f.Page = max(f.Page, 1); ; f.Page++ {
-		systems, total, err := a.store.Systems(ctx, f)
+	_, matched, err := a.store.CountFeatures(ctx, catalogue.FeatureQuery{Filter: f})
+	if err != nil {
+		return err
+	}
+	if done, err := a.download(c, "application/geo+json", "", f.Release); done || err != nil {
+		return err
+	}
+	return a.stream(c, func(w *patientWriter) error {
+		b := append([]byte(`{"type":"FeatureCollection","numberMatched":`), itoa(matched)...)
+		b = append(b, `,"features":[`...)
+		returned, invented := 0, 0
+		err := a.store.EachSystem(ctx, f, func(r catalogue.Row) error {
+			if returned > 0 {
+				b = append(b, ',')
+			}
+			returned++
+			if r.Invented {
+				invented++
+			}
+			b = appendFeature(b, r.System, &r)
+			if len(b) < 32<<10 {
+				return nil
+			}
+			_, err := w.Write(b)
+			b = b[:0]
+			return err
+		})
 		if err != nil {
 			return err
 		}
-		out.Matched = total
-		for _, s := range systems {
-			best := s.Best()
-			if best.Invented {
-				out.InventedRows++
-			}
-			out.Features = append(out.Features, pointFeature(s.Slug, &best))
-		}
-		if !all || len(systems) == 0 || len(out.Features) >= total {
-			break
-		}
+		b = append(b, `],"numberReturned":`+itoa(returned)+`,"invented_rows":`+itoa(invented)+"}\n"...)
+		_, err = w.Write(b)
+		return err
+	})
+}
+
+// appendFeature writes pointFeature as json.Marshal would.
+func appendFeature(b []byte, id string, r *catalogue.Row) []byte {
+	b = appendText(append(b, `{"type":"Feature","id":`...), id)
+	b = append(b, `,"geometry":`...)
+	if r.LatitudeDeg.Valid && r.LongitudeDeg.Valid {
+		b = appendFloat(append(b, `{"type":"Point","coordinates":[`...), catalogue.NormalLongitude(r.LongitudeDeg.V))
+		b = append(appendFloat(append(b, ','), r.LatitudeDeg.V), "]}"...)
+	} else {
+		b = append(b, "null"...)
 	}
-	out.Returned = len(out.Features)
+	return append(appendRow(append(b, `,"properties":{`...), r), "}}"...)
+}
+
+// systemsGeoJSONPage is one page of the table.
+func (a *App) systemsGeoJSONPage(c echo.Context, f catalogue.Filter) error {
+	systems, total, err := a.store.Systems(c.Request().Context(), f)
+	if err != nil {
+		return err
+	}
+	out := featureCollection{Type: "FeatureCollection", Matched: total, Returned: len(systems), Features: []feature{}}
+	for _, s := range systems {
+		best := s.Best()
+		if best.Invented {
+			out.InventedRows++
+		}
+		out.Features = append(out.Features, pointFeature(s.Slug, &best))
+	}
 	return writeGeoJSON(c, out)
 }
 

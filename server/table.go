@@ -87,7 +87,11 @@ func (a *App) analyse(ctx context.Context, f catalogue.Filter, req stats.Request
 		ctx, j := a.jobs.start(ctx, key)
 		defer a.jobs.end(key, j)
 		defer a.metrics.fitted("regression", time.Now())
-		return stats.Analyse(ctx, slices.Clip(statsRows(rows)), req, j.progress)
+		analysis, err := stats.Analyse(ctx, slices.Clip(statsRows(rows)), req, j.progress)
+		if err != nil {
+			return nil, err
+		}
+		return analysis, a.nameRelease(ctx, f.Release, analysis)
 	})
 	if err != nil {
 		return nil, err

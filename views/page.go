@@ -25,6 +25,7 @@ type Page struct {
 	Version      string
 	Assets       map[string]string // file name under static/ -> address with its content hash
 	Wide         bool              // the main column takes the full width
+	Base         string            // how the reader reached this program, without a path
 	Release      string            // the page shows this release, "" = the catalogue as it is
 	Live         string            // address of the same view of the catalogue as it is
 	LinkedData   string            // JSON-LD about the page, "" = none
