@@ -55,6 +55,7 @@ func (a *App) router() *echo.Echo {
 	a.routesMeridian(e)
 	a.routesSystems(e)
 	a.routesChart(e)
+	a.routesFigures(e)
 	a.routesRegression(e)
 	a.routesExpectation(e)
 	a.routesMeasure(e)

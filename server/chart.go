@@ -25,12 +25,13 @@ func (a *App) routesChart(e *echo.Echo) {
 	get(e, "/chart/land.json", chartLand)
 }
 
-// chartQuestion reads the address of the chart or of one of its twins.
-func chartQuestion(c echo.Context) (q url.Values, f catalogue.Filter, v views.ChartView, colour string, err error) {
+// chartQuestion reads the address of the chart or of one of its twins, which
+// may take more parameters.
+func chartQuestion(c echo.Context, more ...string) (q url.Values, f catalogue.Filter, v views.ChartView, colour string, err error) {
 	if q, err = params(c); err != nil {
 		return
 	}
-	if err = allow(q, chartParameters, catalogue.FilterParameters); err != nil {
+	if err = allow(q, chartParameters, catalogue.FilterParameters, more); err != nil {
 		return
 	}
 	if f, err = filterOf(q); err != nil {
@@ -113,8 +114,8 @@ func (a *App) chartAnswer(ctx context.Context, f catalogue.Filter) (*chartAnswer
 }
 
 // chartPage fills everything but the frame.
-func (a *App) chartPage(c echo.Context) (p views.ChartPage, err error) {
-	_, f, v, colour, err := chartQuestion(c)
+func (a *App) chartPage(c echo.Context, more ...string) (p views.ChartPage, err error) {
+	_, f, v, colour, err := chartQuestion(c, more...)
 	if err != nil {
 		return p, err
 	}

@@ -184,6 +184,7 @@ func (a *App) expectationFigure(c echo.Context) error {
 	panel := q.Get("panel")
 	q = withValues(q)
 	q.Del("panel")
+	q.Del("width")
 	f, t, err := expectationQuestion(q)
 	if err != nil {
 		return err
@@ -195,14 +196,18 @@ func (a *App) expectationFigure(c echo.Context) error {
 	if page.Days, err = dayCurves(page.Result); err != nil {
 		return err
 	}
-	names := page.Panels()
+	names := page.FigureNames()
 	if panel == "" {
 		panel = names[0]
 	}
 	if !slices.Contains(names, panel) {
 		return &badInput{"panel", strconv.Quote(clip(panel)) + " is no figure of this page. Expected one of: " + strings.Join(names, ", ")}
 	}
-	return a.writeFigure(c, page.Figure(panel))
+	from, err := a.figureSource(c.Request().Context(), f.Release, withoutEmpty(q))
+	if err != nil {
+		return err
+	}
+	return a.writeFigure(c, page.File(panel, from))
 }
 
 // expectationCSV answers a file of targets: the body itself, or a form's file

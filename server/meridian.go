@@ -21,7 +21,6 @@ var meridianParameters = []string{"fold", "colour"}
 
 func (a *App) routesMeridian(e *echo.Echo) {
 	get(e, "/", a.meridian)
-	get(e, "/figures/meridian.svg", a.meridianFigure)
 }
 
 // meridian is the opening page.
@@ -43,21 +42,36 @@ func (a *App) meridian(c echo.Context) error {
 
 // meridianFigure is the drawing alone, as a file.
 func (a *App) meridianFigure(c echo.Context) error {
-	m, _, err := a.meridianQuestion(c)
+	kind, width, err := figureAsked(c)
 	if err != nil {
 		return err
 	}
-	m.InventedRows = a.invented(c.Request().Context())
-	return writeFigureFile(c, "svg", m.Standalone())
+	m, q, err := a.meridianQuestion(c, "width")
+	if err != nil {
+		return err
+	}
+	ctx := c.Request().Context()
+	m.InventedRows = a.invented(ctx)
+	q = withoutEmpty(q)
+	q.Del("width")
+	from, err := a.figureSource(ctx, m.Filter.Release, q)
+	if err != nil {
+		return err
+	}
+	b, err := m.File(kind, width, from)
+	if err != nil {
+		return err
+	}
+	return writeFigureFile(c, kind, b)
 }
 
 // meridianQuestion reads the address and answers it, without the frame.
-func (a *App) meridianQuestion(c echo.Context) (m views.MeridianPage, q url.Values, err error) {
+func (a *App) meridianQuestion(c echo.Context, more ...string) (m views.MeridianPage, q url.Values, err error) {
 	q, err = params(c)
 	if err != nil {
 		return m, q, err
 	}
-	if err := allow(q, meridianParameters, catalogue.FilterParameters); err != nil {
+	if err := allow(q, meridianParameters, catalogue.FilterParameters, more); err != nil {
 		return m, q, err
 	}
 	f, err := filterOf(q)

@@ -200,6 +200,7 @@ func (a *App) regressionFigure(c echo.Context) error {
 	panel, name := q.Get("panel"), q.Get("analysis")
 	q.Del("panel")
 	q.Del("analysis")
+	q.Del("width")
 	f, req, err := regressionQuestion(q)
 	if err != nil {
 		return err
@@ -214,8 +215,19 @@ func (a *App) regressionFigure(c echo.Context) error {
 	} else if analysis, err = a.analyse(c.Request().Context(), f, req); err != nil {
 		return err
 	}
-	if names := views.RegressionPanels(analysis); panel != "" && !slices.Contains(names, panel) {
+	if names := views.RegressionFigures(analysis); panel != "" && !slices.Contains(names, panel) {
 		return &badInput{"panel", strconv.Quote(clip(panel)) + " is no figure of this analysis. Expected one of: " + strings.Join(names, ", ")}
 	}
-	return a.writeFigure(c, views.RegressionFigure(analysis, req, panel))
+	question := withValues(regressionFilter(f).Values(), regressionValues(req))
+	if name != "" {
+		question = url.Values{"analysis": {name}}
+	}
+	from, err := a.figureSource(c.Request().Context(), f.Release, question)
+	if err != nil {
+		return err
+	}
+	if name != "" {
+		from.Data = "Rows as frozen under the name " + name
+	}
+	return a.writeFigure(c, views.RegressionFile(analysis, req, panel, from))
 }

@@ -256,12 +256,13 @@ window.chartMap = (() => {
     const out = [];
     const put = (x, y, text, anchor = "center") => out.push({ x, y, text, anchor });
     if (!p.azimuthal) {
-      for (let lat = -75; lat <= 75; lat += latStep) {
+      const small = p.r < 150; // every second line is lettered
+      for (let lat = small ? -60 : -75; lat <= 75; lat += small ? 2 * latStep : latStep) {
         const [x, y] = p.page(equalEarth(lat, -180));
         if (y > 6 && y < p.h - 6) put(Math.max(x + 6, 4), y - 3, latText(lat), "left");
       }
-      const y = clamp(p.page([0, 0])[1], 14, p.h - 8), every = p.r > 130 ? lonStep : 2 * lonStep;
-      for (let k = Math.ceil((p.lon0 - 150) / every); k * every <= p.lon0 + 165; k++) {
+      const y = clamp(p.page([0, 0])[1], 14, p.h - 8), every = small ? 2 * lonStep : lonStep;
+      for (let k = Math.ceil((p.lon0 - 150) / every); k * every <= p.lon0 + 150; k++) {
         const [x] = p.page(equalEarth(0, k * every - p.lon0));
         if (x > 30 && x < p.w - 30) put(x, y + 13, lonText(wrap(k * every)));
       }

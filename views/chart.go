@@ -222,11 +222,15 @@ func (p ChartPage) captionStart() string {
 	if p.hasAncient() {
 		s += " (ancient ones too; their palaeolatitude is on the meridian)"
 	}
-	s += "."
-	if len(p.Items) > chartSVGLimit {
-		s += fmt.Sprintf(" Without scripts more than %d in view are gathered, with their number.", chartSVGLimit)
+	return s + "."
+}
+
+// gathered says that the drawing without scripts gathers, where it does.
+func (p ChartPage) gathered() string {
+	if n := p.inView(); n > chartSVGLimit {
+		return fmt.Sprintf(" Without scripts the %d systems in view are gathered, with their number; move closer to see each.", n)
 	}
-	return s
+	return ""
 }
 
 func (p ChartPage) captionEnd() string {

@@ -20,6 +20,8 @@ const (
 	leastLine     = 26.0 // a centreline shorter than this is not drawn as one
 	gatherCell    = 22.0 // side of the squares that systems are gathered in
 	mostGraticule = 400
+
+	chartManyMarks = 400
 )
 
 // drawing is the chart as the server draws it: complete without scripts.
@@ -84,6 +86,8 @@ func (p ChartPage) drawGround(c *canvas, pr chartProjection) {
 	}
 	if outline != "" {
 		c.put(`<path class="frame" d="`, outline, `"/>`)
+	} else {
+		c.put(`<rect class="frame" x=".5" y=".5" width="`, num2(c.w-1), `" height="`, num2(c.h-1), `"/>`)
 	}
 	for _, l := range pr.labels() {
 		c.put(`<text class="halo" x="`, num2(l.x), `" y="`, num2(l.y), `" text-anchor="`, l.anchor, `">`, esc(l.text), `</text>`)
@@ -196,7 +200,7 @@ func (p ChartPage) onPage(pr chartProjection) []onPage {
 // enough and they touch no other; and centrelines once they can be seen.
 func (p ChartPage) drawSystems(c *canvas, pr chartProjection) {
 	shown := p.onPage(pr)
-	if len(shown) > chartSVGLimit {
+	if len(shown) > chartSVGLimit && !c.alone { // a file has no links to follow
 		p.drawGathered(c, pr, shown)
 		return
 	}
@@ -212,7 +216,7 @@ func (p ChartPage) drawSystems(c *canvas, pr chartProjection) {
 		if ribbon {
 			p.drawRibbon(c, i, step)
 		} else {
-			p.drawMark(c, i, step)
+			p.drawMark(c, i, step, len(shown) > chartManyMarks)
 		}
 		if !c.alone {
 			c.tip(Point{Tip: i.Name + " " + num2Fixed(i.P)}, i.x, i.y)
@@ -221,12 +225,15 @@ func (p ChartPage) drawSystems(c *canvas, pr chartProjection) {
 	}
 }
 
-func (p ChartPage) drawMark(c *canvas, i onPage, step ChartStep) {
+func (p ChartPage) drawMark(c *canvas, i onPage, step ChartStep, many bool) {
 	shape, class := i.shape()
 	if class == "" {
 		class = "f" + step.Class[1:]
 	}
 	r := chartMark
+	if many { // without a letter marks shrink
+		r = 4
+	}
 	if step.Letter != "" && shape != "triangle" {
 		r = chartLetter
 	}

@@ -168,7 +168,11 @@ func (p chartProjection) labels() []chartLabel {
 
 func (p chartProjection) worldLabels(latStep, lonStep float64) []chartLabel {
 	var out []chartLabel
-	for lat := -75.0; lat <= 75; lat += latStep {
+	first := -75.0
+	if p.r < 150 { // small maps: every second line is lettered
+		first, latStep, lonStep = -60, 2*latStep, 2*lonStep
+	}
+	for lat := first; lat <= 75; lat += latStep {
 		x, y := p.toPage(equalEarth(lat, -180))
 		if y > 6 && y < p.h-6 {
 			out = append(out, chartLabel{max(x+6, 4), y - 3, "start", FormatLatitude(lat)})
@@ -176,7 +180,7 @@ func (p chartProjection) worldLabels(latStep, lonStep float64) []chartLabel {
 	}
 	_, y := p.toPage(0, 0)
 	y = min(max(y, 14), p.h-8)
-	for k := math.Ceil((p.lon0 - 150) / lonStep); k*lonStep <= p.lon0+165; k++ {
+	for k := math.Ceil((p.lon0 - 150) / lonStep); k*lonStep <= p.lon0+150; k++ {
 		x, _ := p.toPage(equalEarth(0, k*lonStep-p.lon0))
 		if x > 30 && x < p.w-30 {
 			out = append(out, chartLabel{x, y + 13, "middle", longitudeLetters(wrapLongitude(k * lonStep))})

@@ -30,7 +30,39 @@ func figureFile(svg, kind, width string) templ.SafeURL {
 
 func upper(kind string) string { return strings.ToUpper(kind) }
 
-// figureAs is the address of a figure as another kind of file.
-func figureAs(svg templ.SafeURL, kind string) templ.SafeURL {
-	return templ.SafeURL(strings.Replace(string(svg), ".svg", "."+kind, 1))
+// namedFigure is one of several figures offered as files.
+type namedFigure struct {
+	text string // what it is
+	svg  templ.SafeURL
+	file string // what the file is called, without width and suffix
+}
+
+// figureFiles are the figures behind the named panels: themselves, and each
+// model alone where a panel holds several.
+func (p RegressionPage) figureFiles(names []string) []namedFigure {
+	var out []namedFigure
+	add := func(panel, text string) {
+		out = append(out, namedFigure{text, p.figureHref(panel), "regression-" + strings.NewReplacer(":", "-", "_", "-").Replace(panel)})
+	}
+	for _, n := range names {
+		add(n, upperFirst(panelText(n)))
+		predictor, fit := strings.CutPrefix(n, "fit:")
+		if !fit {
+			continue
+		}
+		for _, on := range panels(p.Analysis) {
+			if on.Predictor != predictor || len(on.Models) < 2 {
+				continue
+			}
+			seen := map[string]bool{}
+			for _, m := range on.Models {
+				if !seen[m.Model] {
+					seen[m.Model] = true
+					m.Group = "" // the file has the fits of all kinds
+					add("model:"+m.Model, upperFirst(modelText(m))+", alone")
+				}
+			}
+		}
+	}
+	return out
 }

@@ -168,6 +168,9 @@ func (c *canvas) axes(small bool) {
 	xt, yt := c.x.ticks(c.p.X, nx), c.y.ticks(c.p.Y, ny)
 	for i, text := range tickTexts(c.p.Y, yt) {
 		y := c.y.at(yt[i])
+		if c.alone {
+			text = fitText(text, 15, left-14)
+		}
 		c.put(`<path class="grid" d="M`, nums(left, y), "H", num2(right), `"/>`)
 		c.put(`<text x="`, num2(left-9), `" y="`, num2(y), `" dy=".34em" text-anchor="end">`, esc(text), `</text>`)
 	}

@@ -108,6 +108,9 @@ type placed struct {
 
 // meridianLayout is the geometry of one drawing.
 type meridianLayout struct {
+	width       float64
+	left        float64 // room for the letters of the axis
+	expectAxis  float64 // length of an expected ribbon's axis
 	axis        float64 // length of a ribbon's axis
 	lo, hi      float64 // degrees of the vertical axis
 	per         float64 // page units a degree
@@ -147,10 +150,16 @@ func (l *MeridianLayouts) layout(folded bool) meridianLayout {
 // up or down by at most maxShift; if that is not enough all ribbons are drawn
 // smaller; at the smallest size the lowest-graded are left out, and counted.
 func layoutMeridian(items []MeridianItem, folded bool) meridianLayout {
-	m := meridianLayout{folded: folded, per: unfoldedPer, ribbonsEdge: meridianW - meridianRight}
+	m := meridianLayout{folded: folded, per: unfoldedPer, width: meridianW, left: meridianLeft, expectAxis: 92, ribbonsEdge: meridianW - meridianRight}
 	if folded {
 		m.per = foldedPer
 	}
+	return m.filled(items)
+}
+
+// filled lays items out on an empty layout.
+func (m meridianLayout) filled(items []MeridianItem) meridianLayout {
+	folded := m.folded
 	m.lo, m.hi = meridianRange(items, folded)
 	m.height = m.y(m.lo) + meridianFoot
 	items = slices.Clone(items)
@@ -206,7 +215,7 @@ func (m *meridianLayout) place(items []MeridianItem) (without int) {
 			if y0+s-half < 0 || y0+s+half > m.height {
 				continue
 			}
-			x := g.free(meridianLeft-r.Left+4, y0+s-half, y0+s+half, r.Left, r.Right, pad)
+			x := g.free(m.left-r.Left+4, y0+s-half, y0+s+half, r.Left, r.Right, pad)
 			if x+r.Right <= m.ribbonsEdge-8 {
 				best, bestShift = x, s
 				break

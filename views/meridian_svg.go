@@ -64,52 +64,6 @@ func (m MeridianPage) shapes() string {
 	return ribbonDefs(ps)
 }
 
-// Standalone is the wide form as a file of its own: the same drawing with its
-// colours inside, on white, its key and its caption below.
-func (m MeridianPage) Standalone() []byte {
-	l := m.Layouts.layout(m.Folded)
-	var b strings.Builder
-	height := l.height + 74
-	fmt.Fprintf(&b, `<?xml version="1.0" encoding="UTF-8"?>`+"\n"+`<svg xmlns="http://www.w3.org/2000/svg" width="%s" height="%s" viewBox="-10 -10 %s %s"><style>%s</style><rect x="-10" y="-10" width="100%%" height="100%%" fill="#fff"/>`,
-		num2(meridianW+20), num2(height+20), num2(meridianW+20), num2(height+20), meridianStyle)
-	b.WriteString(m.shapes())
-	m.drawAxis(&b, l)
-	m.drawExpected(&b, l)
-	m.plain = true
-	for _, r := range l.ribbons {
-		m.drawRibbon(&b, l, r)
-	}
-	m.drawKey(&b, l.height+22)
-	fmt.Fprintf(&b, `<text x="0" y="%s">%s</text></svg>`+"\n", num2(l.height+58), esc(m.fileCaption()))
-	return []byte(b.String())
-}
-
-// drawKey letters the steps of the colouring in one line.
-func (m MeridianPage) drawKey(b *strings.Builder, y float64) {
-	title, steps := colourClasses(m.Colour)
-	x := 0.0
-	word := func(s string) {
-		fmt.Fprintf(b, `<text x="%s" y="%s">%s</text>`, num2(x), num2(y), esc(s))
-		x += 7.6*float64(len([]rune(s))) + 18
-	}
-	word(title)
-	for _, s := range steps {
-		if !usesStep(m, s) {
-			continue
-		}
-		fmt.Fprintf(b, `<path class="ribbon w3 %s" d="M%sh22"/>`, s.Class, nums(x, y-5))
-		x += 28
-		word(strings.TrimSpace(s.Letter + " " + s.Text))
-	}
-}
-
-// meridianStyle colours the meridian where it stands alone: the light theme.
-const meridianStyle = `text{font:14px Helvetica,Arial,sans-serif;fill:#4A5862}.grid{stroke:#D9D4C7;fill:none}.equator{stroke:#7C858C}.panel{fill:#F1ECE0}.median{fill:#14212B;font-weight:600}` +
-	`.ribbon,.limit,.middle,.gap{fill:none;stroke-linecap:round;stroke-linejoin:round;vector-effect:non-scaling-stroke}.limit{stroke:#2C7A8F;stroke-width:1.5}.between{fill:#3A8EA1;fill-opacity:.32}.middle{stroke:#14212B;stroke-width:2.6}` +
-	`.w0,.w1{stroke-width:1.6}.w2{stroke-width:2.4}.w3{stroke-width:3.3}.w4{stroke-width:4.4}.twin.w0,.twin.w1{stroke-width:4}.twin.w2{stroke-width:4.8}.twin.w3{stroke-width:5.6}.twin.w4{stroke-width:6.6}.gap{stroke:#fff;stroke-width:1.7}` +
-	`.ribbon{stroke:#20647A}.r0{stroke:#80868A}.r1{stroke:#3A8EA1}.r2{stroke:#2C7A8F}.r3{stroke:#20647A}.r4{stroke:#164E65}.r5{stroke:#0E384C}.r6{stroke:#082436}.river{stroke:#B5762A;stroke-dasharray:5 3.5}` +
-	`.grade{fill:#fff;stroke:#14212B;stroke-width:1.3}.full{fill:#14212B}.capped{stroke:#A6322A;fill:none}.letter{font-size:11px;font-weight:600;fill:#14212B}.none{font-size:13px}`
-
 // drawing is the wide form of the meridian.
 func (m MeridianPage) drawing(l meridianLayout) templ.Component {
 	return templ.ComponentFunc(func(_ context.Context, w io.Writer) error {
@@ -141,7 +95,7 @@ func (m MeridianPage) drawAxis(b *strings.Builder, l meridianLayout) {
 			text, class = "equator", "grid equator"
 		}
 		fmt.Fprintf(b, `<path class="%s" d="M%sH%s"/><text x="%s" y="%s" dy=".34em" text-anchor="end">%s</text>`,
-			class, nums(meridianLeft, l.y(lat)), num2(l.ribbonsEdge), num2(meridianLeft-10), num2(l.y(lat)), text)
+			class, nums(l.left, l.y(lat)), num2(l.ribbonsEdge), num2(l.left-10), num2(l.y(lat)), text)
 	}
 }
 
@@ -152,9 +106,13 @@ func (m MeridianPage) drawExpected(b *strings.Builder, l meridianLayout) {
 		return
 	}
 	x := l.ribbonsEdge + 14
-	fmt.Fprintf(b, `<rect class="panel" x="%s" y="0" width="%s" height="%s"/>`, num2(x), num2(meridianW-x), num2(l.height))
-	fmt.Fprintf(b, `<text class="panel-title" x="%s" y="17">expected, one new system</text>`, num2(x+12))
-	const axis = 92.0
+	fmt.Fprintf(b, `<rect class="panel" x="%s" y="0" width="%s" height="%s"/>`, num2(x), num2(l.width-x), num2(l.height))
+	head := "expected, one new system"
+	if l.expectAxis < 80 {
+		head = "one new system"
+	}
+	fmt.Fprintf(b, `<text class="panel-title" x="%s" y="17">%s</text>`, num2(x+12), head)
+	axis := l.expectAxis
 	for _, e := range m.Expected {
 		for _, sign := range []float64{1, -1} {
 			lat := sign * e.AbsLatitude

@@ -6,18 +6,6 @@ import (
 	"strconv"
 )
 
-// fileCaption is the caption of the drawing as a file, in one line.
-func (m MeridianPage) fileCaption() string {
-	s := fmt.Sprintf("%s at the latitude they were made at; double: ancient; dashed: rivers.", plural(len(m.Items), "channel system", "channel systems"))
-	if len(m.Expected) > 0 {
-		s += " Right: expected for one new system, median and 80 % limits."
-	}
-	if m.InventedRows > 0 {
-		s += " Invented data."
-	}
-	return s
-}
-
 // colourName is what colour carries, in words.
 func colourName(c string) string {
 	return map[string]string{"slope": "valley slope", "feeder": "feeder", "grade": "grade of the record", "age": "age"}[c]

@@ -24,10 +24,12 @@ type Print struct {
 
 // KeyEntry is one entry of the key: a mark, a line, or a heading.
 type KeyEntry struct {
-	Text  string
-	Point *Point // its shape and class
-	Line  string // class of a line
-	Head  bool
+	Text   string
+	Point  *Point // its shape and class
+	Line   string // class of a line
+	Ribbon string // classes of a ribbon
+	Head   bool
+	Break  bool // starts a row
 }
 
 // The figures of a manuscript are one or two columns wide. All are lettered
@@ -85,6 +87,8 @@ func (p Plot) printed(width string) ([]byte, error) {
 		p.Width = doubleUnits
 	}
 	switch {
+	case p.NoFrame: // as it is
+		p.Height = p.Width * h / w
 	case p.Left > 0: // rows of names: as tall as they are many
 		p.Height = h
 		p.Left = min(p.Left, 0.45*p.Width)
@@ -272,7 +276,10 @@ func wrapTitled(title, text string, size, width float64) []captionLine {
 	var out []captionLine
 	var lines []string
 	if title != "" {
-		lines = wrapText(title+".", size, width, true)
+		if !strings.HasSuffix(title, "?") {
+			title += "."
+		}
+		lines = wrapText(title, size, width, true)
 	}
 	for i, l := range lines {
 		if i < len(lines)-1 {
@@ -342,10 +349,10 @@ func drawKey(b *strings.Builder, key []KeyEntry, left, y, right float64) float64
 		switch {
 		case k.Point != nil:
 			mark = 18
-		case k.Line != "":
+		case k.Line != "" || k.Ribbon != "":
 			mark = 36
 		}
-		if x > left && (x+mark+w-16 > right || k.Head && i > 0) {
+		if x > left && (x+mark+w-16 > right || (k.Head || k.Break) && i > 0) {
 			x, y = left, y+keyLead
 		}
 		switch {
@@ -353,6 +360,11 @@ func drawKey(b *strings.Builder, key []KeyEntry, left, y, right float64) float64
 			c.mark(*k.Point, x+7, y-9)
 		case k.Line != "":
 			c.put(`<path class="line `, esc(k.Line), `" d="M`, nums(x, y-9), `h28"/>`)
+		case k.Ribbon != "":
+			c.put(`<path class="ribbon `, esc(k.Ribbon), `" d="M`, nums(x+2, y-9), `h26"/>`)
+			if strings.Contains(k.Ribbon, "twin") {
+				c.put(`<path class="gap" d="M`, nums(x+2, y-9), `h26"/>`)
+			}
 		}
 		class := "key"
 		if k.Head {

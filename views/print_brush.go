@@ -315,13 +315,66 @@ func faceOf(size vg.Length, bold, italic bool) font.Face {
 	return faces().Lookup(f, size)
 }
 
-// textWidth is the length of a text at a size, in the units of the size.
-func textWidth(s string, size float64, bold bool) float64 {
-	face := faceOf(vg.Length(size), bold, false)
-	return float64(face.Width(s))
+// superscripts are letters that the faces of files lack or draw unevenly; they
+// are set as small raised ones.
+var superscripts = map[rune]rune{'⁰': '0', '¹': '1', '²': '2', '³': '3', '⁴': '4', '⁵': '5', '⁶': '6', '⁷': '7', '⁸': '8', '⁹': '9', '⁻': '−', '⁺': '+'}
+
+const (
+	superSize = 0.64
+	superRise = 0.36 // of the size of the line
+)
+
+// letterRun is a piece of a text of one size.
+type letterRun struct {
+	text   string
+	raised bool
 }
 
-// text draws one line of letters; runs in tspan elements may be bold.
+func letterRuns(s string) []letterRun {
+	var out []letterRun
+	for _, r := range s {
+		plain, raised := superscripts[r]
+		if !raised {
+			plain = r
+		}
+		if n := len(out); n == 0 || out[n-1].raised != raised {
+			out = append(out, letterRun{raised: raised})
+		}
+		out[len(out)-1].text += string(plain)
+	}
+	return out
+}
+
+// textWidth is the length of a text at a size, in the units of the size.
+func textWidth(s string, size float64, bold bool) float64 {
+	w := 0.0
+	for _, r := range letterRuns(s) {
+		face := faceOf(vg.Length(r.size(size)), bold, false)
+		w += float64(face.Width(r.text))
+	}
+	return w
+}
+
+func (r letterRun) size(of float64) float64 {
+	if r.raised {
+		return superSize * of
+	}
+	return of
+}
+
+// fitText cuts a text that is longer than width.
+func fitText(s string, size, width float64) string {
+	if textWidth(s, size, false) <= width {
+		return s
+	}
+	r := []rune(s)
+	for len(r) > 1 && textWidth(string(r)+"…", size, false) > width {
+		r = r[:len(r)-1]
+	}
+	return strings.TrimSpace(string(r)) + "…"
+}
+
+// text draws one line of letters.
 func (b *brush) text(a attrs, d *xml.Decoder) error {
 	text, err := innerText(d)
 	if err != nil {
@@ -332,7 +385,7 @@ func (b *brush) text(a attrs, d *xml.Decoder) error {
 		return nil
 	}
 	size := a.num("font-size", 15)
-	face := faceOf(vg.Length(size*b.unit), a["font-weight"] == "600" || a["font-weight"] == "700", a["font-style"] == "italic")
+	bold, italic := a["font-weight"] == "600" || a["font-weight"] == "700", a["font-style"] == "italic"
 	to := transformOf(a).then(b.top().to)
 	dy := 0.0
 	if em, found := strings.CutSuffix(a["dy"], "em"); found {
@@ -342,9 +395,9 @@ func (b *brush) text(a attrs, d *xml.Decoder) error {
 	shift := vg.Length(0)
 	switch a["text-anchor"] {
 	case "middle":
-		shift = -face.Width(text) / 2
+		shift = -vg.Length(textWidth(text, size, bold)*b.unit) / 2
 	case "end":
-		shift = -face.Width(text)
+		shift = -vg.Length(textWidth(text, size, bold) * b.unit)
 	}
 	b.c.Push()
 	defer b.c.Pop()
@@ -352,12 +405,21 @@ func (b *brush) text(a attrs, d *xml.Decoder) error {
 	if to.b != 0 {
 		b.c.Rotate(-math.Atan2(to.b, to.a))
 	}
-	if halo, ok := a.colour("stroke", "none"); ok {
-		b.c.SetColor(halo)
-		haloOf(b.c, face, vg.Point{X: shift}, text, vg.Length(a.num("stroke-width", 4)*b.unit))
+	halo, haloed := a.colour("stroke", "none")
+	for _, r := range letterRuns(text) {
+		face := faceOf(vg.Length(r.size(size)*b.unit), bold, italic)
+		from := vg.Point{X: shift}
+		if r.raised {
+			from.Y = vg.Length(superRise * size * b.unit)
+		}
+		if haloed {
+			b.c.SetColor(halo)
+			haloOf(b.c, face, from, r.text, vg.Length(a.num("stroke-width", 4)*b.unit))
+		}
+		b.c.SetColor(c)
+		b.c.FillString(face, from, r.text)
+		shift += face.Width(r.text)
 	}
-	b.c.SetColor(c)
-	b.c.FillString(face, vg.Point{X: shift}, text)
 	return nil
 }
 
