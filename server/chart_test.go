@@ -155,6 +155,48 @@ func TestChartLines(t *testing.T) {
 	}
 }
 
+// The frame of the page, as of every other: names of controls, ids, no inline
+// style or script; no page is wider than its window, nothing moves after load,
+// and the first load stays under its limit of 400 kB.
+func TestChartFrame(t *testing.T) {
+	v := newDemoSite(t).visitor()
+	for _, p := range []string{"/chart", "/chart?view=south&colour=setting", "/chart?at=74.5,5.8&zoom=40"} {
+		a := v.get(p).is(http.StatusOK)
+		d := a.doc()
+		if n := d.Find("h1").Length(); n != 1 || d.Find("[style], script:not([src])").Length() > 0 || strings.Contains(a.body, "NaN") {
+			t.Errorf("%s: %d first headings, or style or script inline, or a number that is none", p, n)
+		}
+		uniqueIDs(t, p, d)
+		labelled(t, p, d)
+	}
+}
+
+func TestBrowserChartWeightAndWidth(t *testing.T) {
+	s := newDemoSite(t)
+	for _, width := range []int64{1280, 390, 320} {
+		ctx := openBrowser(t)
+		if err := chromedp.Do(ctx, chromedp.EmulateViewport(width, 900)); err != nil {
+			t.Fatal(err)
+		}
+		for _, p := range []string{"/chart", "/chart?view=north"} {
+			open(t, ctx, s.base+p)
+			waitFor(t, ctx, chartReady)
+			if over := evaluate[int](t, ctx, `document.documentElement.scrollWidth - innerWidth`); over > 0 {
+				t.Errorf("%s at %d: %d pixels too wide", p, width, over)
+			}
+			shift := evaluate[float64](t, ctx, `new Promise(r => { let sum = 0; new PerformanceObserver(l => { for (const e of l.getEntries()) sum += e.value }).observe({type: "layout-shift", buffered: true}); setTimeout(() => r(sum), 100) })`)
+			if shift >= 0.02 {
+				t.Errorf("%s at %d: layout shift %.3f", p, width, shift)
+			}
+			weight := evaluate[int](t, ctx, `[...performance.getEntriesByType("resource"), ...performance.getEntriesByType("navigation")].reduce((s, e) => s + Math.max(e.encodedBodySize, e.transferSize), 0)`)
+			if weight > 400_000 {
+				t.Errorf("%s at %d: %d bytes", p, width, weight)
+			}
+			t.Logf("%s at %d: %d kB, shift %.3f", p, width, weight/1000, shift)
+		}
+	}
+}
+
 // drag is a pointer drag on the map by shares of its size.
 func drag(t *testing.T, ctx context.Context, x0, y0, x1, y1 float64) {
 	t.Helper()

@@ -16,6 +16,12 @@ var openToAll = []string{
 	"/figures/expectation.png", "/figures/expectation.pdf",
 	"/expectation/columns.csv", "/expectation/deep-time", "/expectation/deep-time.json", "/analyses", "/analyses/:name", "/figures/meridian.svg",
 	"/chart", "/chart.json", "/chart/land.json", "/chart/lines.json", "/recompute.json", "/recompute/:name",
+	"/dictionary", "/dictionary.csv", "/dictionary.json", "/systems.zip", "/sources", "/sources.csv", "/sources.json", "/sources.bib", "/sources.ris",
+	"/features", "/features/", "/features/api", "/features/conformance", "/features/collections", "/features/collections/:collection",
+	"/features/collections/:collection/items", "/features/collections/:collection/items/:id", "/openapi.json", "/feed.atom",
+	"/releases", "/releases.csv", "/releases.json", "/releases/:name", "/releases/:name/difference", "/releases/:name/difference/:other",
+	"/figures/chart.svg", "/figures/chart.png", "/figures/chart.pdf", "/figures/meridian.png", "/figures/meridian.pdf",
+	"/figures/system.svg", "/figures/system.png", "/figures/system.pdf",
 	"/measure", "/methods", "/changes", "/static/*", "/favicon.ico", "/healthz", "/metrics",
 }
 

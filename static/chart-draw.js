@@ -173,7 +173,7 @@ window.chartDraw = (() => {
       const half = Math.max(shape.half, 6) + 3, x0 = s.x - ribbonAxis / 2 + shape.left - 4, x1 = s.x - ribbonAxis / 2 + shape.right + 4;
       const free = near && !drawn.has(s.slug) && !taken.some((t) => t[2] < s.y + half && t[3] > s.y - half && t[0] < x1 && t[1] > x0);
       if (free) { taken.push([x0, x1, s.y - half, s.y + half]); drawRibbon(g, c, s, step, shape); } else mark(g, c, s, step, state.shown.length > 400);
-      if (s === state.over || s.slug === state.pointed) { g.beginPath(); g.arc(s.x, s.y, 12, 0, 2 * Math.PI); stroke(g, c.focus, 3); }
+      if (s === state.over || s.slug === state.pointed || state.chosen.includes(s.slug)) { g.beginPath(); g.arc(s.x, s.y, 12, 0, 2 * Math.PI); stroke(g, c.focus, 3); }
     }
   };
 

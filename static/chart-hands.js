@@ -152,7 +152,7 @@ window.chartHands = (api) => {
       b: () => setBoxing(!boxing),
       Enter: () => {
         const p = api.projection(), found = api.hits(p.w / 2, p.h / 2, Math.hypot(p.w, p.h));
-        if (found.length) { api.openCard(found); root.querySelector(".chart-card a")?.focus(); } else api.say("No system is in the view.");
+        if (found.length) { api.openCard(found); api.card.querySelector("a")?.focus(); } else api.say("No system is in the view.");
       },
       Escape: () => { if (boxing) setBoxing(false); else api.closeCard(); },
     };

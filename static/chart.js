@@ -7,6 +7,11 @@
   const M = window.chartMap, D = window.chartDraw, main = document.getElementById("main");
   if (!M || !D || !main) return;
   const fetched = new Map(); // answers by address
+  // The page of a system, of the release that the address names.
+  const systemAddress = (slug) => {
+    const release = new URLSearchParams(location.search).get("release");
+    return "/systems/" + encodeURIComponent(slug) + (release ? "?release=" + encodeURIComponent(release) : "");
+  };
   const get = (address) => {
     if (!fetched.has(address)) {
       fetched.set(address, fetch(address).then((r) => { if (!r.ok) throw new Error(r.status); return r.json(); }).catch((e) => { fetched.delete(address); throw e; }));
@@ -26,7 +31,7 @@
     const num = (s) => s.split(",").map(Number);
     const [lat, lon] = num(root.dataset.at);
     let view = { name: root.dataset.view, lat, lon, zoom: Number(root.dataset.zoom) };
-    const state = { rings: [], systems: [], steps: [], lines: [], box: root.dataset.box ? num(root.dataset.box) : null, selecting: null, over: null, pointed: null, shown: [], fine: false };
+    const state = { rings: [], systems: [], steps: [], lines: [], box: root.dataset.box ? num(root.dataset.box) : null, selecting: null, over: null, pointed: null, chosen: [], shown: [], fine: false };
     if (last) Object.assign(state, { rings: last.rings, fine: last.fine, systems: last.systems, steps: last.steps, lines: last.lines });
     last = state;
     const canvas = document.createElement("canvas"), g = canvas.getContext("2d");
@@ -138,7 +143,7 @@
         // The page brought only a part of a long list: list what is in view.
         list.replaceChildren(...state.shown.toSorted((a, b) => b.latitude_deg - a.latitude_deg).slice(0, 500).map((s) => {
           const li = document.createElement("li"), a = document.createElement("a"), more = document.createElement("span"), b = document.createElement("b");
-          a.href = "/systems/" + encodeURIComponent(s.slug); a.dataset.slug = s.slug; a.textContent = s.name;
+          a.href = systemAddress(s.slug); a.dataset.slug = s.slug; a.textContent = s.name;
           b.textContent = s.sinuosity === null ? "–" : s.sinuosity.toFixed(2);
           more.className = "small"; more.append(b, " " + words(s));
           li.append(a, " ", more);
@@ -159,7 +164,8 @@
     tip.className = "chart-tip"; tip.hidden = true; tip.setAttribute("aria-hidden", "true");
     const card = document.createElement("div");
     card.className = "chart-card"; card.hidden = true; card.setAttribute("role", "region"); card.setAttribute("aria-label", "Systems at this place");
-    root.append(tip, card);
+    root.append(tip);
+    root.after(card);
     const hits = (x, y, reach) => state.shown.map((s) => [Math.hypot(s.x - x, s.y - y), s]).filter(([d]) => d <= reach).sort((a, b) => a[0] - b[0]).map((h) => h[1]);
     const hover = (s) => {
       if (s !== state.over) { state.over = s; redraw(); }
@@ -169,7 +175,7 @@
       tip.style.left = Math.min(Math.max(s.x - tip.offsetWidth / 2, 0), p.w - tip.offsetWidth) + "px";
       tip.style.top = (s.y > 44 ? s.y - 40 : s.y + 16) + "px";
     };
-    const closeCard = () => { if (!card.hidden) { card.hidden = true; card.replaceChildren(); } };
+    const closeCard = () => { if (!card.hidden) { card.hidden = true; card.replaceChildren(); state.chosen = []; redraw(); } };
     const words = (s) => {
       const out = [Math.abs(s.latitude_deg).toFixed(1) + "° " + (s.latitude_deg < 0 ? "S" : "N") + " " + Math.abs(s.longitude_deg).toFixed(1) + "° " + (s.longitude_deg < 0 ? "W" : "E")];
       if (s.kind !== "submarine") out.push(s.kind);
@@ -187,7 +193,7 @@
       const ul = document.createElement("ul");
       for (const s of found.slice(0, 8)) {
         const li = document.createElement("li"), a = document.createElement("a"), more = document.createElement("div");
-        a.href = "/systems/" + encodeURIComponent(s.slug);
+        a.href = systemAddress(s.slug);
         a.textContent = s.name + (s.sinuosity === null ? "" : ", " + s.sinuosity.toFixed(2) + " (" + s.sinuosity_kind + ")");
         more.className = "small"; more.textContent = words(s);
         li.append(a, more); ul.append(li);
@@ -195,10 +201,12 @@
       if (found.length > 8) { const li = document.createElement("li"); li.className = "small"; li.textContent = "and " + (found.length - 8) + " more here; move closer."; ul.append(li); }
       card.replaceChildren(close, ul);
       card.hidden = false; tip.hidden = true;
+      state.chosen = found.slice(0, 8).map((s) => s.slug);
+      redraw();
       say(found.length === 1 ? found[0].name + "." : found.length + " systems here.");
     };
 
-    const api = { root, canvas, view: () => view, projection: () => p, redraw, move, shift, hits, hover, openCard, closeCard, say, state, whole: () => move(whole(view.name)), boxButton,
+    const api = { root, canvas, view: () => view, projection: () => p, redraw, move, shift, hits, hover, openCard, closeCard, card, say, state, whole: () => move(whole(view.name)), boxButton,
       select: (box) => { const field = byId("f-bbox"); field.value = box ? box.map((v) => M.tidy(v, 1e4)).join(",") : ""; field.dispatchEvent(new Event("change", { bubbles: true })); } };
     window.chartHands(api);
     takeButton.addEventListener("click", () => { if (p) api.select(M.viewBox(p)); });

@@ -211,7 +211,7 @@ func (p ChartPage) drawSystems(c *canvas, pr chartProjection) {
 		title := i.title(step)
 		ribbon := !drawn[i.Slug] && pr.v.azimuthal() && p.View.Zoom >= ribbonsFrom && hasRoom(taken, i)
 		if !c.alone {
-			c.put(`<a href="/systems/`, esc(i.Slug), `" aria-label="`, esc(title), `"><title>`, esc(title), `</title>`)
+			c.put(`<a href="`, esc(string(p.SystemHref(i.Slug))), `" aria-label="`, esc(title), `"><title>`, esc(title), `</title>`)
 		}
 		if ribbon {
 			p.drawRibbon(c, i, step)

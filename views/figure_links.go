@@ -45,11 +45,12 @@ func (p RegressionPage) figureFiles(names []string) []namedFigure {
 		out = append(out, namedFigure{text, p.figureHref(panel), "regression-" + strings.NewReplacer(":", "-", "_", "-").Replace(panel)})
 	}
 	for _, n := range names {
-		add(n, upperFirst(panelText(n)))
 		predictor, fit := strings.CutPrefix(n, "fit:")
 		if !fit {
+			add(n, upperFirst(panelText(n)))
 			continue
 		}
+		add(n, "Sinuosity against "+panelText(n))
 		for _, on := range panels(p.Analysis) {
 			if on.Predictor != predictor || len(on.Models) < 2 {
 				continue

@@ -165,7 +165,7 @@ func (m MeridianPage) drawRibbon(b *strings.Builder, l meridianLayout, r placed)
 		b.WriteString(`</g>`)
 		return
 	}
-	fmt.Fprintf(b, `<a href="/systems/%s" aria-label="%s"><title>%s</title>`, esc(r.Slug), esc(title), esc(title))
+	fmt.Fprintf(b, `<a href="%s" aria-label="%s"><title>%s</title>`, esc(string(m.SystemHref(r.Slug))), esc(title), esc(title))
 	fmt.Fprintf(b, `<rect class="hit" x="%s" y="%s" width="%s" height="%s"/>`, num2(r.x+r.ribbon.Left-3), num2(r.y-half-2), num2(r.ribbon.Right-r.ribbon.Left+6), num2(2*half+4))
 	m.ribbonItself(b, l, r, class, step, k)
 	anchor, tx := "start", r.x

@@ -104,3 +104,13 @@ func (p SystemPage) profileFiles(line int) []namedFigure {
 	}
 	return out
 }
+
+// chartAddress is the chart around the system, close enough for its line.
+func (p SystemPage) chartAddress() string {
+	v := ChartView{Name: "world", Lat: p.best().LatitudeDeg.V, Lon: wrapLongitude(p.best().LongitudeDeg.V), Zoom: 30}
+	q := v.rounded().Values()
+	if r := p.Query.Get("release"); r != "" {
+		q.Set("release", r)
+	}
+	return "/chart?" + q.Encode()
+}

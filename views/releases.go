@@ -105,3 +105,27 @@ func changeWhat(c catalogue.Change) string {
 	}
 	return "measurement " + c.What
 }
+
+func recordScope(rows int) string {
+	if rows > 1 {
+		return "rowgroup"
+	}
+	return "row"
+}
+
+// inventedIn says how much of a release is invented.
+func inventedIn(r catalogue.Release) string {
+	if r.Invented == r.Measurements {
+		return "All measurements in it are invented for a demonstration, and marked in every table and file."
+	}
+	return strconv.Itoa(r.Invented) + " of the " + strconv.Itoa(r.Measurements) + " measurements in it are invented for a demonstration, and marked in every table and file."
+}
+
+// SystemHref is the page of a system, of the release the page shows.
+func (p Page) SystemHref(slug string) templ.SafeURL {
+	address := "/systems/" + url.PathEscape(slug)
+	if p.Release != "" {
+		address += "?" + url.Values{"release": {p.Release}}.Encode()
+	}
+	return templ.SafeURL(address)
+}

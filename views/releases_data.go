@@ -45,7 +45,7 @@ func allowedText(c catalogue.Column) string {
 	switch {
 	case c.Open:
 		return what + " above " + lo
-	case c.Min > -1e11 && c.Max < 1e11:
+	case c.Min > -1e11 && c.Max < 1e8:
 		return what + ", " + trueMinus(lo) + " to " + trueMinus(hi)
 	case c.Min > -1e11:
 		return what + ", " + lo + " or more"
