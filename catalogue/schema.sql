@@ -29,6 +29,15 @@ CREATE TRIGGER analyses_last BEFORE DELETE ON analyses BEGIN SELECT RAISE (ABORT
 
 CREATE TRIGGER analyses_stay BEFORE UPDATE ON analyses BEGIN SELECT RAISE (ABORT, 'frozen analyses are never changed'); END;
 
+CREATE TABLE analysis_settings (
+  analysis TEXT PRIMARY KEY REFERENCES analyses (name), -- the analysis
+  settings TEXT NOT NULL CHECK (json_valid(settings)) -- the settings file of that day, JSON
+) STRICT, WITHOUT ROWID;
+
+CREATE TRIGGER analysis_settings_last BEFORE DELETE ON analysis_settings BEGIN SELECT RAISE (ABORT, 'the settings of an analysis are never deleted'); END;
+
+CREATE TRIGGER analysis_settings_stay BEFORE UPDATE ON analysis_settings BEGIN SELECT RAISE (ABORT, 'the settings of an analysis are never changed'); END;
+
 CREATE TABLE batches (
   id INTEGER PRIMARY KEY, -- internal number
   account_id INTEGER REFERENCES accounts (id), -- who sent it, NULL for the command line
@@ -234,6 +243,18 @@ CREATE TRIGGER frozen_systems_last BEFORE DELETE ON frozen_systems BEGIN SELECT 
 
 CREATE TRIGGER frozen_systems_stay BEFORE UPDATE ON frozen_systems BEGIN SELECT RAISE (ABORT, 'what was released is never changed'); END;
 
+CREATE TABLE invitations (
+  id INTEGER PRIMARY KEY, -- internal number
+  token_hash BLOB NOT NULL UNIQUE, -- SHA-256 of the token in the address
+  role TEXT NOT NULL CHECK (role IN ('contributor', 'curator', 'keeper')), -- of the account it makes
+  note TEXT NOT NULL DEFAULT '' CHECK (length(note) <= 200), -- for whom it is, in the keeper's words
+  invited_by INTEGER REFERENCES accounts (id), -- who made it, NULL for the command line
+  created_at TEXT NOT NULL, -- when it was made
+  expires_at TEXT NOT NULL, -- when it ends unused
+  ended_at TEXT NOT NULL DEFAULT '', -- when it was used or taken back, '' while it is open
+  account_id INTEGER REFERENCES accounts (id) -- the account made with it, NULL if none
+) STRICT;
+
 CREATE VIRTUAL TABLE line_places USING rtree (id, west, east, south, north);
 
 CREATE TABLE measurements (
@@ -418,6 +439,17 @@ BEGIN SELECT RAISE (ABORT, 'a finished recomputation is never deleted'); END;
 
 CREATE TRIGGER recomputed_values_stay BEFORE UPDATE ON recomputed_values BEGIN SELECT RAISE (ABORT, 'recomputed values are never changed'); END;
 
+CREATE TABLE registrations (
+  account_id INTEGER PRIMARY KEY REFERENCES accounts (id), -- the account
+  about TEXT NOT NULL DEFAULT '' CHECK (length(about) <= 2000), -- who the person is, in their own words
+  state TEXT NOT NULL DEFAULT 'waiting' CHECK (state IN ('waiting', 'approved', 'refused')), -- what was decided
+  decided_by INTEGER REFERENCES accounts (id), -- who decided, NULL while it waits
+  decided_at TEXT NOT NULL DEFAULT '', -- when, '' while it waits
+  why TEXT NOT NULL DEFAULT '' CHECK (length(why) <= 2000) -- the reason given
+) STRICT;
+
+CREATE INDEX registrations_state ON registrations (state);
+
 CREATE TABLE release_centrelines (
   release_id INTEGER NOT NULL REFERENCES releases (id) DEFERRABLE INITIALLY DEFERRED, -- the release
   id INTEGER NOT NULL, -- number of the record in centrelines
@@ -467,6 +499,15 @@ CREATE TRIGGER release_measurements_last BEFORE DELETE ON release_measurements B
 CREATE TRIGGER release_measurements_sealed BEFORE INSERT ON release_measurements WHEN EXISTS (SELECT 1 FROM releases WHERE id = new.release_id) BEGIN SELECT RAISE (ABORT, 'nothing is added to a release'); END;
 
 CREATE TRIGGER release_measurements_stay BEFORE UPDATE ON release_measurements BEGIN SELECT RAISE (ABORT, 'what was released is never changed'); END;
+
+CREATE TABLE release_settings (
+  release_id INTEGER PRIMARY KEY REFERENCES releases (id), -- the release
+  settings TEXT NOT NULL CHECK (json_valid(settings)) -- the settings file of that day, JSON
+) STRICT;
+
+CREATE TRIGGER release_settings_last BEFORE DELETE ON release_settings BEGIN SELECT RAISE (ABORT, 'the settings of a release are never deleted'); END;
+
+CREATE TRIGGER release_settings_stay BEFORE UPDATE ON release_settings BEGIN SELECT RAISE (ABORT, 'the settings of a release are never changed'); END;
 
 CREATE TABLE release_sources (
   release_id INTEGER NOT NULL REFERENCES releases (id) DEFERRABLE INITIALLY DEFERRED, -- the release
@@ -552,6 +593,11 @@ CREATE TABLE sessions (
 
 CREATE INDEX sessions_expiry ON sessions (expires_at);
 
+CREATE TABLE settings (
+  name TEXT PRIMARY KEY CHECK (length(name) BETWEEN 1 AND 64), -- as in the settings file
+  value TEXT NOT NULL CHECK (json_valid(value) AND length(value) <= 200000) -- its value, JSON
+) STRICT, WITHOUT ROWID;
+
 CREATE TABLE sources (
   id INTEGER PRIMARY KEY, -- internal number
   citation TEXT NOT NULL CHECK (length(citation) BETWEEN 1 AND 4000), -- the paper or survey, as cited
@@ -627,6 +673,57 @@ END;
 CREATE TRIGGER search_system_before BEFORE UPDATE OF slug, system_name, other_names, parent_deposit, basin ON systems BEGIN
   INSERT INTO search (search, rowid, names, places, reach, source, notes) SELECT 'delete', w.id, names, places, w.reach, source, w.notes FROM words w JOIN measurements m ON m.id = w.id WHERE m.system_id = old.id;
 END;
+
+CREATE TABLE upload_pieces (
+  upload_id INTEGER NOT NULL REFERENCES uploads (id) ON DELETE CASCADE, -- the file
+  n INTEGER NOT NULL, -- order of the piece, from 0
+  bytes BLOB NOT NULL, -- as sent
+  PRIMARY KEY (upload_id, n)
+) STRICT;
+
+CREATE TABLE upload_remarks (
+  upload_id INTEGER NOT NULL REFERENCES uploads (id) ON DELETE CASCADE, -- the file
+  n INTEGER NOT NULL, -- order of the remark
+  kind TEXT NOT NULL CHECK (kind IN ('problem', 'warning', 'conversion')), -- refused, odd, or read in another unit
+  line INTEGER NOT NULL, -- of the file, 0 when it is about no line
+  column_name TEXT NOT NULL, -- as the header names it
+  value TEXT NOT NULL, -- of the cell, shortened
+  message TEXT NOT NULL, -- what is the matter
+  expected TEXT NOT NULL, -- what would do
+  PRIMARY KEY (upload_id, n)
+) STRICT, WITHOUT ROWID;
+
+CREATE INDEX upload_remarks_kind ON upload_remarks (upload_id, kind, n);
+
+CREATE TABLE upload_rows (
+  upload_id INTEGER NOT NULL REFERENCES uploads (id) ON DELETE CASCADE, -- the file
+  line INTEGER NOT NULL, -- its line
+  measurement TEXT NOT NULL, -- public id of the record it changes; '' when new
+  proposed TEXT NOT NULL CHECK (json_valid(proposed)), -- the row as proposed: column -> text, JSON
+  base TEXT NOT NULL CHECK (base = '' OR json_valid(base)), -- the accepted row it was compared with, JSON; '' when new
+  base_revision INTEGER NOT NULL, -- revision of that row
+  fingerprint BLOB NOT NULL, -- SHA-256 of the proposed row
+  PRIMARY KEY (upload_id, line)
+) STRICT, WITHOUT ROWID;
+
+CREATE TABLE uploads (
+  id INTEGER PRIMARY KEY, -- internal number
+  account_id INTEGER NOT NULL REFERENCES accounts (id), -- who sent it
+  name TEXT NOT NULL CHECK (length(name) BETWEEN 1 AND 200), -- of the file
+  bytes INTEGER NOT NULL CHECK (bytes >= 0), -- its length
+  state TEXT NOT NULL CHECK (state IN ('matching', 'checking', 'checked', 'sent', 'failed')), -- how far it has come
+  why TEXT NOT NULL DEFAULT '' CHECK (length(why) <= 2000), -- what the file is, in the sender's words
+  reading TEXT NOT NULL DEFAULT '{}' CHECK (json_valid(reading)), -- how it is read: encoding, separator, numbers, columns, licence, JSON
+  seen TEXT NOT NULL DEFAULT '{}' CHECK (json_valid(seen)), -- what a first look at it found, JSON
+  rows_read INTEGER NOT NULL DEFAULT 0, -- rows checked so far
+  bytes_read INTEGER NOT NULL DEFAULT 0, -- bytes read so far
+  report TEXT NOT NULL DEFAULT '{}' CHECK (json_valid(report)), -- counts of the check, JSON
+  batch_id INTEGER REFERENCES batches (id), -- the batch it became, NULL before
+  created_at TEXT NOT NULL, -- when it arrived
+  updated_at TEXT NOT NULL -- when something about it last changed
+) STRICT;
+
+CREATE INDEX uploads_account ON uploads (account_id, id);
 
 CREATE VIEW words AS
   SELECT m.id AS id, s.slug || ' ' || s.system_name || ' ' || s.other_names AS names, s.parent_deposit || ' ' || s.basin AS places,
