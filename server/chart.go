@@ -157,7 +157,8 @@ func coloured(held *chartAnswer, colour string) ([]views.ChartItem, views.ChartC
 func (a *App) chart(c echo.Context) error {
 	p, err := a.chartPage(c)
 	if err != nil {
-		return err
+		q, _ := params(c)
+		return a.filterRefused(c, q, filterPage{title: "Chart", nav: "chart", question: "Where are the channels?", action: "Show", own: chartParameters}, err)
 	}
 	if p.Facets, err = a.facets(c.Request().Context(), p.Filter); err != nil {
 		return err

@@ -109,7 +109,7 @@ func (a *App) expectationPage(c echo.Context) error {
 	page := a.expectationFrame(c, q, posted)
 	if asksNothing(q) && allow(q, targetParameters, catalogue.FilterParameters) == nil {
 		if page.Filter, err = filterOf(q); err != nil {
-			return err
+			return a.expectationRefused(c, page, err)
 		}
 		if page.Facets, err = a.facets(c.Request().Context(), page.Filter); err != nil {
 			return err
@@ -118,9 +118,8 @@ func (a *App) expectationPage(c echo.Context) error {
 	}
 	f, t, err := expectationQuestion(q)
 	page.Filter = f
-	var ferr error
-	if page.Facets, ferr = a.facets(c.Request().Context(), f); ferr != nil {
-		return ferr
+	if err == nil {
+		page.Facets, err = a.facets(c.Request().Context(), f)
 	}
 	if err == nil {
 		page.Result, err = a.expect(c.Request().Context(), f, t)
@@ -147,14 +146,14 @@ func (a *App) expectationFrame(c echo.Context, q url.Values, posted bool) views.
 // expectationRefused shows why, beside the form with everything typed still in
 // it.
 func (a *App) expectationRefused(c echo.Context, page views.ExpectationPage, err error) error {
-	p := problemOf(err)
-	if p.Status != http.StatusBadRequest {
+	f, all, ok := refusals(page.Typed, err)
+	if !ok {
 		return err
 	}
 	page.JSON = ""
-	page.RefusedField, page.Refused = p.Field, p.Detail
-	if p.Expected != "" {
-		page.Refused += " Expected: " + p.Expected
+	page.Filter, page.Refusals, page.TypedFilter, page.Fields = f, all, page.Typed, targetParameters
+	if page.Facets, err = a.facets(c.Request().Context(), f); err != nil {
+		return err
 	}
 	return render(c, http.StatusBadRequest, views.Expectation(page))
 }

@@ -134,7 +134,8 @@ func (a *App) deepTime(c echo.Context) (url.Values, catalogue.Filter, *expectati
 func (a *App) deepTimePage(c echo.Context) error {
 	q, f, res, err := a.deepTime(c)
 	if err != nil {
-		return err
+		return a.filterRefused(c, q, filterPage{title: "The deep-time test", nav: "expectation", question: "Do ancient systems tell the Coriolis parameter from its rivals?",
+			action: "Test", own: deepTimeParameters}, err)
 	}
 	p := a.page(c, "The deep-time test", "expectation")
 	p.Query = withoutEmpty(q)
@@ -168,12 +169,13 @@ func (a *App) reportPage(c echo.Context) error {
 	table := strings.TrimSpace(q.Get("targets"))
 	q = withoutEmpty(q)
 	q.Del("targets")
+	refuse := func(err error) error { return a.expectationRefused(c, a.expectationFrame(c, q, posted), err) }
 	if err := allow(q, targetParameters, catalogue.FilterParameters); err != nil {
-		return err
+		return refuse(err)
 	}
 	f, err := filterOf(q)
 	if err != nil {
-		return err
+		return refuse(err)
 	}
 	queries := []namedTarget{{query: q}}
 	if table != "" {
@@ -186,7 +188,7 @@ func (a *App) reportPage(c echo.Context) error {
 	for _, n := range queries {
 		one, err := a.reportOn(c, n, f, posted)
 		if err != nil {
-			return err
+			return refuse(err)
 		}
 		report.Targets = append(report.Targets, one)
 	}

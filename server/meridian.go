@@ -27,7 +27,7 @@ func (a *App) routesMeridian(e *echo.Echo) {
 func (a *App) meridian(c echo.Context) error {
 	m, q, err := a.meridianQuestion(c)
 	if err != nil {
-		return err
+		return a.filterRefused(c, q, filterPage{title: "Meridian", nav: "meridian", question: "Do channels straighten towards the poles?", action: "Show", own: meridianParameters}, err)
 	}
 	m.Page = a.page(c, "Meridian", "meridian")
 	if m.LinkedData, err = a.catalogueLinkedData(c.Request().Context(), a.baseAddress(c)); err != nil {

@@ -146,8 +146,8 @@ func (a *App) regressionCancel(c echo.Context) error {
 	if j := a.jobs.find(jobID(key)); j != nil {
 		j.cancel()
 	}
-	page := views.RegressionPage{Page: a.regressionFrame(c, f, req), Request: req, Filter: f, Categories: stats.Categories,
-		Refused: "The fit was cancelled. Ask for fewer models or fewer resamples, or fit it again."}
+	page := views.RegressionPage{Page: a.regressionFrame(c, f, req), Request: req, Filter: f, Categories: stats.Categories}
+	page.Refusals = []views.Refusal{{Message: "The fit was cancelled. Ask for fewer models or fewer resamples, or fit it again."}}
 	page.JSON, page.CSV, page.Path = "", "", "/regression"
 	if page.Facets, err = a.facets(c.Request().Context(), f); err != nil {
 		return err

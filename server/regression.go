@@ -78,27 +78,21 @@ func (a *App) regressionFrame(c echo.Context, f catalogue.Filter, req stats.Requ
 }
 
 // regressionRefused shows why a question has no answer, with the form still
-// there, so that one setting can be changed and nothing is lost. An address
-// that cannot be read at all gets the plain page of errors.
+// there, so that one setting can be changed and nothing is lost.
 func (a *App) regressionRefused(c echo.Context, q url.Values, err error) error {
-	p := problemOf(err)
-	f, ferr := filterOf(q)
-	var in interface{ Input() (string, string) }
-	if p.Status != http.StatusBadRequest || ferr != nil || !errors.As(err, &in) {
+	f, all, ok := refusals(q, err)
+	if !ok {
 		return err
 	}
-	req, rerr := regressionRequest(q)
-	if rerr != nil {
-		req = stats.DefaultRequest()
-	}
-	page := views.RegressionPage{Page: a.regressionFrame(c, f, req), Request: req, Filter: f, Categories: stats.Categories,
-		RefusedField: p.Field, Refused: p.Detail}
+	req := readableRequest(q)
+	page := views.RegressionPage{Page: a.regressionFrame(c, f, req), Request: req, Filter: f, Categories: stats.Categories}
 	page.JSON, page.CSV = "", ""
-	if page.Facets, ferr = a.facets(c.Request().Context(), f); ferr != nil {
-		return ferr
+	page.Refusals, page.TypedFilter, page.Fields = all, q, regressionParameters
+	if page.Facets, err = a.facets(c.Request().Context(), f); err != nil {
+		return err
 	}
-	if page.Recomputations, ferr = a.finishedRecomputations(c.Request().Context()); ferr != nil {
-		return ferr
+	if page.Recomputations, err = a.finishedRecomputations(c.Request().Context()); err != nil {
+		return err
 	}
 	return render(c, http.StatusBadRequest, views.Regression(page))
 }

@@ -90,9 +90,12 @@ func (a *App) nextPage(c echo.Context) error {
 	if hasEmpty(q) {
 		return c.Redirect(http.StatusFound, withQuery("/regression/next", withoutEmpty(q)))
 	}
+	refuse := func(err error) error {
+		return a.filterRefused(c, q, filterPage{title: "Where to measure next", nav: "regression", question: "Where should the next system be measured?", action: "Ask", own: nextParameters}, err)
+	}
 	f, req, o, err := nextQuestion(q)
 	if err != nil {
-		return err
+		return refuse(err)
 	}
 	ctx := c.Request().Context()
 	p := a.page(c, "Where to measure next", "regression")
@@ -100,10 +103,10 @@ func (a *App) nextPage(c echo.Context) error {
 	p.JSON = withQuery("/regression/next.json", q)
 	page := views.NextPage{Page: p, Request: req, Options: o, Filter: f, Terms: nextTerms, Categories: stats.Categories, Land: land.Rings()}
 	if page.Facets, err = a.facets(ctx, f); err != nil {
-		return err
+		return refuse(err)
 	}
 	if page.Answer, err = a.next(ctx, f, req, o); err != nil {
-		return err
+		return refuse(err)
 	}
 	return render(c, http.StatusOK, views.Next(page))
 }

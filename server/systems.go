@@ -29,7 +29,7 @@ func systemsQuestion(c echo.Context) (url.Values, catalogue.Filter, error) {
 		return nil, catalogue.Filter{}, err
 	}
 	if err := allow(q, catalogue.FilterParameters); err != nil {
-		return nil, catalogue.Filter{}, err
+		return q, catalogue.Filter{}, err
 	}
 	f, err := filterOf(q)
 	return q, f, err
@@ -37,14 +37,17 @@ func systemsQuestion(c echo.Context) (url.Values, catalogue.Filter, error) {
 
 // systems is the filtered table.
 func (a *App) systems(c echo.Context) error {
+	refuse := func(q url.Values, err error) error {
+		return a.filterRefused(c, q, filterPage{title: "Systems", nav: "systems", question: "Channel systems", action: "Show"}, err)
+	}
 	q, f, err := systemsQuestion(c)
 	if err != nil {
-		return err
+		return refuse(q, err)
 	}
 	ctx := c.Request().Context()
 	p := views.SystemsPage{Filter: f}
 	if p.Systems, p.Total, err = a.store.Systems(ctx, f); err != nil {
-		return err
+		return refuse(q, err)
 	}
 	if p.Facets, err = a.store.Facets(ctx, f); err != nil {
 		return err

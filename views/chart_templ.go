@@ -129,7 +129,7 @@ func Chart(p ChartPage) templ.Component {
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
-			templ_7745c5c3_Err = FilterFields(p.Filter, p.Facets).Render(ctx, templ_7745c5c3_Buffer)
+			templ_7745c5c3_Err = FilterFields(p.Page, p.Filter, p.Facets).Render(ctx, templ_7745c5c3_Buffer)
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}

@@ -13,22 +13,21 @@ import (
 )
 
 // ExpectationPage is what /expectation shows. Result is nil when nothing was
-// asked, or when it was refused; Refused then says why.
+// asked, or when it was refused; Refusals then says why.
 type ExpectationPage struct {
 	Page
-	Typed        url.Values // as typed, so that nothing is lost on an error
-	Posted       bool       // asked by POST: the target stays out of addresses
-	Target       expectation.Target
-	Filter       catalogue.Filter
-	Facets       []catalogue.Facet
-	Result       *expectation.Result
-	Days         DayFigure
-	Series       []expectation.SeriesPoint // the site through time
-	Name         string                    // of the target in a report on several
-	Report       bool                      // printed: nothing stays folded
-	Columns      []ColumnHelp
-	Refused      string
-	RefusedField string
+	Typed   url.Values // as typed, so that nothing is lost on an error
+	Posted  bool       // asked by POST: the target stays out of addresses
+	Target  expectation.Target
+	Filter  catalogue.Filter
+	Facets  []catalogue.Facet
+	Result  *expectation.Result
+	Days    DayFigure
+	Series  []expectation.SeriesPoint // the site through time
+	Name    string                    // of the target in a report on several
+	Report  bool                      // printed: nothing stays folded
+	Columns []ColumnHelp
+	Refused string // why a target of a report has no answer
 }
 
 // ColumnHelp is one column of a file of targets.
@@ -116,15 +115,7 @@ func (p ExpectationPage) value(name string) string { return p.Typed.Get(name) }
 
 // err is the sentence beside the field that was refused.
 func (p ExpectationPage) err(name string) string {
-	if p.RefusedField == name {
-		return p.Refused
-	}
-	return ""
-}
-
-// formErr is the sentence on top when the refused parameter has no field.
-func (p ExpectationPage) hasField(name string) bool {
-	return slices.ContainsFunc(p.Columns, func(c ColumnHelp) bool { return !c.Out && c.Name == name })
+	return p.refused(name)
 }
 
 // explained are the explanations with an expectation, the combined one last.

@@ -37,7 +37,7 @@ func orFirst(v, otherwise string) string {
 // anySet says whether one of the fields was typed in or refused, so that it is
 // never hidden.
 func (p ExpectationPage) anySet(names ...string) bool {
-	return slices.ContainsFunc(names, func(n string) bool { return strings.TrimSpace(p.value(n)) != "" || p.RefusedField == n })
+	return slices.ContainsFunc(names, func(n string) bool { return strings.TrimSpace(p.value(n)) != "" || p.refused(n) != "" })
 }
 
 func dayChoices(chosen string) []choice {

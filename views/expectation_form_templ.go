@@ -204,7 +204,7 @@ func expectationForm(p ExpectationPage) templ.Component {
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		if len(p.Filter.Values()) > 0 {
+		if len(p.Filter.Values()) > 0 || p.filterRefused() {
 			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 12, " open")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
@@ -214,7 +214,7 @@ func expectationForm(p ExpectationPage) templ.Component {
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = FilterFields(p.Filter, p.Facets).Render(ctx, templ_7745c5c3_Buffer)
+		templ_7745c5c3_Err = FilterFields(p.Page, p.Filter, p.Facets).Render(ctx, templ_7745c5c3_Buffer)
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}

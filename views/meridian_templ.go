@@ -909,7 +909,7 @@ func meridianControls(m MeridianPage) templ.Component {
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = FilterFields(m.Filter, m.Facets).Render(ctx, templ_7745c5c3_Buffer)
+		templ_7745c5c3_Err = FilterFields(m.Page, m.Filter, m.Facets).Render(ctx, templ_7745c5c3_Buffer)
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}

@@ -29,6 +29,9 @@ type Page struct {
 	Release      string            // the page shows this release, "" = the catalogue as it is
 	Live         string            // address of the same view of the catalogue as it is
 	LinkedData   string            // JSON-LD about the page, "" = none
+	Refusals     []Refusal         // what of the address or form cannot be used
+	Fields       []string          // the page's own settings that have a field
+	TypedFilter  url.Values        // the address as typed, when something of it was refused
 }
 
 // User is who is signed in.

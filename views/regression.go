@@ -11,7 +11,7 @@ import (
 )
 
 // RegressionPage is what /regression shows. Analysis is nil when the question
-// was refused; Refused then says why.
+// was refused; Refusals then says why.
 type RegressionPage struct {
 	Page
 	Analysis       *stats.Analysis
@@ -19,8 +19,6 @@ type RegressionPage struct {
 	Filter         catalogue.Filter
 	Facets         []catalogue.Facet
 	Categories     []string // that may stand in a joint model
-	Refused        string
-	RefusedField   string
 	Recomputations []string // finished ones, by name
 	Freezing       Freezing // as typed, when it was refused
 	Progress       float64  // of a fit on its way, 0..1

@@ -61,8 +61,9 @@ func (p RegressionPage) jointChoices() []choice {
 func (p RegressionPage) hasMore() bool {
 	r, d := p.Request, stats.DefaultRequest()
 	return r.Interval != d.Interval || r.Level != d.Level || r.Permutations != d.Permutations || r.Time != d.Time || r.Pick != d.Pick ||
-		r.MeasurementError || r.ThinStraight != 0 || r.ThinSinuous != 0 || r.K != d.K || slices.Contains(
-		[]string{"interval", "level", "permutations", "time", "pick", "measurement_error", "thin_straight", "thin_sinuous", "k", "resamples", "seed"}, p.RefusedField)
+		r.MeasurementError || r.ThinStraight != 0 || r.ThinSinuous != 0 || r.K != d.K || slices.ContainsFunc(p.Refusals, func(x Refusal) bool {
+		return slices.Contains([]string{"interval", "level", "permutations", "time", "pick", "measurement_error", "thin_straight", "thin_sinuous", "k", "resamples", "seed"}, x.Name)
+	})
 }
 
 func floatText(x float64) string { return strconv.FormatFloat(x, 'f', -1, 64) }
@@ -75,7 +76,7 @@ func yesNoText(b bool) string {
 }
 
 // filtered says whether the rows are chosen by anything.
-func (p RegressionPage) filtered() bool { return len(p.Filter.Values()) > 0 }
+func (p RegressionPage) filtered() bool { return len(p.Filter.Values()) > 0 || p.filterRefused() }
 
 func sortedNames(q url.Values) []string {
 	out := make([]string, 0, len(q))

@@ -549,11 +549,11 @@ func nextForm(p NextPage) templ.Component {
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = selectField("term", "Narrow the interval of", p.termChoices(p.Options.Term), "").Render(ctx, templ_7745c5c3_Buffer)
+		templ_7745c5c3_Err = selectField(p.Page, "term", "Narrow the interval of", p.termChoices(p.Options.Term), "").Render(ctx, templ_7745c5c3_Buffer)
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = selectField("beside", "fitted beside", p.termChoices(p.Options.Beside), "").Render(ctx, templ_7745c5c3_Buffer)
+		templ_7745c5c3_Err = selectField(p.Page, "beside", "fitted beside", p.termChoices(p.Options.Beside), "").Render(ctx, templ_7745c5c3_Buffer)
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
@@ -653,23 +653,23 @@ func nextForm(p NextPage) templ.Component {
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = numberField("poleward", "with systems poleward of", floatText(p.Options.Poleward), "0", "84", "any", "°", "").Render(ctx, templ_7745c5c3_Buffer)
+		templ_7745c5c3_Err = numberField(p.Page, "poleward", "with systems poleward of", floatText(p.Options.Poleward), "0", "84", "any", "°", "").Render(ctx, templ_7745c5c3_Buffer)
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = selectField("response", "Sinuosity", choices(stats.Responses, p.Request.Response, responseTexts), "").Render(ctx, templ_7745c5c3_Buffer)
+		templ_7745c5c3_Err = selectField(p.Page, "response", "Sinuosity", choices(stats.Responses, p.Request.Response, responseTexts), "").Render(ctx, templ_7745c5c3_Buffer)
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = selectField("cluster", "Resample whole", choices(stats.Clusterings, p.Request.Cluster, clusterTexts), "").Render(ctx, templ_7745c5c3_Buffer)
+		templ_7745c5c3_Err = selectField(p.Page, "cluster", "Resample whole", choices(stats.Clusterings, p.Request.Cluster, clusterTexts), "").Render(ctx, templ_7745c5c3_Buffer)
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = numberField("draws", "Simulated systems a cell", strconv.Itoa(p.Options.Draws), "20", "2000", "1", "", "").Render(ctx, templ_7745c5c3_Buffer)
+		templ_7745c5c3_Err = numberField(p.Page, "draws", "Simulated systems a cell", strconv.Itoa(p.Options.Draws), "20", "2000", "1", "", "").Render(ctx, templ_7745c5c3_Buffer)
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = numberField("seed", "Seed", strconv.FormatUint(p.Request.Seed, 10), "0", "9007199254740991", "1", "", "").Render(ctx, templ_7745c5c3_Buffer)
+		templ_7745c5c3_Err = numberField(p.Page, "seed", "Seed", strconv.FormatUint(p.Request.Seed, 10), "0", "9007199254740991", "1", "", "").Render(ctx, templ_7745c5c3_Buffer)
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
@@ -687,7 +687,7 @@ func nextForm(p NextPage) templ.Component {
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = FilterFields(p.Filter, p.Facets).Render(ctx, templ_7745c5c3_Buffer)
+		templ_7745c5c3_Err = FilterFields(p.Page, p.Filter, p.Facets).Render(ctx, templ_7745c5c3_Buffer)
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
