@@ -248,9 +248,7 @@ func TestCutAtAntimeridian(t *testing.T) {
 	} {
 		got := CutAtAntimeridian(c.in)
 		var want [][][]float64
-		for _, l := range c.want {
-			want = append(want, l)
-		}
+		want = append(want, c.want...)
 		if diff := cmp.Diff(want, got, cmp.Comparer(func(a, b float64) bool { return math.Abs(a-b) < 1e-12 })); diff != "" {
 			t.Errorf("%s: %s", c.name, diff)
 		}

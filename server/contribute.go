@@ -43,7 +43,7 @@ func (p *contributions) blank(c echo.Context) error {
 		return err
 	}
 	u := p.user(c)
-	v := url.Values{}
+	var v url.Values
 	switch {
 	case q.Get("measurement") != "":
 		row, revision, err := p.store.Measurement(c.Request().Context(), q.Get("measurement"))

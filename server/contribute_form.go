@@ -19,7 +19,6 @@ type record struct {
 	shown      map[string]string // column -> conversion in words
 	findings   []catalogue.Finding
 	overrides  map[string]string // check -> reason
-	base       int64             // revision of the accepted record the author saw
 	checkedAll bool              // missing fields and reasons count as errors
 	lenient    bool              // warnings need no reason: a curator decides
 }

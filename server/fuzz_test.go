@@ -2,7 +2,6 @@ package main
 
 import (
 	"net/url"
-	"reflect"
 	"strings"
 	"testing"
 
@@ -16,31 +15,6 @@ func refusal(t *testing.T, err error) {
 	if p := problemOf(err); p.Status >= 500 || strings.TrimSpace(p.Detail) == "" {
 		t.Fatalf("%v is no refusal", err)
 	}
-}
-
-// FuzzRegressionQuery: a question is refused with a sentence, or read and
-// written back to the same question.
-func FuzzRegressionQuery(f *testing.F) {
-	for _, q := range []string{"model=linear:coriolis&seed=1", "model=broken_line:valley_slope&joint=valley_slope,feeder&interaction=valley_slope,feeder", "level=0.9&resamples=99&scale=ln_excess",
-		"kind=river&bbox=170,-10,-170,10&group=kind", "thin_straight=0.5&k=0&cluster=none&pick=best", "seed=18446744073709551615", "model=:", "level=NaN&seed=-1"} {
-		f.Add(q)
-	}
-	f.Fuzz(func(t *testing.T, query string) {
-		q, err := url.ParseQuery(query)
-		if err != nil {
-			return
-		}
-		filter, req, err := regressionQuestion(q)
-		if err != nil {
-			refusal(t, err)
-			return
-		}
-		back := withValues(regressionFilter(filter).Values(), regressionValues(req))
-		filter2, req2, err := regressionQuestion(back)
-		if err != nil || !reflect.DeepEqual(req, req2) || !reflect.DeepEqual(regressionFilter(filter).Values(), filter2.Values()) {
-			t.Fatalf("%v reads back as %+v %+v: %v", back, filter2, req2, err)
-		}
-	})
 }
 
 // FuzzExpectationQuery: a target is refused with a sentence, or holds numbers

@@ -98,12 +98,9 @@ var ribbonLengths = []float64{104, 94, 84, 74, 66, 58, 50, 43, 37, 31, 26, 22}
 // placed is one ribbon with its place on the page.
 type placed struct {
 	MeridianItem
-	x, y    float64 // page, of the start of its axis
-	shift   float64 // page units it was moved off its latitude
-	ribbon  Shape
-	colour  string // r0..r6
-	hemi    string
-	inExtra bool
+	x, y   float64 // page, of the start of its axis
+	shift  float64 // page units it was moved off its latitude
+	ribbon Shape
 }
 
 // meridianLayout is the geometry of one drawing.
@@ -231,11 +228,7 @@ func (m *meridianLayout) place(items []MeridianItem) (without int) {
 		}
 		y := y0 + bestShift
 		g.take(best+r.Left-pad, best+r.Right+pad+letterRoom, y-half, y+half)
-		hemi := "N"
-		if it.Latitude < 0 {
-			hemi = "S"
-		}
-		m.ribbons = append(m.ribbons, placed{MeridianItem: it, x: best, y: y, shift: bestShift, ribbon: r, hemi: hemi})
+		m.ribbons = append(m.ribbons, placed{MeridianItem: it, x: best, y: y, shift: bestShift, ribbon: r})
 	}
 	return without
 }

@@ -1,7 +1,6 @@
 package views
 
 import (
-	"net/url"
 	"slices"
 	"strconv"
 	"strings"
@@ -58,23 +57,6 @@ func orList(names []string) string {
 		return names[0]
 	}
 	return strings.Join(names[:len(names)-1], ", ") + " or " + names[len(names)-1]
-}
-
-// with is the address of the page with some parameters changed; an empty value
-// takes the parameter out.
-func (p RegressionPage) with(pairs ...string) string {
-	q := url.Values{}
-	for k, v := range p.Query {
-		q[k] = v
-	}
-	for i := 0; i+1 < len(pairs); i += 2 {
-		if pairs[i+1] == "" {
-			q.Del(pairs[i])
-		} else {
-			q[pairs[i]] = []string{pairs[i+1]}
-		}
-	}
-	return p.Path + "?" + q.Encode()
 }
 
 // modelChoice is one option of the select that picks a model.
