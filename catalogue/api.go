@@ -111,6 +111,10 @@ type Submission struct {
 	// Since are the changes others made to the record after the author saw it.
 	Since []FieldChange
 
+	// Audience is who is to see the row, as given to SaveDraft and Submit; see
+	// AudienceOf for the way back.
+	Audience Audience
+
 	raw Row // as kept: blank choices are not said
 }
 

@@ -159,6 +159,10 @@ func (a *applier) locate(ctx context.Context, p *Row) (ex examined, err error) {
 	if ex.current, ex.meta, err = a.rowOf(ctx, p.Measurement); err != nil {
 		return ex, err
 	}
+	if ex.current == nil && PrivateContribution(p.Measurement) != 0 {
+		ex.findings = append(ex.findings, Finding{Column: "measurement", Key: "measurement_private", Hard: true,
+			Message: p.Measurement + " names a private row, which no file changes", Expected: "an empty cell for a new measurement; the private row is changed on its own page"})
+	}
 	ex.named = p.System != ""
 	ex.systemID, ex.system, err = a.place(ctx, p, ex.current)
 	var refused *Error

@@ -21,6 +21,10 @@ func (a *applier) place(ctx context.Context, p, current *Row) (int64, *Row, erro
 		if err != nil {
 			return 0, nil, err
 		}
+		if id == 0 && strings.HasPrefix(p.System, PrivatePrefix) {
+			p.System = "" // of a private system: here it goes by its name
+			return a.place(ctx, p, current)
+		}
 		if id == 0 && reservedSlugs[p.System] {
 			p.System, err = freeSlug(ctx, a.tx, p.System)
 		}

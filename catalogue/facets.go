@@ -5,6 +5,7 @@ import (
 	"database/sql"
 	"slices"
 	"sort"
+	"strconv"
 	"strings"
 	"sync"
 )
@@ -92,8 +93,15 @@ type facetIndexes struct {
 const maxFrozenFacets = 3
 
 // of returns the index of a release, or, without a name, of the catalogue as
-// it is.
+// it is for who asks.
 func (x *facetIndexes) of(ctx context.Context, q querier, release string) (*facetIndex, error) {
+	if release == "" && SeesPrivate(ctx) {
+		var revision int64
+		if err := q.QueryRowContext(ctx, `SELECT coalesce(max(id), 0) FROM revisions`).Scan(&revision); err != nil {
+			return nil, err
+		}
+		release = ViewKey(ctx) + strconv.FormatInt(revision, 10) // no name of a release holds blanks
+	}
 	if release == "" {
 		return x.current(ctx, q)
 	}

@@ -74,6 +74,7 @@ func databaseFaults(ctx context.Context, db querier) ([]string, error) {
 			WHERE p.id IS NULL OR m.latitude_deg NOT BETWEEN p.south AND p.north OR m.longitude_deg - 360 * (m.longitude_deg > 180) NOT BETWEEN p.west AND p.east`},
 		{"%d entries of the place index belong to no measurement", `SELECT count(*) FROM places p LEFT JOIN measurements m ON m.id = p.id WHERE m.id IS NULL`},
 		{"%d measurements are not in the text index, or are there twice", `SELECT abs((SELECT count(*) FROM measurements) - (SELECT count(*) FROM search_docsize))`},
+		{"%d private rows are not in their text index, or are there twice", `SELECT abs((SELECT count(*) FROM hidden_rows) - (SELECT count(*) FROM hidden_search_docsize))`},
 	} {
 		var n int
 		if err := db.QueryRowContext(ctx, c.query).Scan(&n); err != nil {

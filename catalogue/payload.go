@@ -58,3 +58,10 @@ func encodeWindows(x []float64) (string, error) {
 	b, err := json.Marshal(x)
 	return string(b), err
 }
+
+func decodeWindows(text string) (x []float64, err error) {
+	if text != "[]" {
+		err = json.Unmarshal([]byte(text), &x)
+	}
+	return x, err
+}

@@ -79,7 +79,7 @@ func (w *where) addText(text, release string) {
 		w.add("m.version IN (SELECT rowid FROM frozen_search WHERE frozen_search MATCH ?)", match)
 		return
 	}
-	w.add("m.id IN (SELECT rowid FROM search WHERE search MATCH ?)", match)
+	w.add(textMatch, match)
 }
 
 // addBox preselects with the R*Tree, whose 32-bit boxes are rounded outwards,

@@ -116,6 +116,12 @@ type Row struct {
 	// Invented is true for rows drawn for the demo; it is no column of its
 	// own: such rows carry InventedMark at the start of Notes.
 	Invented bool
+	// Coarse is true where the place is rounded because the exact one is under
+	// embargo; such rows carry CoarseMark in Notes.
+	Coarse bool
+	// Private is true of a row that only some people see, among them who asks;
+	// its Measurement starts with PrivatePrefix.
+	Private bool
 	// WindowSinuosities are those of the stored centreline, if there is one.
 	WindowSinuosities []float64
 }

@@ -65,10 +65,14 @@ func (r frozenReader) ExecContext(context.Context, string, ...any) (sql.Result, 
 	return nil, &Error{Code: Forbidden, Message: "a release is never changed"}
 }
 
-// at is where the rows of a filter are read: q itself for the catalogue as it
-// is, or its release. An unknown release is Invalid and names the known ones.
+// at is where the rows of a filter are read: q itself for the catalogue as
+// everybody sees it, with what else the viewer of the context sees (AsSeenBy),
+// or a release. An unknown release is Invalid and names the known ones.
 func at(ctx context.Context, q querier, release string) (querier, error) {
 	if release == "" {
+		if v, ok := viewerOf(ctx); ok {
+			return seenBy(ctx, q, v)
+		}
 		return q, nil
 	}
 	id, name, err := releaseID(ctx, q, release)

@@ -108,7 +108,10 @@ func (s *Store) Withdraw(ctx context.Context, id, by int64) error {
 		if owner != by {
 			return &Error{Code: Forbidden, Message: "only its author can withdraw a contribution"}
 		}
-		return s.decide(ctx, tx, id, "withdrawn", "", by, "draft", "submitted", "returned")
+		if err := s.decide(ctx, tx, id, "withdrawn", "", by, "draft", "submitted", "returned"); err != nil {
+			return err
+		}
+		return unhide(ctx, tx, id, "")
 	})
 }
 
@@ -200,13 +203,25 @@ func (s *Store) acceptOne(ctx context.Context, a *applier, id int64, comment str
 		return err
 	}
 	a.set, a.why, a.from, a.owner = 0, whyAccepted(comment, sub.Overrides), id, sub.By.ID
+	aud, err := audienceOf(ctx, a.tx, id)
+	if err != nil {
+		return err
+	}
+	if aud.Kind == AudienceLater && (aud.Until == "" || aud.Until > s.today()) {
+		return s.embargo(ctx, a, sub, row, aud)
+	}
 	if _, err := a.apply(ctx, &row); err != nil {
 		return err
 	}
 	if sub.Centreline != "" {
-		_, err = a.addLine(ctx, Centreline{System: row.System, Measurement: row.Measurement, Line: sub.Centreline, Settings: sub.CentrelineSettings, Sinuosities: sub.CentrelineSinuosities})
+		if _, err = a.addLine(ctx, Centreline{System: row.System, Measurement: row.Measurement, Line: sub.Centreline, Settings: sub.CentrelineSettings, Sinuosities: sub.CentrelineSinuosities}); err != nil {
+			return err
+		}
 	}
-	return err
+	if err := unhide(ctx, a.tx, id, row.System); err != nil {
+		return err
+	}
+	return keepAudience(ctx, a.tx, id, Audience{})
 }
 
 // settle returns the row to be written, or the conflict.

@@ -69,6 +69,8 @@ func (sc *rowScanner) scan(rows interface{ Scan(...any) error }, r *Row) (rowMet
 		}
 	}
 	r.Invented = strings.HasPrefix(r.Notes, InventedMark)
+	r.Coarse = isCoarse(r.Notes)
+	r.Private = meta.id < 0
 	return meta, nil
 }
 

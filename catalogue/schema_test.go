@@ -17,7 +17,7 @@ const schemaHead = `-- The whole schema as the migrations leave it. Generated: g
 // schemaOf writes the schema of a catalogue, without the shadow tables that
 // SQLite makes for its virtual ones.
 func schemaOf(t *testing.T, s *Store) string {
-	rows, err := s.r.QueryContext(ctx, `SELECT sql FROM sqlite_schema WHERE sql IS NOT NULL AND NOT (type = 'table' AND (name LIKE 'search\_%' ESCAPE '\' OR name LIKE 'places\_%' ESCAPE '\' OR name LIKE 'sqlite\_%' ESCAPE '\' OR name LIKE 'frozen\_search\_%' ESCAPE '\' OR name LIKE 'line\_places\_%' ESCAPE '\'))
+	rows, err := s.r.QueryContext(ctx, `SELECT sql FROM sqlite_schema WHERE sql IS NOT NULL AND NOT (type = 'table' AND (name LIKE 'search\_%' ESCAPE '\' OR name LIKE 'places\_%' ESCAPE '\' OR name LIKE 'sqlite\_%' ESCAPE '\' OR name LIKE 'frozen\_search\_%' ESCAPE '\' OR name LIKE 'line\_places\_%' ESCAPE '\' OR name LIKE 'hidden\_search\_%' ESCAPE '\'))
 		ORDER BY tbl_name, type = 'trigger', type = 'index', name`)
 	if err != nil {
 		t.Fatal(err)

@@ -13,6 +13,7 @@ import (
 	"path/filepath"
 	"runtime"
 	"strings"
+	"sync/atomic"
 	"time"
 
 	"modernc.org/sqlite"
@@ -31,6 +32,7 @@ type Store struct {
 	facets    facetIndexes
 	hashes    chan struct{} // bounds the memory of password hashing
 	now       func() time.Time
+	due       atomic.Int64 // second at which Lift has to look again
 }
 
 // Options of Open.
@@ -50,6 +52,10 @@ type Options struct {
 func Open(ctx context.Context, path string, o Options) (*Store, error) {
 	s := &Store{path: path, onLand: o.OnLand, hashes: make(chan struct{}, hashesAtOnce), now: time.Now}
 	if err := s.open(ctx, o); err != nil {
+		_ = s.Close()
+		return nil, openError(path, err)
+	}
+	if _, err := s.Lift(ctx); err != nil {
 		_ = s.Close()
 		return nil, openError(path, err)
 	}

@@ -22,25 +22,35 @@ func (s *Store) SaveDraft(ctx context.Context, by int64, sub Submission) (id int
 // without a reason in Overrides, are refused with an Invalid Error whose Cause
 // is Findings. The same contribution sent twice waits once.
 func (s *Store) Submit(ctx context.Context, by int64, sub Submission) (id int64, err error) {
-	if len(sub.Typed) > 0 {
-		for _, c := range Columns {
-			if v, ok := sub.Typed[c.Name]; ok {
-				var r Row
-				if e := c.Set(&r, v); e != nil {
-					return 0, e
-				}
-			}
-		}
-		return 0, &Error{Code: Invalid, Message: "some cells cannot be read"}
+	if err := sub.readable(); err != nil {
+		return 0, err
 	}
 	err = s.write(ctx, func(tx *sql.Tx) error {
 		if err := s.ready(ctx, tx, &sub); err != nil {
 			return err
 		}
-		id, err = s.keep(ctx, tx, by, &sub, "submitted")
-		return err
+		if id, err = s.keep(ctx, tx, by, &sub, "submitted"); err != nil {
+			return err
+		}
+		return s.rehide(ctx, tx, id, &sub)
 	})
 	return id, err
+}
+
+// readable refuses a contribution with cells that cannot be read.
+func (sub *Submission) readable() error {
+	if len(sub.Typed) == 0 {
+		return nil
+	}
+	for _, c := range Columns {
+		if v, ok := sub.Typed[c.Name]; ok {
+			var r Row
+			if e := c.Set(&r, v); e != nil {
+				return e
+			}
+		}
+	}
+	return &Error{Code: Invalid, Message: "some cells cannot be read"}
 }
 
 // Findings are the Cause of a refused submission.
@@ -97,6 +107,9 @@ func (s *Store) keep(ctx context.Context, tx *sql.Tx, by int64, sub *Submission,
 	if err != nil {
 		return 0, err
 	}
+	if err := s.checkAudience(ctx, tx, by, sub, state, p.base != ""); err != nil {
+		return 0, err
+	}
 	if state == "submitted" {
 		if p.base != "" && len(Diff(sub.Base, normal(sub.Row))) == 0 && sub.Centreline == "" {
 			return 0, &Error{Code: Invalid, Message: "nothing is changed: the record already reads so", Expected: "a change in at least one field"}
@@ -109,6 +122,9 @@ func (s *Store) keep(ctx context.Context, tx *sql.Tx, by int64, sub *Submission,
 	if sub.ID != 0 {
 		_, err = tx.ExecContext(ctx, `UPDATE submissions SET state = ?, measurement = ?, proposed = ?, typed = ?, base = ?, base_revision = ?, overrides = ?,
 			line = ?, line_settings = ?, line_sinuosities = ?, fingerprint = ?, updated_at = ? WHERE id = ?`, append(args, sub.ID)...)
+		if err == nil {
+			err = keepAudience(ctx, tx, sub.ID, sub.Audience)
+		}
 		return sub.ID, err
 	}
 	res, err := tx.ExecContext(ctx, `INSERT INTO submissions (state, measurement, proposed, typed, base, base_revision, overrides,
@@ -117,7 +133,11 @@ func (s *Store) keep(ctx context.Context, tx *sql.Tx, by int64, sub *Submission,
 	if err != nil {
 		return 0, err
 	}
-	return res.LastInsertId()
+	id, err := res.LastInsertId()
+	if err == nil {
+		err = keepAudience(ctx, tx, id, sub.Audience)
+	}
+	return id, err
 }
 
 // keptFor refuses to write over what is another person's or decided, and

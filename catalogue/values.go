@@ -213,7 +213,7 @@ func (r *Row) Normalise() {
 	if r.PalaeolatitudeDeg.Valid && r.PalaeolatitudeMethod == "" {
 		r.PalaeolatitudeMethod = "given"
 	}
-	r.Invented = strings.HasPrefix(r.Notes, InventedMark)
+	r.Invented, r.Coarse = strings.HasPrefix(r.Notes, InventedMark), isCoarse(r.Notes)
 }
 
 // NewRow returns a row with every choice at its default.
