@@ -23,7 +23,9 @@ type Detail struct {
 	System
 	Sources     []Source
 	Centrelines []Centreline
-	History     []Revision
+	History     []Revision  // of the system, all its measurements ever, and its lines
+	Withdrawn   []Withdrawn // its measurements that are no longer part of the catalogue
+	Merged      []string    // slugs of systems that were merged into it
 }
 
 // Source is a paper or survey.
@@ -46,14 +48,15 @@ type Centreline struct {
 // Revision is one recorded change.
 type Revision struct {
 	ID     int64
+	Set    int64 // the change set it was made in
 	At     time.Time
 	Who    string
 	Why    string
-	Record string // "system:slug" or "measurement:id"
+	Record string // "system:slug", "measurement:id" or "centreline:number"
 	Field  string
 	Before string
 	After  string
-	Action string // create, change, accept, return, withdraw
+	Action string // create, change, withdraw, accept (put back)
 }
 
 // Facet counts the accepted systems by each choice of one column under the
@@ -108,6 +111,15 @@ type Submission struct {
 	CurrentRevision int64
 	// Base is the record as the author saw it, nil when new.
 	Base *Row
+	// Act is what is asked for: ActEdit, ActWithdraw or ActRestore. Instead is
+	// the measurement that is to stand for a withdrawn one.
+	Act     string
+	Instead string
+	// Became is the measurement an accepted submission made or changed, and
+	// Accepted the record as it was accepted, with the curator's edits.
+	Became   string
+	Accepted *Row
+	Edits    []FieldChange // what the curator changed of the proposal
 	// Since are the changes others made to the record after the author saw it.
 	Since []FieldChange
 
@@ -117,6 +129,13 @@ type Submission struct {
 
 	raw Row // as kept: blank choices are not said
 }
+
+// The acts of a Submission.
+const (
+	ActEdit     = "edit"     // a new record, or other values for one
+	ActWithdraw = "withdraw" // a record is to leave the catalogue
+	ActRestore  = "restore"  // a withdrawn record is to come back
+)
 
 // FieldChange is one field before and after, as text.
 type FieldChange struct{ Column, Before, After string }

@@ -18,6 +18,8 @@ type applier struct {
 	from  int64 // submission, 0 = none
 	owner int64 // author of the submission, 0 = same or none
 
+	sample, undoes int64 // sample check it was accepted with, change set it takes back; 0 = none
+
 	agree *agreement // of the rows of one file about their systems, or nil
 	set   int64      // change set, made at the first change
 	stmts map[string]*sql.Stmt
@@ -84,8 +86,8 @@ func (a *applier) number(ctx context.Context, q string, args ...any) (int64, err
 // revise records one change and returns the revision.
 func (a *applier) revise(ctx context.Context, record, action, field, before, after string) (int64, error) {
 	if a.set == 0 {
-		id, err := a.exec(ctx, `INSERT INTO change_sets (at, account_id, why, submission_id, author_id) VALUES (?, ?, ?, ?, ?)`,
-			a.at, orNull(a.by), a.why, orNull(a.from), orNull(a.owner))
+		id, err := a.exec(ctx, `INSERT INTO change_sets (at, account_id, why, submission_id, author_id, sample_id, undoes) VALUES (?, ?, ?, ?, ?, ?, ?)`,
+			a.at, orNull(a.by), a.why, orNull(a.from), orNull(a.owner), orNull(a.sample), orNull(a.undoes))
 		if err != nil {
 			return 0, err
 		}
@@ -162,6 +164,16 @@ func (a *applier) locate(ctx context.Context, p *Row) (ex examined, err error) {
 	if ex.current == nil && PrivateContribution(p.Measurement) != 0 {
 		ex.findings = append(ex.findings, Finding{Column: "measurement", Key: "measurement_private", Hard: true,
 			Message: p.Measurement + " names a private row, which no file changes", Expected: "an empty cell for a new measurement; the private row is changed on its own page"})
+	}
+	if ex.current == nil && p.Measurement != "" {
+		gone, err := a.number(ctx, `SELECT count(*) FROM withdrawn_measurements WHERE measurement = ?`, p.Measurement)
+		if err != nil {
+			return ex, err
+		}
+		if gone > 0 {
+			ex.findings = append(ex.findings, Finding{Column: "measurement", Key: "measurement_withdrawn", Hard: true,
+				Message: strconv.Quote(p.Measurement) + " was withdrawn, and its id is not given again", Expected: "an empty cell for a new measurement; to put the old one back, ask for that on its page"})
+		}
 	}
 	ex.named = p.System != ""
 	ex.systemID, ex.system, err = a.place(ctx, p, ex.current)

@@ -7,8 +7,12 @@ import (
 	"strings"
 )
 
+// nextNumber is the internal number of a new measurement: above all that are
+// and all that were, so that none is given twice.
+const nextNumber = `1 + max(coalesce((SELECT max(id) FROM measurements), 0), coalesce((SELECT max(id) FROM withdrawn_measurements), 0))`
+
 var insertMeasurement = `INSERT INTO measurements (measurement, system_id, source_id, ` + strings.Join(names(measurementColumns), ", ") +
-	`, created_at, updated_at, revision) VALUES (?, ?, ?` + strings.Repeat(", ?", len(measurementColumns)+3) + `)`
+	`, created_at, updated_at, revision, id) VALUES (?, ?, ?` + strings.Repeat(", ?", len(measurementColumns)+3) + `, ` + nextNumber + `)`
 
 func (a *applier) createMeasurement(ctx context.Context, p *Row, systemID int64) error {
 	if err := a.giveID(ctx, p); err != nil {
@@ -49,7 +53,7 @@ func (a *applier) giveID(ctx context.Context, p *Row) error {
 	for {
 		last++
 		p.Measurement = fmt.Sprintf("m%06d", last)
-		taken, err := a.number(ctx, `SELECT count(*) FROM measurements WHERE measurement = ?`, p.Measurement)
+		taken, err := a.number(ctx, `SELECT count(*) FROM (SELECT measurement FROM measurements UNION ALL SELECT measurement FROM withdrawn_measurements) WHERE measurement = ?`, p.Measurement)
 		if err != nil {
 			return err
 		}

@@ -17,7 +17,7 @@ func (a *applier) place(ctx context.Context, p, current *Row) (int64, *Row, erro
 		if slug := Slug(p.System); slug != p.System {
 			p.System = slug
 		}
-		id, err := a.number(ctx, `SELECT id FROM systems WHERE slug = ?`, p.System)
+		id, err := a.systemNamed(ctx, p.System)
 		if err != nil {
 			return 0, nil, err
 		}
@@ -32,10 +32,14 @@ func (a *applier) place(ctx context.Context, p, current *Row) (int64, *Row, erro
 			return 0, nil, err
 		}
 		y, err := a.systemRow(ctx, id)
+		if err == nil {
+			p.System = y.System // a merged one answers with what it is part of
+		}
 		return id, y, err
 	}
 	name := CleanText(p.SystemName)
-	count, err := a.number(ctx, `SELECT count(*) FROM systems WHERE system_name = ?`, name)
+	const named = ` FROM systems WHERE system_name = ? AND id NOT IN (SELECT system_id FROM merged_systems)`
+	count, err := a.number(ctx, `SELECT count(*)`+named, name)
 	if err != nil {
 		return 0, nil, err
 	}
@@ -46,7 +50,7 @@ func (a *applier) place(ctx context.Context, p, current *Row) (int64, *Row, erro
 		p.System, err = freeSlug(ctx, a.tx, name)
 		return 0, nil, err
 	}
-	id, err := a.number(ctx, `SELECT id FROM systems WHERE system_name = ?`, name)
+	id, err := a.number(ctx, `SELECT id`+named, name)
 	if err != nil {
 		return 0, nil, err
 	}
@@ -55,6 +59,16 @@ func (a *applier) place(ctx context.Context, p, current *Row) (int64, *Row, erro
 		p.System, p.SystemName = y.System, y.SystemName
 	}
 	return id, y, err
+}
+
+// systemNamed is the number of the system with a slug, or of the one it was
+// merged into; 0 = none.
+func (a *applier) systemNamed(ctx context.Context, slug string) (int64, error) {
+	id, err := a.number(ctx, `SELECT id FROM systems WHERE slug = ?`, slug)
+	if err != nil || id == 0 {
+		return 0, err
+	}
+	return a.number(ctx, mergedInto, id)
 }
 
 // systemColumns are the columns of the whole system but its slug.

@@ -56,7 +56,7 @@ func (a *applier) addLine(ctx context.Context, c Centreline) (int64, error) {
 	if c.Measurement != "" && measurement == 0 {
 		return 0, &Error{Code: NotFound, Field: "measurement", Message: "there is no measurement " + strconv.Quote(Clip(c.Measurement)) + " for this line"}
 	}
-	system, err := a.number(ctx, `SELECT id FROM systems WHERE slug = ?`, c.System)
+	system, err := a.systemNamed(ctx, c.System)
 	if err == nil && c.System == "" && measurement != 0 {
 		system, err = a.number(ctx, `SELECT system_id FROM measurements WHERE id = ?`, measurement)
 	}
@@ -74,7 +74,8 @@ func (a *applier) addLine(ctx context.Context, c Centreline) (int64, error) {
 		}
 		windows = string(b)
 	}
-	id, err := a.exec(ctx, `INSERT INTO centrelines (system_id, measurement_id, line, settings, sinuosities, created_at) VALUES (?, ?, ?, ?, ?, ?)`,
+	id, err := a.exec(ctx, `INSERT INTO centrelines (system_id, measurement_id, line, settings, sinuosities, created_at, id) VALUES (?, ?, ?, ?, ?, ?,
+			1 + max(coalesce((SELECT max(id) FROM centrelines), 0), coalesce((SELECT max(id) FROM withdrawn_centrelines), 0)))`,
 		system, orNull(measurement), c.Line, c.Settings, windows, a.at)
 	if err != nil {
 		return 0, err

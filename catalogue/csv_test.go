@@ -260,7 +260,7 @@ func TestImportReviewAndCorrection(t *testing.T) {
 	if again := importText(t, s, text, ImportOptions{}); again.Identical != 2 || again.New != 0 {
 		t.Errorf("the same file waits once: %+v", again)
 	}
-	if n, err := s.AcceptBatch(ctx, rep.Batch, 0, "fine"); n != 2 || err != nil {
+	if n, err := s.AcceptBatch(ctx, rep.Batch, 0, "fine", nil); n != 2 || err != nil {
 		t.Fatal(n, err)
 	}
 	rows, _ := s.Rows(ctx, Filter{})

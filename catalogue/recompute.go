@@ -263,12 +263,13 @@ func (s *Store) DiscardRecomputation(ctx context.Context, name string) error {
 // RecomputedLines returns what a recomputation gave so far, by system and
 // line.
 func (s *Store) RecomputedLines(ctx context.Context, name string) ([]RecomputedLine, error) {
-	rows, err := s.r.QueryContext(ctx, `SELECT v.centreline_id, v.system, s.system_name, v.measurement, v.recorded, v.recorded_kind,
+	rows, err := s.r.QueryContext(ctx, `SELECT v.centreline_id, coalesce(s.slug, v.system), coalesce(s.system_name, v.system), v.measurement, v.recorded, v.recorded_kind,
 			v.old_reach, v.old_mean, v.old_p90, v.old_peak, v.old_standardised, v.old_windows,
 			v.new_reach, v.new_mean, v.new_p90, v.new_peak, v.new_standardised, v.new_low, v.new_high, v.window_m, v.sinuosities, v.settings, v.remark,
-			EXISTS (SELECT 1 FROM measurements m WHERE m.system_id = l.system_id AND (m.id = l.measurement_id OR l.measurement_id IS NULL) AND substr(m.notes, 1, ?) = ?)
-		FROM recomputed_values v JOIN centrelines l ON l.id = v.centreline_id JOIN systems s ON s.id = l.system_id
-		WHERE v.recomputation = ? ORDER BY s.system_name, s.slug, v.centreline_id`, len(InventedMark), InventedMark, name)
+			EXISTS (SELECT 1 FROM measurements m WHERE m.system_id = l.system_id AND (m.id = l.measurement_id OR l.measurement_id IS NULL) AND substr(m.notes, 1, ?1) = ?2)
+				OR EXISTS (SELECT 1 FROM withdrawn_measurements w WHERE w.measurement = v.measurement AND substr(w.record ->> 'notes', 1, ?1) = ?2)
+		FROM recomputed_values v LEFT JOIN centrelines l ON l.id = v.centreline_id LEFT JOIN systems s ON s.id = l.system_id
+		WHERE v.recomputation = ?3 ORDER BY coalesce(s.system_name, v.system), v.system, v.centreline_id`, len(InventedMark), InventedMark, name)
 	if err != nil {
 		return nil, fault("recomputed lines", err)
 	}

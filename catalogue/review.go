@@ -122,6 +122,12 @@ func (s *Store) Accept(ctx context.Context, id, by int64, comment string) error 
 	return s.accept(ctx, id, by, comment, nil, 0)
 }
 
+// AcceptSeen is Accept of a withdrawal by a curator who saw the record at a
+// revision, although it changed after it was proposed.
+func (s *Store) AcceptSeen(ctx context.Context, id, by, seen int64, comment string) error {
+	return s.accept(ctx, id, by, comment, nil, seen)
+}
+
 // AcceptEdits accepts a submission as the curator edited it. seen is the
 // CurrentRevision of the record the curator saw (0 for a new one): if it has
 // changed since, it is a Conflict.
@@ -140,36 +146,6 @@ func (s *Store) accept(ctx context.Context, id, by int64, comment string, edited
 		}
 		return s.acceptOne(ctx, s.applier(tx, by, ""), id, comment, edited, seen)
 	})
-}
-
-// AcceptBatch accepts all submitted rows of one imported file, all or none,
-// and returns how many.
-func (s *Store) AcceptBatch(ctx context.Context, batch, by int64, comment string) (n int, err error) {
-	comment = CleanText(comment)
-	if err := checkComment(comment, false); err != nil {
-		return 0, err
-	}
-	err = s.write(ctx, func(tx *sql.Tx) error {
-		if err := mayCurate(ctx, tx, by); err != nil {
-			return err
-		}
-		ids, err := submittedOf(ctx, tx, batch)
-		if err != nil {
-			return err
-		}
-		if len(ids) == 0 {
-			return &Error{Code: NotFound, Message: "nothing of that file is waiting"}
-		}
-		a := s.applier(tx, by, "") // one for all: it keeps its statements
-		for _, id := range ids {
-			if err := s.acceptOne(ctx, a, id, comment, nil, 0); err != nil {
-				return err
-			}
-		}
-		n = len(ids)
-		return nil
-	})
-	return n, err
 }
 
 func submittedOf(ctx context.Context, tx *sql.Tx, batch int64) ([]int64, error) {
@@ -198,11 +174,14 @@ func (s *Store) acceptOne(ctx context.Context, a *applier, id int64, comment str
 	if err != nil {
 		return err
 	}
+	a.set, a.why, a.from, a.owner = 0, whyAccepted(comment, sub.Overrides), id, sub.By.ID
+	if sub.Act != ActEdit {
+		return a.acceptAct(ctx, sub, seen)
+	}
 	row, err := sub.settle(ctx, a, edited, seen)
 	if err != nil {
 		return err
 	}
-	a.set, a.why, a.from, a.owner = 0, whyAccepted(comment, sub.Overrides), id, sub.By.ID
 	aud, err := audienceOf(ctx, a.tx, id)
 	if err != nil {
 		return err
@@ -247,7 +226,7 @@ func (u *Submission) settle(ctx context.Context, a *applier, edited *Row, seen i
 	case current == nil && u.Base == nil:
 		return u.raw, nil
 	case current == nil:
-		return Row{}, &Error{Code: Conflict, Field: "measurement", Message: "the record this would change is no longer there"}
+		return Row{}, &Error{Code: Conflict, Field: "measurement", Message: "the record this would change was withdrawn", Expected: "that it is put back first, or that this is returned"}
 	case u.Base == nil: // someone else gave a new record the same id
 		return Row{}, conflict(*current)
 	}

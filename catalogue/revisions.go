@@ -16,10 +16,14 @@ const partiesExpr = `CASE WHEN t.author_id <> t.account_id THEN b.credit || ', a
 
 // revisionsOf returns the revisions of one record, newest first.
 func revisionsOf(ctx context.Context, q querier, record string) ([]Revision, error) {
-	rows, err := q.QueryContext(ctx, `SELECT v.id, t.at, `+partiesExpr+`, t.why, v.record, v.field, v.before, v.after, v.action
+	return revisionsWhere(ctx, q, "v.record = ?", record)
+}
+
+func revisionsWhere(ctx context.Context, q querier, condition string, args ...any) ([]Revision, error) {
+	rows, err := q.QueryContext(ctx, `SELECT v.id, t.id, t.at, `+partiesExpr+`, t.why, v.record, v.field, v.before, v.after, v.action
 		FROM revisions v JOIN change_sets t ON t.id = v.change_set_id
 		LEFT JOIN accounts a ON a.id = t.account_id LEFT JOIN accounts b ON b.id = t.author_id
-		WHERE v.record = ? ORDER BY v.id DESC`, record)
+		WHERE `+condition+` ORDER BY v.id DESC`, args...)
 	if err != nil {
 		return nil, err
 	}
@@ -28,7 +32,7 @@ func revisionsOf(ctx context.Context, q querier, record string) ([]Revision, err
 	for rows.Next() {
 		var v Revision
 		var at string
-		if err := rows.Scan(&v.ID, &at, &v.Who, &v.Why, &v.Record, &v.Field, &v.Before, &v.After, &v.Action); err != nil {
+		if err := rows.Scan(&v.ID, &v.Set, &at, &v.Who, &v.Why, &v.Record, &v.Field, &v.Before, &v.After, &v.Action); err != nil {
 			return nil, err
 		}
 		v.At = parseTime(at)

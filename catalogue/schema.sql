@@ -98,7 +98,11 @@ CREATE TABLE change_sets (
   why TEXT NOT NULL DEFAULT '', -- the reason given
   submission_id INTEGER REFERENCES submissions (id), -- what it came from, NULL for a direct import
   author_id INTEGER REFERENCES accounts (id) -- whose contribution it was, NULL if the same or unknown
-) STRICT;
+, sample_id INTEGER REFERENCES samples (id) /* the sample check it was accepted with, NULL if none */, undoes INTEGER REFERENCES change_sets (id) /* the change set it takes back, NULL if none */) STRICT;
+
+CREATE INDEX change_sets_submission ON change_sets (submission_id) WHERE submission_id IS NOT NULL;
+
+CREATE INDEX change_sets_undoes ON change_sets (undoes) WHERE undoes IS NOT NULL;
 
 CREATE TABLE counters (
   name TEXT PRIMARY KEY, -- what is counted
@@ -493,6 +497,15 @@ CREATE TRIGGER search_insert AFTER INSERT ON measurements BEGIN
   INSERT INTO search (rowid, names, places, reach, source, notes) SELECT id, names, places, reach, source, notes FROM words WHERE id = new.id;
 END;
 
+CREATE TABLE merged_systems (
+  system_id INTEGER PRIMARY KEY REFERENCES systems (id), -- the system that is no longer its own
+  into_id INTEGER NOT NULL REFERENCES systems (id) CHECK (into_id <> system_id), -- the system it is part of now
+  revision INTEGER NOT NULL, -- the revision that merged it
+  merged_at TEXT NOT NULL -- when
+) STRICT;
+
+CREATE INDEX merged_systems_into ON merged_systems (into_id);
+
 CREATE TABLE messages (
   id INTEGER PRIMARY KEY, -- internal number
   submission_id INTEGER NOT NULL REFERENCES submissions (id) ON DELETE CASCADE, -- what it is about
@@ -538,7 +551,7 @@ BEGIN SELECT RAISE (ABORT, 'a recomputation keeps its settings'); END;
 
 CREATE TABLE recomputed_values (
   recomputation TEXT NOT NULL REFERENCES recomputations (name) ON DELETE CASCADE, -- what it is part of
-  centreline_id INTEGER NOT NULL REFERENCES centrelines (id), -- the line
+  centreline_id INTEGER NOT NULL, -- number of the line, in centrelines or withdrawn_centrelines
   system TEXT NOT NULL, -- slug of its system
   measurement TEXT NOT NULL, -- the measurement the line stands for, '' if none
   recorded REAL, -- sinuosity in the record of that measurement, NULL without one
@@ -717,6 +730,20 @@ CREATE TRIGGER revisions_last BEFORE DELETE ON revisions BEGIN SELECT RAISE (ABO
 
 CREATE TRIGGER revisions_stay BEFORE UPDATE ON revisions BEGIN SELECT RAISE (ABORT, 'revisions are never changed'); END;
 
+CREATE TABLE samples (
+  id INTEGER PRIMARY KEY, -- internal number
+  batch_id INTEGER NOT NULL REFERENCES batches (id), -- the file
+  account_id INTEGER REFERENCES accounts (id), -- who read them, NULL for the command line
+  at TEXT NOT NULL, -- when the file was accepted
+  seed INTEGER NOT NULL, -- of the drawing
+  total INTEGER NOT NULL CHECK (total > 0), -- rows that waited, from which they were drawn
+  drawn TEXT NOT NULL CHECK (json_valid(drawn)) -- numbers of the submissions drawn and read, JSON array
+) STRICT;
+
+CREATE TRIGGER samples_last BEFORE DELETE ON samples BEGIN SELECT RAISE (ABORT, 'what was read is never deleted'); END;
+
+CREATE TRIGGER samples_stay BEFORE UPDATE ON samples BEGIN SELECT RAISE (ABORT, 'what was read is never changed'); END;
+
 CREATE VIRTUAL TABLE search USING fts5 (names, places, reach, source, notes, content = 'words', content_rowid = 'id', tokenize = 'unicode61 remove_diacritics 2', prefix = '2 3');
 
 CREATE TABLE sessions (
@@ -765,7 +792,7 @@ CREATE TABLE submissions (
   fingerprint BLOB NOT NULL, -- SHA-256 of the proposed row: the same row sent twice waits once
   created_at TEXT NOT NULL, -- first saved
   updated_at TEXT NOT NULL -- last saved or decided
-) STRICT;
+, act TEXT NOT NULL DEFAULT 'edit' CHECK (act IN ('edit', 'withdraw', 'restore')) /* put a record, take one out, or put one back */, instead TEXT NOT NULL DEFAULT '' /* of a withdrawal: the measurement that stands for it, '' if none */) STRICT;
 
 CREATE INDEX submissions_account ON submissions (account_id, state);
 
@@ -858,6 +885,31 @@ CREATE TABLE uploads (
 ) STRICT;
 
 CREATE INDEX uploads_account ON uploads (account_id, id);
+
+CREATE TABLE withdrawn_centrelines (
+  id INTEGER PRIMARY KEY, -- the number it had in centrelines
+  system_id INTEGER NOT NULL REFERENCES systems (id), -- the system it runs along
+  measurement_id INTEGER, -- number of its measurement, NULL if it was the system's
+  line TEXT NOT NULL CHECK (json_valid(line)), -- GeoJSON LineString, as in centrelines
+  settings TEXT NOT NULL, -- planform settings, as in centrelines
+  sinuosities TEXT NOT NULL, -- sinuosity of each window, as in centrelines
+  created_at TEXT NOT NULL -- when it was stored
+) STRICT;
+
+CREATE INDEX withdrawn_centrelines_measurement ON withdrawn_centrelines (measurement_id);
+
+CREATE TABLE withdrawn_measurements (
+  id INTEGER PRIMARY KEY, -- the number it had in measurements
+  measurement TEXT NOT NULL UNIQUE, -- its public id, never given to another
+  system_id INTEGER NOT NULL REFERENCES systems (id), -- the system it belonged to
+  record TEXT NOT NULL CHECK (json_valid(record)), -- as last accepted: column -> text, JSON
+  instead TEXT NOT NULL DEFAULT '', -- public id of the measurement that stands for it, '' if none
+  revision INTEGER NOT NULL, -- the revision that withdrew it
+  created_at TEXT NOT NULL, -- when it was first accepted
+  withdrawn_at TEXT NOT NULL -- when it was withdrawn
+) STRICT;
+
+CREATE INDEX withdrawn_measurements_system ON withdrawn_measurements (system_id);
 
 CREATE VIEW words AS
   SELECT m.id AS id, s.slug || ' ' || s.system_name || ' ' || s.other_names AS names, s.parent_deposit || ' ' || s.basin AS places,

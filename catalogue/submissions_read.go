@@ -12,7 +12,7 @@ import (
 const SubmissionsLimit = 1000
 
 const selectSubmission = `SELECT u.id, coalesce(u.batch_id, 0), u.state, u.measurement, u.proposed, u.typed, u.base, u.base_revision, u.overrides, u.comment,
-	u.line, u.line_settings, u.line_sinuosities, u.created_at, u.updated_at,
+	u.line, u.line_settings, u.line_sinuosities, u.created_at, u.updated_at, u.act, u.instead,
 	coalesce(a.id, 0), coalesce(a.name, ''), coalesce(a.credit, 'command line'), coalesce(a.role, ''), coalesce(a.orcid, ''), coalesce(a.disabled, 0)
 	FROM submissions u LEFT JOIN accounts a ON a.id = u.account_id`
 
@@ -64,7 +64,9 @@ func (s *Store) Submission(ctx context.Context, id int64) (*Submission, error) {
 	var sub *Submission
 	err := s.read(ctx, func(tx *sql.Tx) (err error) {
 		if sub, err = submissionByID(ctx, tx, id); err == nil {
-			sub.Messages, err = messagesOf(ctx, tx, id)
+			if sub.Messages, err = messagesOf(ctx, tx, id); err == nil && sub.State == "accepted" && sub.Act == ActEdit {
+				err = sub.became(ctx, tx)
+			}
 		}
 		return err
 	})
@@ -113,7 +115,7 @@ func scanSubmission(rows *sql.Rows) (Submission, error) {
 	var u Submission
 	var target, proposed, typed, base, overrides, windows, at, updated string
 	err := rows.Scan(&u.ID, &u.Batch, &u.State, &target, &proposed, &typed, &base, &u.BaseRevision, &overrides, &u.Comment,
-		&u.Centreline, &u.CentrelineSettings, &windows, &at, &updated,
+		&u.Centreline, &u.CentrelineSettings, &windows, &at, &updated, &u.Act, &u.Instead,
 		&u.By.ID, &u.By.Name, &u.By.Credit, &u.By.Role, &u.By.ORCID, &u.By.Disabled)
 	if err != nil {
 		return u, err
@@ -168,6 +170,60 @@ func (u *Submission) compare(ctx context.Context, q querier) error {
 	}
 	if u.State != "accepted" && u.State != "withdrawn" {
 		u.Since = Diff(u.Base, current)
+	}
+	return nil
+}
+
+// became finds what an accepted submission made of the catalogue: the record it
+// was accepted as, and what the curator changed on the way.
+func (u *Submission) became(ctx context.Context, q querier) error {
+	revisions, err := revisionsWhere(ctx, q, "t.submission_id = ?", u.ID)
+	if err != nil || len(revisions) == 0 {
+		return err
+	}
+	u.Became = u.Row.Measurement
+	for _, v := range revisions {
+		if id, ok := strings.CutPrefix(v.Record, "measurement:"); ok {
+			u.Became = id
+		}
+	}
+	current, _, err := rowOf(ctx, q, u.Became)
+	if err != nil || current == nil {
+		return err
+	}
+	as, err := rowAt(ctx, q, *current, revisions[0].ID)
+	if err != nil {
+		return err
+	}
+	u.Accepted = &as
+	// What the proposal left to the system, or to the moment of accepting, is no
+	// edit.
+	proposed := *normal(u.Row)
+	proposed.Measurement, proposed.System = as.Measurement, as.System
+	if u.Base == nil {
+		inherit(&proposed, &as)
+	}
+	before := NewRow()
+	if u.Base != nil {
+		if before, err = rowAt(ctx, q, *current, revisions[len(revisions)-1].ID-1); err != nil {
+			return err
+		}
+	}
+	asked := map[string]bool{} // columns the author changed
+	for _, ch := range u.Changes {
+		asked[ch.Column] = true
+	}
+	u.Changes = nil
+	for _, ch := range Diff(&before, &as) {
+		if u.Base != nil || ch.Column != "measurement" && ch.Column != "system" {
+			u.Changes = append(u.Changes, ch)
+			asked[ch.Column] = true
+		}
+	}
+	for _, ch := range Diff(&proposed, &as) {
+		if asked[ch.Column] { // others' changes since are not the curator's
+			u.Edits = append(u.Edits, ch)
+		}
 	}
 	return nil
 }

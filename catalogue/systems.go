@@ -119,6 +119,11 @@ func (s *Store) SystemAt(ctx context.Context, slug, release string) (*Detail, er
 		if d.Centrelines, err = centrelinesOf(ctx, q, slug); err != nil {
 			return err
 		}
+		if release == "" {
+			if err = d.takeGone(ctx, tx, slug); err != nil {
+				return err
+			}
+		}
 		if d.History, err = historyOf(ctx, tx, &d); err != nil || release == "" {
 			return err
 		}
@@ -165,12 +170,23 @@ func sourcesOf(ctx context.Context, q querier, slug string) ([]Source, error) {
 	return out, rows.Err()
 }
 
-// historyOf returns the revisions of the system, its measurements and its
-// lines, newest first.
+// historyOf returns the revisions of the system and of those merged into it, of
+// its measurements, also the withdrawn ones, and of its lines, newest first.
 func historyOf(ctx context.Context, q querier, d *Detail) ([]Revision, error) {
 	records := []string{"system:" + d.Slug}
+	for _, slug := range d.Merged {
+		records = append(records, "system:"+slug)
+	}
 	for _, r := range d.Measurements {
 		records = append(records, "measurement:"+r.Measurement)
+	}
+	for _, w := range d.Withdrawn {
+		records = append(records, "measurement:"+w.Row.Measurement)
+		gone, err := goneLines(ctx, q, w.Row.Measurement)
+		if err != nil {
+			return nil, err
+		}
+		records = append(records, gone...)
 	}
 	for _, l := range d.Centrelines {
 		records = append(records, lineRecord(l.ID))
@@ -185,4 +201,47 @@ func historyOf(ctx context.Context, q querier, d *Detail) ([]Revision, error) {
 	}
 	sort.Slice(out, func(i, j int) bool { return out[i].ID > out[j].ID })
 	return out, nil
+}
+
+// takeGone fills in what is no longer part of the catalogue, or of its own.
+func (d *Detail) takeGone(ctx context.Context, q querier, slug string) (err error) {
+	if d.Merged, err = mergedOf(ctx, q, slug); err != nil {
+		return err
+	}
+	d.Withdrawn, err = withdrawnWhere(ctx, q, family, ` WHERE w.system_id IN (SELECT id FROM family) ORDER BY w.revision DESC`, slug)
+	return err
+}
+
+// goneLines are the lines that went with a measurement, as records.
+func goneLines(ctx context.Context, q querier, measurement string) (out []string, err error) {
+	rows, err := q.QueryContext(ctx, `SELECT l.id FROM withdrawn_centrelines l JOIN withdrawn_measurements w ON w.id = l.measurement_id WHERE w.measurement = ?`, measurement)
+	if err != nil {
+		return nil, err
+	}
+	defer rows.Close()
+	for rows.Next() {
+		var id int64
+		if err := rows.Scan(&id); err != nil {
+			return nil, err
+		}
+		out = append(out, lineRecord(id))
+	}
+	return out, rows.Err()
+}
+
+// mergedOf lists the slugs of the systems that are part of one by now.
+func mergedOf(ctx context.Context, q querier, slug string) (out []string, err error) {
+	rows, err := q.QueryContext(ctx, family+`SELECT slug FROM systems WHERE id IN (SELECT id FROM family) AND slug <> ?1 ORDER BY slug`, slug)
+	if err != nil {
+		return nil, err
+	}
+	defer rows.Close()
+	for rows.Next() {
+		var one string
+		if err := rows.Scan(&one); err != nil {
+			return nil, err
+		}
+		out = append(out, one)
+	}
+	return out, rows.Err()
 }

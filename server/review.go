@@ -85,7 +85,7 @@ func (p *reviews) acceptBatch(c echo.Context) error {
 	if err != nil {
 		return err
 	}
-	n, err := p.store.AcceptBatch(c.Request().Context(), id, p.user(c).ID, form.Get("comment"))
+	n, err := p.store.AcceptBatch(c.Request().Context(), id, p.user(c).ID, form.Get("comment"), nil)
 	if err != nil {
 		return err
 	}
