@@ -25,7 +25,8 @@ type Analysis struct {
 	By       string // credit line of who froze it, "" = the command line
 	At       time.Time
 
-	Rows []Row // the rows considered; only Analysis(name) reads them
+	Rows     []Row  // the rows considered; only Analysis(name) reads them
+	Settings string // of the program that answered, JSON; "" = frozen before there were any
 }
 
 // maxAnalysisRows bounds what one frozen analysis may hold.
@@ -60,6 +61,9 @@ func (s *Store) FreezeAnalysis(ctx context.Context, a Analysis, by int64) (strin
 		_, err := tx.ExecContext(ctx, `INSERT INTO analyses (name, title, why, question, row_count, rows, digest, program, revision, account_id, created_at)
 			VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?)`,
 			a.Name, CleanText(a.Title), CleanText(a.Why), a.Question, len(a.Rows), packed, a.Digest, a.Program, a.Revision, orNull(by), s.now().UTC().Format(time.RFC3339))
+		if err == nil && a.Settings != "" {
+			_, err = tx.ExecContext(ctx, `INSERT INTO analysis_settings (analysis, settings) VALUES (?, ?)`, a.Name, a.Settings)
+		}
 		return err
 	})
 }
@@ -95,13 +99,15 @@ func (s *Store) Analyses(ctx context.Context) ([]Analysis, error) {
 // Analysis returns one frozen analysis with its rows.
 func (s *Store) Analysis(ctx context.Context, name string) (*Analysis, error) {
 	var packed []byte
-	a, err := scanAnalysis(s.r.QueryRowContext(ctx, `SELECT `+analysisColumns+`, a.rows FROM analyses a LEFT JOIN accounts p ON p.id = a.account_id WHERE a.name = ?`, name).Scan, &packed)
+	var settings string
+	a, err := scanAnalysis(s.r.QueryRowContext(ctx, `SELECT `+analysisColumns+`, a.rows, coalesce((SELECT settings FROM analysis_settings WHERE analysis = a.name), '') FROM analyses a LEFT JOIN accounts p ON p.id = a.account_id WHERE a.name = ?`, name).Scan, &packed, &settings)
 	if errors.Is(err, sql.ErrNoRows) {
 		return nil, &Error{Code: NotFound, Message: "there is no analysis named " + strconv.Quote(Clip(name))}
 	}
 	if err != nil {
 		return nil, fault("analysis", err)
 	}
+	a.Settings = settings
 	a.Rows, err = unpackRows(packed)
 	return &a, fault("analysis", err)
 }

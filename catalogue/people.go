@@ -138,13 +138,15 @@ type ChangeSet struct {
 	System     string
 	SystemName string
 	Systems    int // how many systems it touches
+	Settings   int // how many settings it changes
 }
 
 // Activity lists the latest accepted changes, newest first.
 func (s *Store) Activity(ctx context.Context, limit int) ([]ChangeSet, error) {
 	rows, err := s.r.QueryContext(ctx, `SELECT t.id, t.at, `+whoExpr+`, coalesce(b.credit, ''), t.why, coalesce(t.submission_id, 0),
 			(SELECT count(*) FROM revisions v WHERE v.change_set_id = t.id AND v.action = 'create'),
-			(SELECT count(*) FROM revisions v WHERE v.change_set_id = t.id AND v.action = 'change')
+			(SELECT count(*) FROM revisions v WHERE v.change_set_id = t.id AND v.action = 'change'),
+			(SELECT count(*) FROM revisions v WHERE v.change_set_id = t.id AND v.record >= 'setting:' AND v.record < 'setting;')
 		FROM change_sets t LEFT JOIN accounts a ON a.id = t.account_id LEFT JOIN accounts b ON b.id = t.author_id
 		ORDER BY t.id DESC LIMIT ?`, limit)
 	if err != nil {
@@ -155,7 +157,7 @@ func (s *Store) Activity(ctx context.Context, limit int) ([]ChangeSet, error) {
 	for rows.Next() {
 		var c ChangeSet
 		var at string
-		if err := rows.Scan(&c.ID, &at, &c.Who, &c.Author, &c.Why, &c.Submission, &c.Created, &c.Changed); err != nil {
+		if err := rows.Scan(&c.ID, &at, &c.Who, &c.Author, &c.Why, &c.Submission, &c.Created, &c.Changed, &c.Settings); err != nil {
 			return nil, fault("activity", err)
 		}
 		c.At = parseTime(at)

@@ -136,6 +136,8 @@ type NewRelease struct {
 	DOI     string
 	Program string // version of the program
 	By      int64  // account, 0 = the command line
+	// Settings of the program on that day, JSON; "" records none.
+	Settings string
 }
 
 // check cleans what was typed and refuses what cannot stand.

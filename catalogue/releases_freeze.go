@@ -66,6 +66,9 @@ func (s *Store) freeze(ctx context.Context, tx *sql.Tx, n NewRelease) error {
 		checksum, bytes, revision, program, account_id, created_at) VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?)`,
 		id, r.Name, r.Title, r.Notes, r.Licence, r.FrozenDOI, string(authors), string(licences), r.Systems, r.Measurements, r.Sources, r.Centrelines, r.Invented,
 		r.Checksum, r.Bytes, r.Revision, r.Program, orNull(n.By), s.stamp())
+	if err == nil && n.Settings != "" {
+		_, err = tx.ExecContext(ctx, `INSERT INTO release_settings (release_id, settings) VALUES (?, ?)`, id, n.Settings)
+	}
 	return err
 }
 

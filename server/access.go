@@ -55,6 +55,10 @@ var access = map[string]role{
 	"POST /people/:id/password": keeper,
 	"POST /people/:id/state":    keeper,
 	"GET /status":               keeper,
+	"GET /settings":             keeper,
+	"GET /settings.json":        keeper,
+	"POST /settings":            keeper,
+	"POST /settings/import":     keeper,
 
 	"GET /contribute":               contributor,
 	"POST /contribute":              contributor,

@@ -59,7 +59,11 @@ func (a *App) freeze(c echo.Context) error {
 	if err != nil {
 		return err
 	}
-	analysis, err := analyseRows(ctx, rows, req)
+	chosen, err := a.settingsFor(ctx, f.Release)
+	if err != nil {
+		return err
+	}
+	analysis, err := analyseRows(ctx, rows, chosen, req)
 	if err != nil {
 		return err
 	}
@@ -67,11 +71,15 @@ func (a *App) freeze(c echo.Context) error {
 	if err != nil {
 		return err
 	}
+	text, err := chosen.text()
+	if err != nil {
+		return err
+	}
 	by := int64(0)
 	if u := a.user(c); u != nil {
 		by = u.ID
 	}
-	name, err := a.store.FreezeAnalysis(ctx, catalogue.Analysis{Title: title, Why: why, Rows: rows, Digest: digest, Program: Version, Revision: revision,
+	name, err := a.store.FreezeAnalysis(ctx, catalogue.Analysis{Settings: text, Title: title, Why: why, Rows: rows, Digest: digest, Program: Version, Revision: revision,
 		Question: withValues(regressionFilter(f).Values(), regressionValues(req)).Encode()}, by)
 	var refused *catalogue.Error
 	if errors.As(err, &refused) && refused.Field != "" {
@@ -100,9 +108,9 @@ func (a *App) freezeRefused(c echo.Context, f catalogue.Filter, req stats.Reques
 	return render(c, status, views.Regression(page))
 }
 
-func analyseRows(ctx context.Context, rows []catalogue.Row, req stats.Request) (*stats.Analysis, error) {
+func analyseRows(ctx context.Context, rows []catalogue.Row, chosen settings, req stats.Request) (*stats.Analysis, error) {
 	req.Workers = runtime.GOMAXPROCS(0)
-	return stats.Analyse(ctx, statsRows(rows), req, nil)
+	return stats.Analyse(ctx, statsRows(rows, chosen.Climate), req, nil)
 }
 
 // frozenAnswer is a frozen analysis run again on its own rows.
@@ -137,7 +145,7 @@ func (a *App) frozen(ctx context.Context, name string) (*frozenAnswer, error) {
 		if err := a.recomputedAs(ctx, &out.request); err != nil {
 			return nil, err
 		}
-		if out.analysis, err = analyseRows(ctx, kept.Rows, out.request); err != nil {
+		if out.analysis, err = analyseRows(ctx, kept.Rows, recordedSettings(kept.Settings), out.request); err != nil {
 			return nil, err
 		}
 		kept.Rows = nil // the answer holds them
@@ -183,7 +191,11 @@ func (a *App) analysisPage(c echo.Context) error {
 	p := a.regressionFrame(c, f.filter, f.request)
 	p.Title = f.kept.Title
 	p.JSON, p.CSV = "/analyses/"+url.PathEscape(name)+".json", "/analyses/"+url.PathEscape(name)+".csv"
+	chosen, err := settingFacts(f.kept.Settings)
+	if err != nil {
+		return err
+	}
 	page := views.RegressionPage{Page: p, Request: f.request, Filter: f.filter, Analysis: f.analysis, Categories: stats.Categories,
-		Frozen: &views.FrozenAnalysis{Analysis: *f.kept, Same: f.same(), Digest: f.digest, Program: Version}}
+		Frozen: &views.FrozenAnalysis{Analysis: *f.kept, Same: f.same(), Digest: f.digest, Program: Version, Chosen: chosen}}
 	return render(c, http.StatusOK, views.Regression(page))
 }

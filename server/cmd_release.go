@@ -18,8 +18,8 @@ func runRelease(args []string, in io.Reader, out, errOut io.Writer) int {
 	c.withCatalogue()
 	n := catalogue.NewRelease{Program: Version}
 	c.flags.StringVar(&n.Notes, "notes", "", "what is new in it, `TEXT`")
-	c.flags.StringVar(&n.Title, "title", "", "`TEXT` the catalogue is cited by; without it, that of the release before")
-	c.flags.StringVar(&n.Licence, "licence", "", "`SPDX` name, CC-BY-4.0 or CC0-1.0; without it, the widest its rows allow")
+	c.flags.StringVar(&n.Title, "title", "", "`TEXT` the catalogue is cited by; without it, that of the settings, else of the release before")
+	c.flags.StringVar(&n.Licence, "licence", "", "`SPDX` name, CC-BY-4.0 or CC0-1.0; without it, that of the settings, else the widest its rows allow")
 	c.flags.StringVar(&n.DOI, "doi", "", "`DOI`, if one is reserved")
 	rest, code, done := c.parseMixed(args)
 	if done {
@@ -45,14 +45,21 @@ func runRelease(args []string, in io.Reader, out, errOut io.Writer) int {
 		return code
 	}
 	defer cleanup()
+	kept, err := s.Settings(ctx)
+	if err != nil {
+		return c.failed(err)
+	}
+	chosen, _ := settingsFrom(kept)
+	if n.Settings, err = chosen.text(); err != nil {
+		return c.failed(err)
+	}
 	if n.Title == "" {
-		list, err := s.Releases(ctx)
-		if err != nil {
+		if n.Title, err = s.Title(ctx); err != nil {
 			return c.failed(err)
 		}
-		if len(list) > 0 {
-			n.Title = list[0].Title
-		}
+	}
+	if n.Licence == "" {
+		n.Licence = chosen.Licence
 	}
 	r, err := s.Freeze(ctx, n)
 	if err != nil {

@@ -48,10 +48,6 @@ func noStore(next echo.HandlerFunc) echo.HandlerFunc {
 	}
 }
 
-// classLimits are where the planform classes part. No published limit for
-// submarine channels is settled: they are a convention, shown as one.
-var classLimits = []float64{1.05, 1.2, 1.5}
-
 // fitSeed seeds the bootstrap of the fits. A target's own seed moves its
 // draws only, so that fits can be shared by all targets.
 const fitSeed = 1
@@ -71,9 +67,13 @@ func (a *App) expectationFits(ctx context.Context, f catalogue.Filter, response,
 		if err != nil {
 			return nil, err
 		}
+		chosen, err := a.settingsFor(ctx, f.Release)
+		if err != nil {
+			return nil, err
+		}
 		defer a.metrics.fitted("expectation", time.Now())
-		return expectation.Fit(ctx, statsRows(rows), expectation.Options{
-			Response: response, MeasuredLine: line, Cluster: "parent_deposit", Seed: fitSeed, ClassLimits: classLimits,
+		return expectation.Fit(ctx, statsRows(rows, chosen.Climate), expectation.Options{
+			Response: response, MeasuredLine: line, Cluster: "parent_deposit", Seed: fitSeed, ClassLimits: chosen.ClassLimits, Climate: chosen.Climate,
 		})
 	})
 	if err != nil {

@@ -121,8 +121,12 @@ func (a *App) deepTime(c echo.Context) (url.Values, catalogue.Filter, *expectati
 		if err != nil {
 			return nil, err
 		}
-		return expectation.DeepTime(ctx, statsRows(rows), expectation.Options{
-			Response: t.Response, MeasuredLine: t.MeasuredLine, Cluster: "parent_deposit", Seed: fitSeed, ClassLimits: classLimits,
+		chosen, err := a.settingsFor(ctx, fit.Release)
+		if err != nil {
+			return nil, err
+		}
+		return expectation.DeepTime(ctx, statsRows(rows, chosen.Climate), expectation.Options{
+			Response: t.Response, MeasuredLine: t.MeasuredLine, Cluster: "parent_deposit", Seed: fitSeed, ClassLimits: chosen.ClassLimits, Climate: chosen.Climate,
 		})
 	})
 	if err != nil {

@@ -99,11 +99,15 @@ func (a *App) featuresLanding(c echo.Context) error {
 		return err
 	}
 	base := a.baseAddress(c)
+	title, err := a.store.Title(c.Request().Context())
+	if err != nil {
+		return err
+	}
 	return writeJSON(c, http.StatusOK, struct {
 		Title       string        `json:"title"`
 		Description string        `json:"description"`
 		Links       []featureLink `json:"links"`
-	}{catalogue.DefaultTitle, "Channel systems, their measurements and their centrelines. " + a.inventedSentence(c.Request().Context()), []featureLink{
+	}{title, "Channel systems, their measurements and their centrelines. " + a.inventedSentence(c.Request().Context()), []featureLink{
 		{base + "/features", "self", jsonType, "This document"},
 		{base + "/openapi.json", "service-desc", openAPIType, "The addresses described for programs"},
 		{base + "/dictionary", "service-doc", "text/html", "The columns and formats described for people"},

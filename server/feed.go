@@ -97,9 +97,9 @@ func (a *App) feed(c echo.Context) error {
 		return err
 	}
 	base := a.baseAddress(c)
-	title := catalogue.DefaultTitle
-	if len(releases) > 0 {
-		title = releases[0].Title
+	title, err := a.store.Title(ctx)
+	if err != nil {
+		return err
 	}
 	f := atomFeed{ID: feedID(identity, "feed"), Title: title, Subtitle: "Releases and newly accepted systems", Author: atomPerson{Name: title, URI: base + "/"},
 		Links:   []atomLink{{Rel: "self", Type: "application/atom+xml", Href: base + "/feed.atom"}, {Rel: "alternate", Type: "text/html", Href: base + "/"}},

@@ -38,6 +38,7 @@ func commands() []command {
 		{"expectation", "the same as expect", runExpect},
 		{"account", "add people, set their passwords and roles", runAccount},
 		{"release", "freeze the accepted catalogue under a name", runRelease},
+		{"settings", "show and change what is chosen for a catalogue", runSettings},
 		{"backup", "copy a catalogue while it is in use", runBackup},
 		{"restore", "make a catalogue from a backup", runRestore},
 		{"check", "look for faults and odd values", runCheck},

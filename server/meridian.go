@@ -12,7 +12,6 @@ import (
 	"github.com/labstack/echo/v4"
 
 	"fathombend/catalogue"
-	"fathombend/stats"
 	"fathombend/stats/expectation"
 	"fathombend/views"
 )
@@ -147,7 +146,11 @@ func (a *App) computeMeridian(ctx context.Context, f catalogue.Filter) (*views.M
 // meridianHeadline asks the default question of the regression page. A refusal
 // (too few rows) is an answer too.
 func (a *App) meridianHeadline(ctx context.Context, f catalogue.Filter, m *views.MeridianPage) error {
-	analysis, err := a.analyse(ctx, f, stats.DefaultRequest())
+	req, err := a.offeredRequest(ctx, f.Release)
+	if err != nil {
+		return err
+	}
+	analysis, err := a.analyse(ctx, f, req)
 	var refused interface{ Input() (string, string) }
 	switch {
 	case errors.As(err, &refused):

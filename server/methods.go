@@ -26,10 +26,14 @@ func (a *App) methods(c echo.Context) error {
 	if err := allow(q); err != nil {
 		return err
 	}
+	chosen, err := a.settings(c.Request().Context())
+	if err != nil {
+		return err
+	}
 	p := views.MethodsPage{
-		Page: a.page(c, "Methods", "methods"), Request: stats.DefaultRequest(), Classes: classLimits,
+		Page: a.page(c, "Methods", "methods"), Request: stats.DefaultRequest(), Classes: chosen.ClassLimits,
 		Explanations: expectation.Explanations(), Cautions: expectation.Cautions(), Histories: earth.Histories(),
-		Poles: earth.PoleTables(), Climate: earth.ClimateStates(), Observations: earth.Observations(),
+		Poles: earth.PoleTables(), Climate: chosen.Climate, Observations: earth.Observations(),
 		Credits: earth.Credits(), LandCredit: land.Credit, Filters: catalogue.FilterParameters,
 	}
 	return render(c, http.StatusOK, views.Methods(p))

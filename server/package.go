@@ -70,12 +70,11 @@ func (a *App) metaOfCatalogue(ctx context.Context, f catalogue.Filter) (*package
 	if err != nil {
 		return nil, err
 	}
-	p := &packageMeta{Title: catalogue.DefaultTitle, Version: "unreleased, revision " + strconv.FormatInt(rev, 10), Filtered: f.Values().Encode()}
-	if list, err := a.store.Releases(ctx); err != nil {
+	title, err := a.store.Title(ctx)
+	if err != nil {
 		return nil, err
-	} else if len(list) > 0 {
-		p.Title = list[0].Title
 	}
+	p := &packageMeta{Title: title, Version: "unreleased, revision " + strconv.FormatInt(rev, 10), Filtered: f.Values().Encode()}
 	if p.At, err = a.store.LastChange(ctx); err != nil {
 		return nil, err
 	}

@@ -62,7 +62,7 @@ func FuzzTarget(f *testing.F) {
 	} {
 		f.Add(q)
 	}
-	fits, err := expectation.Fit(context.Background(), fuzzRows(), expectation.Options{Cluster: "parent_deposit", Seed: fitSeed, ClassLimits: classLimits})
+	fits, err := expectation.Fit(context.Background(), fuzzRows(), expectation.Options{Cluster: "parent_deposit", Seed: fitSeed, ClassLimits: expectation.Classes})
 	if err != nil {
 		f.Fatal(err)
 	}
@@ -94,7 +94,7 @@ func fuzzRows() []stats.Row {
 		r.LatitudeDeg, r.Sinuosity, r.ValleySlope = catalogue.Num(float64(3*i)), catalogue.Num(2.4-0.045*float64(i)+0.1*float64(i%3)), catalogue.Num(0.001+0.0003*float64(i%7))
 		rows = append(rows, r)
 	}
-	return statsRows(rows)
+	return statsRows(rows, nil)
 }
 
 // FuzzTargetsFile: any file is answered row by row or refused as a table; what

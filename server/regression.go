@@ -127,6 +127,13 @@ func (a *App) fullAddress(ctx context.Context, q url.Values, f catalogue.Filter,
 	if asks && q.Has("seed") && !hasEmpty(q) {
 		return "", nil
 	}
+	if q.Get("cluster") == "" {
+		chosen, err := a.settingsFor(ctx, f.Release)
+		if err != nil {
+			return "", err
+		}
+		req.Cluster = chosen.Cluster
+	}
 	if !asks && q.Get("scale") == "" {
 		scale, err := a.offeredScale(ctx, f, req)
 		if err != nil {
@@ -135,6 +142,15 @@ func (a *App) fullAddress(ctx context.Context, q url.Values, f catalogue.Filter,
 		req.Scale = scale
 	}
 	return "/regression?" + withValues(regressionFilter(f).Values(), regressionValues(req)).Encode(), nil
+}
+
+// offeredRequest is the question that pages ask by themselves: the contract's,
+// with the cluster of the settings.
+func (a *App) offeredRequest(ctx context.Context, release string) (stats.Request, error) {
+	req := stats.DefaultRequest()
+	chosen, err := a.settingsFor(ctx, release)
+	req.Cluster = chosen.Cluster
+	return req, err
 }
 
 // offeredScale is the scale the page offers first: ln(P - 1), where intervals

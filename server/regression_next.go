@@ -74,7 +74,11 @@ func (a *App) next(ctx context.Context, f catalogue.Filter, req stats.Request, o
 		if err != nil {
 			return nil, err
 		}
-		return stats.Next(ctx, statsRows(rows), req, o)
+		chosen, err := a.settingsFor(ctx, f.Release)
+		if err != nil {
+			return nil, err
+		}
+		return stats.Next(ctx, statsRows(rows, chosen.Climate), req, o)
 	})
 	if err != nil {
 		return nil, err

@@ -106,10 +106,14 @@ func (a *App) showReleases(c echo.Context, status int, form views.ReleaseForm) e
 	p := views.ReleasesPage{Page: a.page(c, "Releases", "releases"), Releases: list, Form: form}
 	p.JSON, p.CSV = "/releases.json", "/releases.csv"
 	if p.Form.Title == "" {
-		p.Form.Title = catalogue.DefaultTitle
-		if len(list) > 0 {
-			p.Form.Title = list[0].Title
+		if p.Form.Title, err = a.store.Title(ctx); err != nil {
+			return err
 		}
+		chosen, err := a.settings(ctx)
+		if err != nil {
+			return err
+		}
+		p.Form.Licence = chosen.Licence
 	}
 	if p.User.Curates() {
 		if p.ReadyWhy, err = a.beforeFreezing(ctx); err != nil {
@@ -149,7 +153,15 @@ func (a *App) makeRelease(c echo.Context) error {
 		return err
 	}
 	form := views.ReleaseForm{Name: q.Get("name"), Title: q.Get("title"), Notes: q.Get("notes"), Licence: q.Get("licence"), DOI: q.Get("doi")}
-	n := catalogue.NewRelease{Name: form.Name, Title: form.Title, Notes: form.Notes, Licence: form.Licence, DOI: form.DOI, Program: Version}
+	chosen, err := a.settings(c.Request().Context())
+	if err != nil {
+		return err
+	}
+	text, err := chosen.text()
+	if err != nil {
+		return err
+	}
+	n := catalogue.NewRelease{Settings: text, Name: form.Name, Title: form.Title, Notes: form.Notes, Licence: form.Licence, DOI: form.DOI, Program: Version}
 	if u := a.user(c); u != nil {
 		n.By = u.ID
 	}
@@ -250,6 +262,13 @@ func (a *App) releasePage(c echo.Context, status int, r *catalogue.Release, form
 	p.JSON, p.CSV = "/releases/"+url.PathEscape(r.Name)+".json", "/releases/"+url.PathEscape(r.Name)+".csv"
 	p.Cite = views.Citation{Text: citationText(r, base), BibTeX: citationBibTeX(r, base)}
 	p.LinkedData = releaseLinkedData(r, base)
+	text, err := a.store.SettingsOf(c.Request().Context(), r.Name)
+	if err != nil {
+		return err
+	}
+	if p.Chosen, err = settingFacts(text); err != nil {
+		return err
+	}
 	return render(c, status, views.Release(p))
 }
 

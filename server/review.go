@@ -310,6 +310,8 @@ func activityOf(s catalogue.ChangeSet) views.Activity {
 		a.Author = s.Author
 	}
 	switch {
+	case s.Settings > 0:
+		a.What = "Settings"
 	case s.Systems == 1:
 		a.What, a.Address = s.SystemName, "/systems/"+url.PathEscape(s.System)
 	case s.Systems > 1:

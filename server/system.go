@@ -126,7 +126,11 @@ func drawnLine(l catalogue.Centreline) views.SystemLine {
 // systemFit places the system among all submarine systems: the default
 // regression on the Coriolis parameter, and the nearest in it.
 func (a *App) systemFit(ctx context.Context, f catalogue.Filter, p *views.SystemPage) error {
-	analysis, err := a.analyse(ctx, catalogue.Filter{Release: f.Release}, stats.DefaultRequest())
+	req, err := a.offeredRequest(ctx, f.Release)
+	if err != nil {
+		return err
+	}
+	analysis, err := a.analyse(ctx, catalogue.Filter{Release: f.Release}, req)
 	var refused interface{ Input() (string, string) }
 	if errors.As(err, &refused) {
 		_, p.FitWhy = refused.Input()

@@ -10,10 +10,13 @@ import (
 
 	"fathombend/catalogue"
 	"fathombend/stats"
+	"fathombend/stats/earth"
 )
 
-// statsRows turns catalogue rows into what a regression sees.
-func statsRows(rows []catalogue.Row) []stats.Row {
+// statsRows turns catalogue rows into what a regression sees. climate gives the
+// climate state at the age of a row, which is 0 Ma where none is given; a nil
+// table gives none.
+func statsRows(rows []catalogue.Row, climate earth.ClimateTable) []stats.Row {
 	out := make([]stats.Row, len(rows))
 	for i, r := range rows {
 		out[i] = stats.Row{
@@ -33,10 +36,17 @@ func statsRows(rows []catalogue.Row) []stats.Row {
 				"activity": r.Activity, "burial": r.Burial, "confinement": r.Confinement,
 				"aggradation": r.Aggradation, "large_river": r.LargeRiver, "stacking": r.Stacking,
 				"lateral_accretion": r.LateralAccretion, "survey": r.Survey, "extraction": r.Extraction,
+				"climate_state": climateState(climate, r.AgeMa),
 			},
 		}
 	}
 	return out
+}
+
+// climateState is "" where the table has none for the age.
+func climateState(climate earth.ClimateTable, age catalogue.Number) string {
+	s, _ := climate.At(age.V) // an age that is not given is 0: today's sea floor
+	return s.State
 }
 
 func num(n catalogue.Number) float64 {
@@ -84,10 +94,14 @@ func (a *App) analyse(ctx context.Context, f catalogue.Filter, req stats.Request
 		if err != nil {
 			return nil, err
 		}
+		chosen, err := a.settingsFor(ctx, f.Release)
+		if err != nil {
+			return nil, err
+		}
 		ctx, j := a.jobs.start(ctx, key)
 		defer a.jobs.end(key, j)
 		defer a.metrics.fitted("regression", time.Now())
-		analysis, err := stats.Analyse(ctx, slices.Clip(statsRows(rows)), req, j.progress)
+		analysis, err := stats.Analyse(ctx, slices.Clip(statsRows(rows, chosen.Climate)), req, j.progress)
 		if err != nil {
 			return nil, err
 		}

@@ -732,7 +732,7 @@ func AccountPage(p Page, v AccountForm) templ.Component {
 				return templ_7745c5c3_Err
 			}
 			if v.Role == "keeper" {
-				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 54, "<p><a href=\"/people\">People of this catalogue</a></p>")
+				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 54, "<p><a href=\"/people\">People of this catalogue</a>, <a href=\"/settings\">its settings</a>, <a href=\"/status\">its state</a></p>")
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}

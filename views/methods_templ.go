@@ -321,7 +321,7 @@ func methodsPlanform(p MethodsPage) templ.Component {
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 16, " are a convention of this program. In rivers 1.5 is used for meandering (Leopold &amp; Wolman, USGS Prof. Pap. 282-B, 1957).</p></section>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 16, " are a convention of this program, which the keepers of a catalogue can set. In rivers 1.5 is used for meandering (Leopold &amp; Wolman, USGS Prof. Pap. 282-B, 1957).</p></section>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}

@@ -30,6 +30,7 @@ type FrozenAnalysis struct {
 	Same    bool   // the digits are those of the day it was frozen
 	Digest  string // of the answer now
 	Program string // version running now
+	Chosen  []Fact // settings of the catalogue it was answered with
 }
 
 // question is the question the page answers, in the words of its models.

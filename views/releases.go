@@ -32,6 +32,7 @@ type ReleasePage struct {
 	Latest   bool
 	Cite     Citation
 	DOIForm  ReleaseForm
+	Chosen   []Fact // settings of the catalogue when it was frozen
 }
 
 // DifferencePage is what changed from one state of the catalogue to another.

@@ -8,11 +8,13 @@ import (
 
 // ClimateState is an interval of geological time with its climate state.
 type ClimateState struct {
-	Name          string
-	BaseMa, TopMa float64
-	State         string // icehouse, greenhouse, cool greenhouse
-	Note, Source  string
-	Tag           string // published, or memory: the boundary is from memory
+	Name   string  `json:"name"`
+	BaseMa float64 `json:"base_ma"`
+	TopMa  float64 `json:"top_ma"`
+	State  string  `json:"state"` // icehouse, greenhouse, cool greenhouse
+	Note   string  `json:"note,omitempty"`
+	Source string  `json:"source,omitempty"`
+	Tag    string  `json:"tag,omitempty"` // published, or memory: the boundary is from memory
 }
 
 // ClimateTable is a list of climate states; users may bring their own.

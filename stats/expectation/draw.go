@@ -90,7 +90,7 @@ func (d *donors) fill(f *frame, in *inputs, u float64, slope, supply bool) {
 
 // pointOf is a target's inputs at their point values.
 func (f *Fits) pointOf(t *Target, p *place) inputs {
-	in := inputs{sin: sinOf(p.lat.Value), ratio: p.ratio, logSlope: math.NaN(), state: stateAt(p.age.Value)}
+	in := inputs{sin: sinOf(p.lat.Value), ratio: p.ratio, logSlope: math.NaN(), state: stateAt(f.frame.climate, p.age.Value)}
 	if given(t.TargetSlope) {
 		in.logSlope = math.Log10(t.TargetSlope)
 	}
@@ -122,7 +122,7 @@ func (f *Fits) draw(t *Target, p *place) *draws {
 		in := d.point
 		in.sin, in.ratio = sinOf(at.lat), at.ratio
 		if at.age != p.age.Value {
-			in.state = stateAt(at.age)
+			in.state = stateAt(f.frame.climate, at.age)
 		}
 		d.donors.fill(f.frame, &in, u, true, true)
 		d.in[j], d.lat[j] = in, at.lat

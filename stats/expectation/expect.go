@@ -8,6 +8,7 @@ import (
 	"sync"
 
 	"fathombend/stats"
+	"fathombend/stats/earth"
 )
 
 // Fits holds the rival explanations fitted on a set of rows, ready for any
@@ -35,6 +36,8 @@ type Options struct {
 	Cluster      string
 	Seed         uint64
 	ClassLimits  []float64 // 1.05, 1.2, 1.5
+	// Climate gives the climate state at an age; nil is the built-in table.
+	Climate earth.ClimateTable
 }
 
 // Classes is the default of the limits between planform classes: a
@@ -51,12 +54,23 @@ func (o Options) withDefaults() (Options, error) {
 	if len(o.ClassLimits) == 0 {
 		o.ClassLimits = Classes
 	}
-	for i, l := range o.ClassLimits {
-		if !(l > 1) || math.IsInf(l, 0) || (i > 0 && l <= o.ClassLimits[i-1]) {
-			return o, refuse("class_limits", "the limits between classes must be sinuosities above 1 in rising order, for example 1.05, 1.2, 1.5")
+	if len(o.Climate) == 0 {
+		o.Climate = earth.ClimateStates()
+	}
+	if err := CheckClimate(o.Climate); err != nil {
+		return o, err
+	}
+	return o, CheckClasses(o.ClassLimits)
+}
+
+// CheckClasses refuses limits that do not part sinuosities into classes.
+func CheckClasses(limits []float64) error {
+	for i, l := range limits {
+		if !(l > 1) || math.IsInf(l, 0) || (i > 0 && l <= limits[i-1]) {
+			return refuse("class_limits", "the limits between classes must be sinuosities above 1 in rising order, for example 1.05, 1.2, 1.5")
 		}
 	}
-	return o, nil
+	return nil
 }
 
 // Fit fits every explanation on rows (modern and ancient mixed; it separates

@@ -112,7 +112,7 @@ func TestTendencies(t *testing.T) {
 	}
 	var sinuous float64
 	for _, c := range r.Classes {
-		if c.From >= sinuousFrom {
+		if c.From >= Classes[1] {
 			sinuous += c.Probability
 		}
 	}

@@ -27,6 +27,9 @@ func (f *Fits) frameOf(t *Target, p *place, d *draws) *Result {
 			"scale": "ln_excess", "rotation_of_rows": earth.TidalHistory, "common_rows_for_weights": f.common, "spread_alpha": f.alpha,
 		},
 	}
+	if !slices.Equal(f.frame.climate, earth.ClimateStates()) {
+		res.Settings["climate_table"] = f.frame.climate
+	}
 	sorted := slices.Clone(d.f)
 	sortPositive(sorted, nil)
 	res.CoriolisLow, res.CoriolisHigh = quantileOf(sorted, 0.025), quantileOf(sorted, 0.975)

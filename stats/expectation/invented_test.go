@@ -54,7 +54,7 @@ func (l law) draw(seed uint64) []stats.Row {
 			if feeder == "glacial" {
 				y += l.glacial
 			}
-			if l.icehouse != 0 && stateAt(math.Max(0, zero(r.AgeMa))) == icehouse {
+			if l.icehouse != 0 && stateAt(earth.ClimateStates(), math.Max(0, zero(r.AgeMa))) == icehouse {
 				y += l.icehouse * (sinOf(lat) - 0.5)
 			}
 			r.Sinuosity = 1 + math.Exp(y)

@@ -1,7 +1,9 @@
 package expectation
 
 import (
+	"cmp"
 	"math"
+	"slices"
 
 	"fathombend/stats/earth"
 )
@@ -62,19 +64,44 @@ const (
 
 var stateNames = map[state]string{icehouse: "icehouse", greenhouse: "greenhouse", coolGreenhouse: "cool greenhouse"}
 
-// stateAt looks an age in Ma up in the table of climate states.
-func stateAt(ageMa float64) state {
-	s, _ := earth.ClimateStateAt(ageMa)
-	switch s.State {
-	case "icehouse":
-		return icehouse
-	case "greenhouse":
-		return greenhouse
-	case "cool greenhouse":
-		return coolGreenhouse
+// stateAt looks an age in Ma up in a table of climate states.
+func stateAt(table earth.ClimateTable, ageMa float64) state {
+	s, _ := table.At(ageMa)
+	return stateNamed(s.State)
+}
+
+func stateNamed(name string) state {
+	for s, n := range stateNames {
+		if n == name {
+			return s
+		}
 	}
 	return 0
 }
+
+// CheckClimate refuses a table whose states the explanations do not know, or
+// whose intervals overlap: an age has one state.
+func CheckClimate(table earth.ClimateTable) error {
+	sorted := slices.Clone(table)
+	slices.SortFunc(sorted, func(a, b earth.ClimateState) int { return cmp.Compare(a.TopMa, b.TopMa) })
+	for i, c := range sorted {
+		switch {
+		case stateNamed(c.State) == 0:
+			return refuse("climate_table", "%q of %q is not a climate state: expected icehouse, greenhouse or cool greenhouse", c.State, c.Name)
+		case !(c.TopMa >= 0 && c.BaseMa > c.TopMa && c.BaseMa <= oldestMa):
+			return refuse("climate_table", "%q runs from %g to %g Ma: expected base_ma above top_ma, both from 0 to %d", c.Name, c.BaseMa, c.TopMa, oldestMa)
+		case i > 0 && c.TopMa < sorted[i-1].BaseMa:
+			return refuse("climate_table", "%q and %q overlap: expected one climate state for each age", sorted[i-1].Name, c.Name)
+		}
+	}
+	if len(sorted) > 0 && sorted[0].TopMa > 0 {
+		return refuse("climate_table", "it starts at %g Ma: expected an interval that reaches 0 Ma, since most rows are of today", sorted[0].TopMa)
+	}
+	return nil
+}
+
+// oldestMa is the age of the Earth, rounded up.
+const oldestMa = 4600
 
 // warmStates have category columns; icehouse is the baseline.
 var warmStates = [...]state{greenhouse, coolGreenhouse}

@@ -56,6 +56,7 @@ type frame struct {
 	invented int
 	ones     float64 // share of P = 1, clusters alike
 	all      []stats.Row
+	climate  earth.ClimateTable
 }
 
 // chooseResponse is "peak, else any": peak when the rows allow a fit.
@@ -146,9 +147,12 @@ func newFrame(rows []stats.Row, o Options) *frame {
 	slices.SortStableFunc(rows, func(a, b stats.Row) int {
 		return cmp.Or(cmp.Compare(a.System, b.System), cmp.Compare(a.ID, b.ID), cmp.Compare(a.Sinuosity, b.Sinuosity), cmp.Compare(a.LatitudeDeg, b.LatitudeDeg))
 	})
-	f := &frame{dropped: map[string]int{}, all: rows, line: o.MeasuredLine}
+	f := &frame{dropped: map[string]int{}, all: rows, line: o.MeasuredLine, climate: o.Climate}
 	if f.line == "" || f.line == "any" {
 		f.line = "all"
+	}
+	if len(f.climate) == 0 {
+		f.climate = earth.ClimateStates()
 	}
 	var note string
 	if f.response, note = chooseResponse(rows, o); note != "" && len(rows) > 0 {
@@ -214,7 +218,7 @@ func observe(r *stats.Row, f *frame) (observation, string) {
 		return ob, "age outside the history of the Earth's rotation"
 	}
 	ob.sin, ob.ratio = sinOf(ob.latDeg), day.Value.RotationRatio()
-	ob.state = stateAt(age)
+	ob.state = stateAt(f.climate, age)
 	ob.logSlope = math.NaN()
 	if r.ValleySlope > 0 && !math.IsInf(r.ValleySlope, 0) {
 		ob.logSlope = math.Log10(r.ValleySlope)

@@ -55,7 +55,7 @@ func (f *Fits) oneInput(t *Target, p *place, d *draws, which moves) float64 {
 		in := d.point
 		in.sin, in.ratio = sinOf(at.lat), at.ratio
 		if at.age != p.age.Value {
-			in.state = stateAt(at.age)
+			in.state = stateAt(f.frame.climate, at.age)
 		}
 		d.donors.fill(f.frame, &in, u, which.slope, which.supply)
 		for k, ft := range f.fits {

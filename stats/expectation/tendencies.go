@@ -8,8 +8,10 @@ import (
 )
 
 // sinuousFrom is where "sinuous" starts in the facies statements: the second
-// of the class limits by default. A convention.
-const sinuousFrom = 1.2
+// of the class limits, 1.2 by default. A convention.
+func (f *Fits) sinuousFrom() float64 {
+	return f.options.ClassLimits[min(1, len(f.options.ClassLimits)-1)]
+}
 
 // steepFrom is "steep" in the facies statements, m/m (half a degree): above
 // most of the classic compilation. A convention.
@@ -120,11 +122,11 @@ func (f *Fits) conditions(t *Target, d *draws, res *Result) *facies {
 	switch {
 	case given(t.ObservedSinuosity):
 		c.sinuous = 0
-		if t.ObservedSinuosity >= sinuousFrom {
+		if t.ObservedSinuosity >= f.sinuousFrom() {
 			c.sinuous = 1
 		}
 	case len(d.mix.draws) > 0:
-		c.sinuous = 1 - d.mix.below(sinuousFrom)
+		c.sinuous = 1 - d.mix.below(f.sinuousFrom())
 	}
 	c.low = 1 - c.sinuous
 	if given(t.TargetSlope) {
@@ -235,11 +237,11 @@ func categoryBase(column, value, words string) func(*Fits) (float64, string) {
 
 func sinuousBase(has func(*stats.Row) bool, words string) func(*Fits) (float64, string) {
 	return func(f *Fits) (float64, string) {
-		rate, rows, deposits := f.share(func(r *stats.Row) bool { return has(r) && r.Sinuosity >= 1 }, func(r *stats.Row) bool { return r.Sinuosity >= sinuousFrom })
+		rate, rows, deposits := f.share(func(r *stats.Row) bool { return has(r) && r.Sinuosity >= 1 }, func(r *stats.Row) bool { return r.Sinuosity >= f.sinuousFrom() })
 		if rows == 0 {
 			return rate, "no base rate: no chosen row is " + words
 		}
-		return rate, fmt.Sprintf("sinuosity of %g and more in %.0f %% of the %s rows (%d rows in %d deposits, deposits alike)", sinuousFrom, 100*rate, words, rows, deposits)
+		return rate, fmt.Sprintf("sinuosity of %g and more in %.0f %% of the %s rows (%d rows in %d deposits, deposits alike)", f.sinuousFrom(), 100*rate, words, rows, deposits)
 	}
 }
 
