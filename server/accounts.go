@@ -107,7 +107,7 @@ func formOf(c echo.Context) (url.Values, error) {
 		if over := (*http.MaxBytesError)(nil); errors.As(err, &over) {
 			return nil, err
 		}
-		return nil, &badInput{"body", "the form could not be read; send it as application/x-www-form-urlencoded or multipart/form-data"}
+		return nil, &badInput{"body", "the form could not be read. Expected application/x-www-form-urlencoded or multipart/form-data"}
 	}
 	return r.PostForm, nil
 }

@@ -164,6 +164,11 @@ func (a *App) chart(c echo.Context) error {
 		return err
 	}
 	p.Page = a.page(c, "Chart", "chart")
+	if p.Notice == "" {
+		q, _ := params(c)
+		f, _ := filterOf(q)
+		p.Notice = unusedOfTables(f)
+	}
 	p.Wide = true
 	p.JSON = p.Answers
 	table := p.Filter.Values()

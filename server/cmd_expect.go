@@ -51,6 +51,9 @@ func runExpect(args []string, in io.Reader, out, errOut io.Writer) int {
 			q.Add(name, value)
 			continue
 		}
+		if _, err := os.Stat(a); ok && err != nil {
+			return c.bad("%s", commandMessage(allow(url.Values{name: nil}, targetParameters, catalogue.FilterParameters)))
+		}
 		files = append(files, a)
 	}
 	if len(files) != 1 {

@@ -89,6 +89,9 @@ func (a *App) expect(ctx context.Context, f catalogue.Filter, t expectation.Targ
 		return nil, err
 	}
 	result, err := fits.Expect(ctx, t)
+	if note := unusedOfTables(f); err == nil && note != "" {
+		result.Notes = append(result.Notes, note)
+	}
 	if err == nil && f.Release != "" {
 		result.Settings["release"], err = a.store.ReleaseName(ctx, f.Release)
 	}
@@ -98,7 +101,7 @@ func (a *App) expect(ctx context.Context, f catalogue.Filter, t expectation.Targ
 // expectationPage shows the form, and under it the answer when something was
 // asked. A wrong value comes back with everything typed.
 func (a *App) expectationPage(c echo.Context) error {
-	q, err := params(c)
+	q, err := targetParams(c)
 	if err != nil {
 		return err
 	}
@@ -110,6 +113,9 @@ func (a *App) expectationPage(c echo.Context) error {
 	if asksNothing(q) && allow(q, targetParameters, catalogue.FilterParameters) == nil {
 		if page.Filter, err = filterOf(q); err != nil {
 			return a.expectationRefused(c, page, err)
+		}
+		if page.Notice == "" {
+			page.Notice = unusedOfTables(page.Filter)
 		}
 		if page.Facets, err = a.facets(c.Request().Context(), page.Filter); err != nil {
 			return err
@@ -159,7 +165,7 @@ func (a *App) expectationRefused(c echo.Context, page views.ExpectationPage, err
 }
 
 func (a *App) expectationJSON(c echo.Context) error {
-	q, err := params(c)
+	q, err := targetParams(c)
 	if err != nil {
 		return err
 	}
@@ -176,7 +182,7 @@ func (a *App) expectationJSON(c echo.Context) error {
 
 // expectationFigure is one figure of the page as a file.
 func (a *App) expectationFigure(c echo.Context) error {
-	q, err := params(c)
+	q, err := targetParams(c)
 	if err != nil {
 		return err
 	}
@@ -215,7 +221,7 @@ func (a *App) expectationFigure(c echo.Context) error {
 func (a *App) expectationCSV(c echo.Context) error {
 	q, err := url.ParseQuery(c.Request().URL.RawQuery)
 	if err != nil {
-		return &badInput{"query", "the address holds a broken escape (%); write a plain % as %25"}
+		return &badInput{"query", "the address holds a broken escape (%). Expected %25 for a plain %"}
 	}
 	in, q, err := targetsBody(c, q)
 	if err != nil {
@@ -295,6 +301,9 @@ func targetsBody(c echo.Context, q url.Values) (io.ReadCloser, url.Values, error
 		text := q.Get("targets")
 		q.Del("targets")
 		return io.NopCloser(strings.NewReader(text)), q, nil
+	}
+	if strings.TrimSpace(kind) == echo.MIMEApplicationJSON {
+		return nil, nil, echo.NewHTTPError(http.StatusUnsupportedMediaType, "Targets are read here as CSV (text/csv), or as the form field targets. One target as JSON goes to /expectation.json.")
 	}
 	// Read at once: answering as it arrives could outlast the time a request is
 	// given to arrive in. The size is bounded for every body.

@@ -53,7 +53,7 @@ func (a *App) throughTime(ctx context.Context, q url.Values) (catalogue.Filter, 
 }
 
 func (a *App) timePage(c echo.Context) error {
-	q, err := params(c)
+	q, err := targetParams(c)
 	if err != nil {
 		return err
 	}
@@ -75,14 +75,15 @@ func (a *App) timePage(c echo.Context) error {
 }
 
 func (a *App) timeJSON(c echo.Context) error {
-	q, err := params(c)
+	q, err := targetParams(c)
 	if err != nil {
 		return err
 	}
-	_, t, series, err := a.throughTime(c.Request().Context(), q)
+	f, t, series, err := a.throughTime(c.Request().Context(), q)
 	if err != nil {
 		return err
 	}
+	noteUnused(c, f)
 	return writeJSON(c, http.StatusOK, struct {
 		Series   []expectation.SeriesPoint `json:"series"`
 		Seed     uint64                    `json:"seed"`
@@ -95,7 +96,7 @@ func (a *App) timeJSON(c echo.Context) error {
 var deepTimeParameters = []string{"response", "measured_line"}
 
 func (a *App) deepTime(c echo.Context) (url.Values, catalogue.Filter, *expectation.DeepTimeResult, error) {
-	q, err := params(c)
+	q, err := targetParams(c)
 	if err != nil {
 		return q, catalogue.Filter{}, nil, err
 	}
@@ -144,6 +145,9 @@ func (a *App) deepTimePage(c echo.Context) error {
 	p := a.page(c, "The deep-time test", "expectation")
 	p.Query = withoutEmpty(q)
 	p.JSON = withQuery("/expectation/deep-time.json", p.Query)
+	if p.Notice == "" {
+		p.Notice = unusedOfTables(f)
+	}
 	page := views.DeepTimePage{Page: p, Result: res, Filter: f}
 	if page.Facets, err = a.facets(c.Request().Context(), f); err != nil {
 		return err
@@ -152,10 +156,11 @@ func (a *App) deepTimePage(c echo.Context) error {
 }
 
 func (a *App) deepTimeJSON(c echo.Context) error {
-	_, _, res, err := a.deepTime(c)
+	_, f, res, err := a.deepTime(c)
 	if err != nil {
 		return err
 	}
+	noteUnused(c, f)
 	return writeJSON(c, http.StatusOK, res)
 }
 
@@ -165,7 +170,7 @@ const reportTargets = 12
 // reportPage is a report on one target, from the address or the body, or on a
 // few, from a CSV in the field targets.
 func (a *App) reportPage(c echo.Context) error {
-	q, err := params(c)
+	q, err := targetParams(c)
 	if err != nil {
 		return err
 	}

@@ -185,15 +185,72 @@ func (f targetField) read(q url.Values, t *expectation.Target) error {
 	if f.name == "age" && err == nil && x >= 10_000 && isFinite(x) {
 		return &badInput{f.name, strconv.Quote(clip(v)) + " looks like years. Expected millions of years (Ma): " + short(x) + " years is " + short(x/1e6) + " Ma"}
 	}
-	if err != nil || !isFinite(x) || sign*x < f.low || sign*x > f.top || (sign < 0 && x < 0) {
-		want := "a number from " + short(f.low) + " to " + short(f.top) + " (" + f.unit + "), with a point as decimal sign"
-		if f.letters != "" {
-			want += "; " + f.letters[:1] + " or " + f.letters[1:] + " may follow it"
-		}
-		return &badInput{f.name, strconv.Quote(clip(v)) + " is not allowed. Expected " + want}
+	if err != nil {
+		return &badInput{f.name, f.misread(v)}
+	}
+	if !isFinite(x) || sign*x < f.low || sign*x > f.top || (sign < 0 && x < 0) {
+		return &badInput{f.name, strconv.Quote(clip(v)) + " is not allowed. Expected " + f.want()}
 	}
 	*f.to(t) = sign * x
 	return nil
+}
+
+// want is what a number of the field may be.
+func (f targetField) want() string {
+	want := "a number from " + short(f.low) + " to " + short(f.top) + " (" + f.unit + "), with a point as decimal sign"
+	if f.unit == "1" {
+		want = "a number from " + short(f.low) + " to " + short(f.top) + ", with a point as decimal sign"
+	}
+	if f.letters != "" {
+		want += "; " + f.letters[:1] + " or " + f.letters[1:] + " may follow it"
+	}
+	return want
+}
+
+// errorFields are where the error of a value is typed.
+var errorFields = map[string]string{"palaeolatitude": "palaeolatitude_se", "age": "age_se", "inclination": "a95", "pole_lat": "a95", "pole_lon": "a95",
+	"euler_lat": "euler_error", "euler_lon": "euler_error", "euler_angle": "euler_error"}
+
+// misread says why a text is no number of the field, and what to type where it
+// is clear what was meant: a value with its error, a decimal comma, a unit.
+// The value itself is never guessed.
+func (f targetField) misread(v string) string {
+	quoted := strconv.Quote(clip(v))
+	value, se, pair := strings.Cut(strings.NewReplacer("+/-", "±", "+-", "±", "-+", "±").Replace(v), "±")
+	value, se = strings.TrimSpace(value), strings.TrimSpace(se)
+	switch to := errorFields[f.name]; {
+	case pair && isNumber(value) && to != "" && isNumber(se):
+		return quoted + " is a value with its error. Give " + value + " here and " + se + " in " + to
+	case pair && isNumber(value):
+		return quoted + " is a value with its error. Give " + value + " here; an error of it has no place in this question"
+	}
+	if dotted := strings.Replace(v, ",", ".", 1); strings.Count(v, ",") == 1 && isNumber(dotted) {
+		return quoted + " has a comma as decimal sign. Expected " + dotted + ", with a point"
+	}
+	if i := strings.LastIndexAny(v, "0123456789."); i >= 0 && isNumber(v[:i+1]) {
+		number, unit := v[:i+1], strings.TrimSpace(v[i+1:])
+		if x, _ := strconv.ParseFloat(number, 64); f.name == "age" && ageUnits[strings.ToLower(unit)] != 0 {
+			return quoted + " carries its unit, and ages are taken in Ma. Give " + short(x*ageUnits[strings.ToLower(unit)])
+		}
+		return quoted + " is a number followed by " + strconv.Quote(clip(unit)) + ". Give " + number + " alone, if it is in " + f.unitName()
+	}
+	return quoted + " is no number. Expected " + f.want()
+}
+
+// ageUnits in Ma.
+var ageUnits = map[string]float64{"ma": 1, "myr": 1, "my": 1, "m.y.": 1, "ka": 1e-3, "kyr": 1e-3, "ga": 1e3, "gyr": 1e3}
+
+func (f targetField) unitName() string {
+	unit, _, _ := strings.Cut(f.unit, ",")
+	if unit == "1" {
+		return "no unit"
+	}
+	return unit
+}
+
+func isNumber(s string) bool {
+	x, err := strconv.ParseFloat(s, 64)
+	return err == nil && isFinite(x)
 }
 
 // hemisphere takes a letter such as the S of "12 S" off a coordinate.
@@ -244,7 +301,7 @@ func readPoles(q url.Values, t *expectation.Target) error {
 	text := q.Get("pole_csv")
 	if strings.TrimSpace(text) == "" {
 		if t.PoleTable == ownPoles {
-			return &badInput{"pole_table", "a pole table of your own is chosen, but pole_csv is empty. Paste it there: plate, age, pole latitude, pole longitude, A95"}
+			return &badInput{"pole_table", "a pole table of your own is chosen, but pole_csv is empty. Expected there: plate, age, pole latitude, pole longitude, A95"}
 		}
 		return nil
 	}
@@ -275,17 +332,10 @@ func targetValues(q url.Values) url.Values {
 	return out
 }
 
-// asksNothing says that a query names no place: the form is shown, not an
-// error.
-func asksNothing(q url.Values) bool {
-	for _, name := range []string{"palaeolatitude", "inclination", "site_lat", "site_lon", "pole_lat", "pole_lon", "plate", "euler_lat", "euler_lon", "euler_angle",
-		"age", "unit", "day_length_h", "days_per_year", "observed_sinuosity"} {
-		if strings.TrimSpace(q.Get(name)) != "" {
-			return false
-		}
-	}
-	return true
-}
+// asksNothing says that a query says nothing of a target: the form is shown,
+// not an error. The data twin refuses the same address, because data has no
+// form to show.
+func asksNothing(q url.Values) bool { return len(targetValues(q)) == 0 }
 
 // expectationQuestion reads a whole expectation address or body.
 func expectationQuestion(q url.Values) (catalogue.Filter, expectation.Target, error) {

@@ -225,7 +225,17 @@ func TestExpectationBadInput(t *testing.T) {
 	v := newDemoSite(t).visitor()
 	for _, c := range []struct{ query, names string }{
 		{"palaeolatitude=91", "palaeolatitude"},
-		{"palaeolatitude=28,5", "point as decimal sign"},
+		{"palaeolatitude=28,5", "28.5, with a point"},
+		{"palaeolatitude=3+%2B-+6", "3 here and 6 in palaeolatitude_se"},
+		{"palaeolatitude=3&age=70+%C2%B1+3", "70 here and 3 in age_se"},
+		{"palaeolatitude=3&age=70+Ma", "Give 70"},
+		{"palaeolatitude=3&age=12+ka", "Give 0.012"},
+		{"palaeolatitude=3&age=1e9", "1000000000 years is 1000 Ma"},
+		{"palaeolatitude=3&target_width_m=2+km", "Give 2 alone, if it is in m"},
+		{"palaeolatitude=3&radius_m=1e9", "1 to 1000000"},
+		{"paleolatitude=3", "Is palaeolatitude meant?"},
+		{"a95=5", "palaeolatitude"},
+		{"seed=3", "palaeolatitude"},
 		{"palaeolatitude=NaN", "palaeolatitude"},
 		{"palaeolatitude=20&inclination=40", "inclination"},
 		{"palaeolatitude=30&palaeolatitude=40", "palaeolatitude"},
@@ -254,6 +264,9 @@ func TestExpectationBadInput(t *testing.T) {
 			a := v.get(path + "?" + c.query)
 			if a.status != http.StatusBadRequest || !strings.Contains(a.body, c.names) {
 				t.Errorf("%s?%s: status %d, want 400 naming %q\n%.500s", path, c.query, a.status, c.names, a.text())
+			}
+			if path == "/expectation.json" {
+				wholeProblem(t, a)
 			}
 		}
 	}

@@ -88,7 +88,7 @@ func featureParameters(c echo.Context, lists ...[]string) (url.Values, error) {
 		return nil, err
 	}
 	if v := q.Get("f"); v != "" && v != "json" && v != "geojson" {
-		return nil, &badInput{"f", "only json is offered here"}
+		return nil, &badInput{"f", "only one format is offered here. Expected json"}
 	}
 	q.Del("f")
 	return q, nil

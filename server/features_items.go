@@ -71,13 +71,13 @@ func itemQuestion(c echo.Context) (url.Values, catalogue.FeatureQuery, error) {
 	for name, into := range map[string]*int64{"after": &f.After, "before": &f.Before} {
 		if v := q.Get(name); v != "" {
 			if *into, err = strconv.ParseInt(v, 10, 64); err != nil || *into < 1 {
-				return nil, f, &badInput{name, strconv.Quote(clip(v)) + " is not a position. Follow the links next and prev instead of making up this parameter"}
+				return nil, f, &badInput{name, strconv.Quote(clip(v)) + " is not a position. Expected none: follow the links next and prev instead of making up this parameter"}
 			}
 		}
 	}
 	for _, name := range []string{"bbox", "datetime", "limit", "after", "before"} {
 		if len(q[name]) > 1 {
-			return nil, f, &badInput{name, "it is given more than once"}
+			return nil, f, &badInput{name, "it is given more than once. Expected once"}
 		}
 	}
 	return q, f, nil
@@ -144,7 +144,7 @@ func featureTime(v string) (from, to time.Time, err error) {
 		return from, to, bad(v)
 	}
 	if !from.IsZero() && !to.IsZero() && from.After(to) {
-		return from, to, &badInput{"datetime", "the interval ends before it begins"}
+		return from, to, &badInput{"datetime", "the interval ends before it begins. Expected begin/end"}
 	}
 	return from, to, nil
 }

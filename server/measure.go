@@ -103,7 +103,7 @@ func (m *measures) read(c echo.Context) (*sent, error) {
 	r := c.Request()
 	q, err := url.ParseQuery(r.URL.RawQuery)
 	if err != nil {
-		return nil, &badInput{"query", "the address holds a broken escape (%); write a plain % as %25"}
+		return nil, &badInput{"query", "the address holds a broken escape (%). Expected %25 for a plain %"}
 	}
 	kind, _, _ := strings.Cut(r.Header.Get("Content-Type"), ";")
 	switch strings.ToLower(strings.TrimSpace(kind)) {

@@ -33,6 +33,10 @@ func (a *App) meridian(c echo.Context) error {
 		return err
 	}
 	m.Wide = true
+	if m.Notice == "" {
+		f, _ := filterOf(q)
+		m.Notice = unusedOfTables(f)
+	}
 	table := m.Filter.Values()
 	m.CSV, m.JSON, m.GeoJSON = withQuery("/systems.csv", table), withQuery("/systems.json", table), withQuery("/systems.geojson", table)
 	m.FigureHref = withQuery("/figures/meridian.svg", withoutEmpty(q))

@@ -124,6 +124,33 @@ func operation(id, tag, summary, kind string, schema object, parameters ...any) 
 	return object{"get": op}
 }
 
+// withPost adds the same question sent by POST, which keeps it out of
+// addresses; takes are the types of body it reads.
+func withPost(path object, summary string, takes ...string) object {
+	get := path["get"].(object)
+	post := object{}
+	for k, v := range get {
+		post[k] = v
+	}
+	post["operationId"], post["summary"] = get["operationId"].(string)+"ByPost", summary
+	answers := object{"415": object{"$ref": "#/components/responses/Problem"}}
+	for status, v := range get["responses"].(object) {
+		if status != "304" {
+			answers[status] = v
+		}
+	}
+	content := object{}
+	for _, t := range takes {
+		content[t] = object{"schema": object{"type": "object"}}
+		if t == "text/csv" {
+			content[t] = object{"schema": object{"type": "string"}}
+		}
+	}
+	post["responses"], post["requestBody"] = answers, object{"content": content}
+	path["post"] = post
+	return path
+}
+
 func ref(name string) object { return object{"$ref": "#/components/schemas/" + name} }
 
 func openAPIDocument(base string) object {
@@ -156,17 +183,18 @@ func openAPIDocument(base string) object {
 		"/dictionary.json":        operation("dictionaryJSON", tables, "Data dictionary", jsonType, anything),
 		"/regression.json":        operation("regressionJSON", fits, "Regression of sinuosity", jsonType, anything, withFilter(namedParameters(regressionParameters)...)...),
 		"/regression.csv":         operation("regressionCSV", fits, "Every row considered in a regression", "text/csv", text, withFilter(namedParameters(regressionParameters)...)...),
-		"/expectation.json":       operation("expectationJSON", fits, "Expected sinuosity of a target", jsonType, anything, withFilter(namedParameters(targetParameters)...)...),
-		"/releases.json":          operation("releasesJSON", releases, "The releases", jsonType, anything),
-		"/releases.csv":           operation("releasesCSV", releases, "The releases", "text/csv", text),
-		"/releases/{name}.json":   operation("releaseJSON", releases, "One release", jsonType, anything, pathParameter("name", "Name of the release.")),
-		"/releases/{name}.csv":    operation("releaseCSV", releases, "Measurement table of a release", "text/csv", text, pathParameter("name", "Name of the release.")),
-		"/releases/{name}.zip":    operation("releasePackage", releases, "Data package of a release", "application/zip", binary, pathParameter("name", "Name of the release.")),
-		"/feed.atom":              operation("feed", releases, "Releases and newly accepted systems", "application/atom+xml", text),
-		"/openapi.json":           operation("openAPI", about, "This document", jsonType, anything, f),
-		"/healthz":                operation("health", about, "Whether the program can answer", "text/plain", text),
-		differencePath + ".csv":   operation("differenceCSV", releases, "What changed from one release to another, or to present", "text/csv", text, pathParameter("name", "Name of the earlier release."), pathParameter("other", "Name of the later release, or present.")),
-		differencePath + ".json":  operation("differenceJSON", releases, "What changed from one release to another, or to present", jsonType, anything, pathParameter("name", "Name of the earlier release."), pathParameter("other", "Name of the later release, or present.")),
+		"/expectation.json": withPost(operation("expectationJSON", fits, "Expected sinuosity of a target", jsonType, anything, withFilter(namedParameters(targetParameters)...)...),
+			"The same with the parameters in the body, as a form or as a JSON object of names and values", echo.MIMEApplicationForm, jsonType),
+		"/releases.json":         operation("releasesJSON", releases, "The releases", jsonType, anything),
+		"/releases.csv":          operation("releasesCSV", releases, "The releases", "text/csv", text),
+		"/releases/{name}.json":  operation("releaseJSON", releases, "One release", jsonType, anything, pathParameter("name", "Name of the release.")),
+		"/releases/{name}.csv":   operation("releaseCSV", releases, "Measurement table of a release", "text/csv", text, pathParameter("name", "Name of the release.")),
+		"/releases/{name}.zip":   operation("releasePackage", releases, "Data package of a release", "application/zip", binary, pathParameter("name", "Name of the release.")),
+		"/feed.atom":             operation("feed", releases, "Releases and newly accepted systems", "application/atom+xml", text),
+		"/openapi.json":          operation("openAPI", about, "This document", jsonType, anything, f),
+		"/healthz":               operation("health", about, "Whether the program can answer", "text/plain", text),
+		differencePath + ".csv":  operation("differenceCSV", releases, "What changed from one release to another, or to present", "text/csv", text, pathParameter("name", "Name of the earlier release."), pathParameter("other", "Name of the later release, or present.")),
+		differencePath + ".json": operation("differenceJSON", releases, "What changed from one release to another, or to present", jsonType, anything, pathParameter("name", "Name of the earlier release."), pathParameter("other", "Name of the later release, or present.")),
 	}
 	return object{
 		"openapi": "3.0.3",

@@ -1,6 +1,7 @@
 package main
 
 import (
+	"math"
 	"net/url"
 	"slices"
 	"strconv"
@@ -9,6 +10,7 @@ import (
 	"github.com/labstack/echo/v4"
 
 	"fathombend/catalogue"
+	"fathombend/stats/earth"
 )
 
 // params returns the parameters of a request: the query, or for POST the body
@@ -16,13 +18,13 @@ import (
 func params(c echo.Context) (url.Values, error) {
 	if c.Request().Method == "POST" {
 		if err := c.Request().ParseForm(); err != nil {
-			return nil, &badInput{"body", "the form could not be read; send it as application/x-www-form-urlencoded"}
+			return nil, &badInput{"body", "the form could not be read. Expected application/x-www-form-urlencoded"}
 		}
 		return c.Request().PostForm, nil
 	}
 	q, err := url.ParseQuery(c.Request().URL.RawQuery)
 	if err != nil {
-		return nil, &badInput{"query", "the address holds a broken escape (%); write a plain % as %25"}
+		return nil, &badInput{"query", "the address holds a broken escape (%). Expected %25 for a plain %"}
 	}
 	return q, nil
 }
@@ -38,7 +40,11 @@ func allow(q url.Values, lists ...[]string) error {
 	slices.Sort(names)
 	for _, name := range names {
 		if !slices.Contains(all, name) {
-			return &badInput{name, "no such parameter here. Allowed: " + strings.Join(all, ", ")}
+			near := nearest(name, all)
+			if near != "" {
+				near = " Is " + near + " meant?"
+			}
+			return &badInput{name, "no such parameter here." + near + " Allowed: " + strings.Join(all, ", ")}
 		}
 	}
 	return nil
@@ -63,6 +69,9 @@ func number(q url.Values, name string, def, lo, hi float64) (float64, error) {
 		return def, nil
 	}
 	x, err := strconv.ParseFloat(v, 64)
+	if dotted := strings.Replace(v, ",", ".", 1); err != nil && strings.Count(v, ",") == 1 && isNumber(dotted) {
+		return 0, &badInput{name, strconv.Quote(clip(v)) + " has a comma as decimal sign. Expected " + dotted + ", with a point"}
+	}
 	if err != nil || !isFinite(x) || x < lo || x > hi {
 		return 0, &badInput{name, strconv.Quote(clip(v)) + " is not allowed. Expected a number from " + short(lo) + " to " + short(hi) + ", with a point as decimal sign"}
 	}
@@ -82,7 +91,26 @@ func whole(q url.Values, name string, def, lo, hi int) (int, error) {
 	return x, nil
 }
 
-func short(x float64) string { return strconv.FormatFloat(x, 'g', -1, 64) }
+// short writes a number so that reading it gives the same double: plainly,
+// unless that would be a row of zeros.
+func short(x float64) string {
+	if a := math.Abs(x); a != 0 && (a < 1e-9 || a >= 1e15) {
+		return strconv.FormatFloat(x, 'g', -1, 64)
+	}
+	return strconv.FormatFloat(x, 'f', -1, 64)
+}
+
+// nearest is the one of names that text was most likely meant to be, "" when
+// none is near: at most a third of its letters differ.
+func nearest(text string, names []string) string {
+	best, at := "", len(text)/3+1
+	for _, n := range names {
+		if d := earth.Distance(strings.ToLower(text), n); d < at {
+			best, at = n, d
+		}
+	}
+	return best
+}
 
 // clip keeps what is echoed back in a message short.
 func clip(s string) string {
@@ -90,6 +118,33 @@ func clip(s string) string {
 		return string(r[:80]) + "..."
 	}
 	return s
+}
+
+// unusedOfTables names what an address gives of order and pages where neither
+// has a meaning, "" when it gives none: they are parameters of the filter, and
+// links carry them along from a table.
+func unusedOfTables(f catalogue.Filter) string {
+	var names []string
+	for _, n := range []struct {
+		name string
+		set  bool
+	}{{"order (sort)", f.Sort != ""}, {"page", f.Page > 0}, {"page size (per_page)", f.PerPage > 0}} {
+		if n.set {
+			names = append(names, n.name)
+		}
+	}
+	if len(names) == 0 {
+		return ""
+	}
+	return "Not used here: " + strings.Join(names, ", ") + ", which belong to a table; every row that the filter leaves counts."
+}
+
+// noteUnused says the same in the header of a file that has no other place
+// for it.
+func noteUnused(c echo.Context, f catalogue.Filter) {
+	if note := unusedOfTables(f); note != "" {
+		c.Response().Header().Set("Fathombend-Note", note)
+	}
 }
 
 // filterOf reads the catalogue filter of a request.

@@ -45,7 +45,11 @@ func refusals(q url.Values, err error) (f catalogue.Filter, all []views.Refusal,
 		f, _ = readable(rest)
 	}
 	if !slices.ContainsFunc(all, func(r views.Refusal) bool { return r.Name == p.Field }) {
-		all = slices.Insert(all, 0, views.Refusal{Name: p.Field, Message: p.Detail, Expected: p.Expected})
+		r := views.Refusal{Name: p.Field, Message: p.Detail, Expected: p.Expected}
+		if p.whole != "" {
+			r.Message, r.Expected = p.whole, ""
+		}
+		all = slices.Insert(all, 0, r)
 	}
 	return f, all, true
 }

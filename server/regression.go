@@ -62,6 +62,8 @@ func (a *App) regressionPage(c echo.Context) error {
 		return a.regressionRefused(c, q, &badInput{"", "The fit was cancelled. Ask for fewer models or fewer resamples, or fit it again."})
 	case err != nil:
 		return a.regressionRefused(c, q, err)
+	case page.Analysis != nil:
+		page.Analysis = withUnused(page.Analysis, f)
 	case working != nil:
 		return a.regressionWorking(c, page, working)
 	}
@@ -141,7 +143,7 @@ func (a *App) fullAddress(ctx context.Context, q url.Values, f catalogue.Filter,
 		}
 		req.Scale = scale
 	}
-	return "/regression?" + withValues(regressionFilter(f).Values(), regressionValues(req)).Encode(), nil
+	return "/regression?" + withValues(f.Values(), regressionValues(req)).Encode(), nil
 }
 
 // offeredRequest is the question that pages ask by themselves: the contract's,
@@ -196,8 +198,24 @@ func (a *App) regressionAnswer(c echo.Context) (catalogue.Filter, stats.Request,
 	if err != nil {
 		return f, req, nil, err
 	}
+	noteUnused(c, f)
 	analysis, err := a.analyse(c.Request().Context(), f, req)
+	if err == nil {
+		analysis = withUnused(analysis, f)
+	}
 	return f, req, analysis, err
+}
+
+// withUnused adds to the warnings what of the address has no part in a fit.
+// The analysis itself is shared between questions and stays as it is.
+func withUnused(analysis *stats.Analysis, f catalogue.Filter) *stats.Analysis {
+	note := unusedOfTables(f)
+	if note == "" {
+		return analysis
+	}
+	noted := *analysis
+	noted.Warnings = append(slices.Clone(analysis.Warnings), note)
+	return &noted
 }
 
 // regressionFigure is one panel of the page alone, as a file; without panel=

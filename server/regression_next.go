@@ -105,6 +105,9 @@ func (a *App) nextPage(c echo.Context) error {
 	p := a.page(c, "Where to measure next", "regression")
 	p.Query = q
 	p.JSON = withQuery("/regression/next.json", q)
+	if p.Notice == "" {
+		p.Notice = unusedOfTables(f)
+	}
 	page := views.NextPage{Page: p, Request: req, Options: o, Filter: f, Terms: nextTerms, Categories: stats.Categories, Land: land.Rings()}
 	if page.Facets, err = a.facets(ctx, f); err != nil {
 		return refuse(err)
@@ -124,6 +127,7 @@ func (a *App) nextJSON(c echo.Context) error {
 	if err != nil {
 		return err
 	}
+	noteUnused(c, f)
 	answer, err := a.next(c.Request().Context(), f, req, o)
 	if err != nil {
 		return err

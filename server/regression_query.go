@@ -74,7 +74,7 @@ func readModels(q url.Values, r *stats.Request) error {
 		}
 		form, predictor, _ := strings.Cut(v, ":")
 		if !slices.Contains(stats.Forms, form) || !slices.Contains(stats.Predictors, predictor) {
-			return &badInput{"model", strconv.Quote(clip(v)) + " is not FORM:PREDICTOR. Forms: " + strings.Join(stats.Forms, ", ") +
+			return &badInput{"model", strconv.Quote(clip(v)) + " is no model. Expected FORM:PREDICTOR. Forms: " + strings.Join(stats.Forms, ", ") +
 				". Predictors: " + strings.Join(stats.Predictors, ", ")}
 		}
 		if m := (stats.ModelSpec{Form: form, Predictor: predictor}); !slices.Contains(models, m) {

@@ -381,11 +381,27 @@ func TestRegressionBadInput(t *testing.T) {
 			if !strings.Contains(a.body, c.names) {
 				t.Errorf("%s%s: the answer does not name %q:\n%.600s", path, c.query, c.names, a.text())
 			}
+			if path != "/regression?" {
+				wholeProblem(t, a)
+			}
 		}
 	}
 	a := v.get("/regression.json?scale=log")
 	if ct := a.header.Get("Content-Type"); ct != "application/problem+json" {
 		t.Errorf("content type of a refusal %q", ct)
+	}
+}
+
+// wholeProblem: a refusal names its parameter and says apart what is wrong and
+// what was expected.
+func wholeProblem(t testing.TB, a *answer) {
+	t.Helper()
+	var p problem
+	if err := json.Unmarshal([]byte(a.body), &p); err != nil {
+		t.Fatal(err)
+	}
+	if p.Field == "" || p.Detail == "" || p.Expected == "" || strings.Contains(p.Detail, "Expected") {
+		t.Errorf("a part of the refusal is missing: %+v", p)
 	}
 }
 

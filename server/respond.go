@@ -8,6 +8,7 @@ import (
 	"math"
 	"net/http"
 	"path"
+	"regexp"
 	"strings"
 
 	"github.com/a-h/templ"
@@ -45,6 +46,7 @@ type problem struct {
 	Detail   string `json:"detail"`
 	Field    string `json:"field,omitempty"`
 	Expected string `json:"expected,omitempty"`
+	whole    string // the refusal as one text, as pages show it
 }
 
 // badInput is a refusal the server itself makes, e.g. an unknown parameter.
@@ -70,7 +72,8 @@ func problemOf(err error) problem {
 	switch {
 	case errors.As(err, &in):
 		field, msg := in.Input()
-		return problem{Title: "That cannot be answered", Status: http.StatusBadRequest, Detail: msg, Field: field}
+		detail, expected := expectedIn(msg)
+		return problem{Title: "That cannot be answered", Status: http.StatusBadRequest, Detail: detail, Field: field, Expected: expected, whole: msg}
 	case errors.As(err, &ce) && ce.Code != catalogue.Internal:
 		status := map[catalogue.Code]int{catalogue.Invalid: 400, catalogue.NotFound: 404, catalogue.Conflict: 409, catalogue.Forbidden: 403, catalogue.Unavailable: 503}[ce.Code]
 		if status == http.StatusServiceUnavailable {
@@ -82,6 +85,38 @@ func problemOf(err error) problem {
 	}
 	return problem{Title: "Something went wrong here", Status: http.StatusInternalServerError,
 		Detail: "The fault is on this side and has been logged. Nothing you typed was stored or changed; going back keeps it."}
+}
+
+// expectationStarts are the words that open what a refusal expects instead.
+var expectationStarts = regexp.MustCompile(`(?:^|[.;:,?] )(Expected|expected|Allowed|Nearest|It has|Did you mean|Give|give|Choose|Use|Type|Leave)\b:? `)
+
+// expectedIn parts a refusal into what is wrong and what was expected. The two
+// stand in one text where they are made, because people read them so; data
+// twins give them apart.
+func expectedIn(message string) (detail, expected string) {
+	at := expectationStarts.FindStringSubmatchIndex(message)
+	if at == nil {
+		return message, ""
+	}
+	word := strings.ToLower(message[at[2]:at[3]])
+	detail = strings.TrimRight(message[:at[0]], " .;:,")
+	if strings.HasPrefix(message[at[0]:], "?") {
+		detail += "?"
+	}
+	expected = message[at[1]:]
+	switch word {
+	case "expected":
+	case "allowed":
+		expected = "one of: " + expected
+	case "nearest", "it has":
+		expected = "one such as: " + expected
+	default:
+		expected = message[at[2]:]
+	}
+	if detail == "" {
+		detail = "it is missing or cannot be read"
+	}
+	return detail, strings.TrimSuffix(expected, ".")
 }
 
 // wantsData says whether the address asks for data rather than a page.
@@ -114,6 +149,9 @@ func (a *App) handleError(err error, c echo.Context) {
 	}
 	page := a.page(c, p.Title, "")
 	detail := p.Detail
+	if p.whole != "" {
+		detail, p.Expected = p.whole, ""
+	}
 	if p.Field != "" {
 		detail = p.Field + ": " + detail
 	}

@@ -77,6 +77,7 @@ func (a *App) systemsCSV(c echo.Context) error {
 	if err != nil {
 		return err
 	}
+	noteUnused(c, catalogue.Filter{Page: f.Page, PerPage: f.PerPage})
 	f.Page, f.PerPage = 0, 0
 	if done, err := a.download(c, "text/csv; charset=utf-8; header=present", fileName("systems", f.Release, ".csv"), f.Release); done || err != nil {
 		return err
@@ -93,6 +94,7 @@ func (a *App) dimensionsCSV(c echo.Context) error {
 	if err != nil {
 		return err
 	}
+	noteUnused(c, f)
 	dims, err := a.store.DimensionQuantiles(c.Request().Context(), f)
 	if err != nil {
 		return err

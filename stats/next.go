@@ -6,6 +6,7 @@ import (
 	"math"
 	"math/rand/v2"
 	"slices"
+	"strings"
 )
 
 // NextOptions is what to ask about the next measurements.
@@ -143,7 +144,7 @@ func (o *NextOptions) fill() error {
 	}
 	for _, v := range o.Explanations {
 		if !slices.Contains(Predictors, v) && !slices.Contains(Categories, v) {
-			return refuse("explanations", "%q is neither a predictor nor a category", v)
+			return refuse("explanations", "%q is neither a predictor nor a category. Expected two of: %s, %s", v, strings.Join(Predictors, ", "), strings.Join(Categories, ", "))
 		}
 	}
 	if o.Explanations[0] == o.Explanations[1] {

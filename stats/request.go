@@ -86,7 +86,7 @@ func (r Request) validateModels() error {
 		return refuse("model", "no model is asked for. Expected FORM:PREDICTOR, such as linear:abs_latitude")
 	}
 	if len(r.Models) > maxModels {
-		return refuse("model", "%d models are asked for; at most %d fit on one page", len(r.Models), maxModels)
+		return refuse("model", "%d models are asked for. Expected at most %d", len(r.Models), maxModels)
 	}
 	for i, m := range r.Models {
 		if !slices.Contains(Forms, m.Form) {
@@ -96,7 +96,7 @@ func (r Request) validateModels() error {
 			return refuse("model", "%q is not a predictor. Expected one of: %s", m.Predictor, strings.Join(Predictors, ", "))
 		}
 		if slices.Contains(r.Models[:i], m) {
-			return refuse("model", "%s is asked for twice", m)
+			return refuse("model", "%s is asked for twice. Expected once", m)
 		}
 		if setsOwnScale(m.Form) && r.Scale != "raw" {
 			return refuse("scale", "%s cannot be combined with %s, which sets its own response scale. Use scale=raw, or another form", r.Scale, m.Form)
@@ -110,14 +110,14 @@ func (r Request) validateModels() error {
 
 func (r Request) validateJoint() error {
 	if len(r.Joint) > maxJoint {
-		return refuse("joint", "%d members are asked for; at most %d can be told apart", len(r.Joint), maxJoint)
+		return refuse("joint", "%d members are asked for. Expected at most %d: more cannot be told apart", len(r.Joint), maxJoint)
 	}
 	for i, name := range r.Joint {
 		if !slices.Contains(Predictors, name) && !slices.Contains(Categories, name) {
 			return refuse("joint", "%q is neither a predictor nor a category. Expected some of: %s, %s", name, strings.Join(Predictors, ", "), strings.Join(Categories, ", "))
 		}
 		if slices.Contains(r.Joint[:i], name) {
-			return refuse("joint", "%s is named twice", name)
+			return refuse("joint", "%s is named twice. Expected once", name)
 		}
 	}
 	if r.Interaction == [2]string{} {

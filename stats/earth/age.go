@@ -25,7 +25,7 @@ const oldest = 4567
 func AgeOf(ma, se float64) (Age, error) {
 	switch {
 	case math.IsNaN(ma) || math.IsInf(ma, 0) || ma < 0:
-		return Age{}, &InputError{"age", "the age must be 0 or more, in Ma (millions of years before present)"}
+		return Age{}, &InputError{"age", "the age is negative or no number. Expected 0 or more, in Ma (millions of years before present)"}
 	case ma > oldest:
 		return Age{}, &InputError{"age", fmt.Sprintf("%s is older than the Earth (%d Ma). Ages are in Ma, not in years: for %s years type %s", plain(ma), oldest, plain(ma), plain(ma/1e6))}
 	}
@@ -33,7 +33,7 @@ func AgeOf(ma, se float64) (Age, error) {
 		se = 0
 	}
 	if se < 0 || math.IsInf(se, 0) {
-		return Age{}, &InputError{"age_se", "the standard error of the age must be 0 or more, in Ma"}
+		return Age{}, &InputError{"age_se", "the standard error of the age is negative. Expected 0 or more, in Ma"}
 	}
 	return Age{Value: ma, SE: se, Low: math.Max(0, ma-1.96*se), High: ma + 1.96*se,
 		Text: plain(ma) + " Ma"}, nil
@@ -135,7 +135,7 @@ func UnitNamed(name string) (Unit, error) {
 			if k == key {
 				return u, nil
 			}
-			d = min(d, distance(key, k))
+			d = min(d, Distance(key, k))
 		}
 		best = append(best, near{u.Name, d})
 	}
@@ -154,8 +154,9 @@ func unitKey(s string) string {
 	return strings.ReplaceAll(s, "ae", "e")
 }
 
-// distance is the Levenshtein distance in bytes.
-func distance(a, b string) int {
+// Distance is the Levenshtein distance in bytes: how many letters to change,
+// add or leave out.
+func Distance(a, b string) int {
 	row := make([]int, len(b)+1)
 	for j := range row {
 		row[j] = j

@@ -45,7 +45,7 @@ func ParseClimateTable(in io.Reader) (ClimateTable, error) {
 	}
 	t := climateFrom(rows)
 	if len(t) == 0 {
-		return nil, &InputError{"climate_table", "the table has no rows below its header"}
+		return nil, &InputError{"climate_table", "the table has no rows below its header. Expected one row a state"}
 	}
 	for i, c := range t {
 		if c.State == "" || math.IsNaN(c.BaseMa) || math.IsNaN(c.TopMa) || c.BaseMa <= c.TopMa || c.TopMa < 0 {

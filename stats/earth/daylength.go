@@ -123,7 +123,7 @@ func (t *moonTable) at(ageMa float64) (a, low, high float64) {
 // its limit and names the histories that do.
 func DayLengthAt(ageMa float64, o HistoryOptions) (DayLength, error) {
 	if math.IsNaN(ageMa) || ageMa < 0 {
-		return DayLength{}, &InputError{"age", "the age must be 0 or more, in Ma"}
+		return DayLength{}, &InputError{"age", "the age is negative. Expected 0 or more, in Ma"}
 	}
 	name := o.History
 	if name == "" {
@@ -234,7 +234,7 @@ const msPerCenturyHours = 10.0 / 3600
 
 func constantRateAt(ageMa, rate float64) (DayLength, error) {
 	if math.IsNaN(rate) || rate == 0 {
-		return DayLength{}, &InputError{"rate_ms_per_century", "the constant rate needs a number of milliseconds per century, for example 1.75 (observed) or 2.35 (by tides alone)"}
+		return DayLength{}, &InputError{"rate_ms_per_century", "the constant rate is missing. Expected milliseconds per century, for example 1.75 (observed) or 2.35 (by tides alone)"}
 	}
 	day := func(r float64) SolarHours { return SolarHours(24 - r*msPerCenturyHours*ageMa) }
 	v := day(rate)
@@ -275,7 +275,7 @@ func givenDay(o HistoryOptions) (DayLength, error) {
 	case o.Rotation > 0:
 		v = o.Rotation.Solar()
 	default:
-		return DayLength{}, &InputError{"day_length_h", "a given day needs day_length_h (solar hours) or days_per_year, above 0"}
+		return DayLength{}, &InputError{"day_length_h", "a given day has no length here. Give day_length_h (solar hours) or days_per_year, above 0"}
 	}
 	return DayLength{Value: v, Low: v, High: v}, nil
 }

@@ -201,7 +201,7 @@ func ParsePoleTable(name string, in io.Reader) (*PoleTable, error) {
 		return bad("the table could not be read: expected comma-separated text with the header plate,age_ma,pole_lat,pole_lon,a95")
 	}
 	if len(rows) == 0 {
-		return bad("the table has no rows below its header")
+		return bad("the table has no rows below its header. Expected plate,age_ma,pole_lat,pole_lon and, if known, a95")
 	}
 	for _, c := range []string{"plate", "age_ma", "pole_lat", "pole_lon"} {
 		if _, ok := rows[0][c]; !ok {

@@ -279,7 +279,7 @@ func TestRefusals(t *testing.T) {
 		{"inclination", "2 ways", func(q *Target) { q.Inclination = 40 }},
 		{"plate", "no plate", func(q *Target) { q.site(10, 10); q.Plate, q.Age = "Atlantis", 50 }},
 		{"plate", "81.99 Ma", func(q *Target) { q.site(10, 10); q.Plate, q.Age = "Iberia", 200 }},
-		{"age", "needs an age", func(q *Target) { q.site(10, 10); q.Plate = "India" }},
+		{"age", "a plate has its pole at an age", func(q *Target) { q.site(10, 10); q.Plate = "India" }},
 		{"plate", "needs a way", func(q *Target) { q.site(10, 10) }},
 		{"pole_lon", "is needed", func(q *Target) { q.site(10, 10); q.PoleLat = 80 }},
 		{"age", "type 70", func(q *Target) { q.Age = 70e6 }},
@@ -289,7 +289,7 @@ func TestRefusals(t *testing.T) {
 		{"target_slope", "target_slope_deg", func(q *Target) { q.TargetSlope = 3 }},
 		{"target_slope", "above 0", func(q *Target) { q.TargetSlope = 0 }},
 		{"observed_sinuosity", "1 to", func(q *Target) { q.ObservedSinuosity = 0.9 }},
-		{"day_length_h", "needs", func(q *Target) { q.Day = "given" }},
+		{"day_length_h", "has no length", func(q *Target) { q.Day = "given" }},
 		{"target_grain", "mud_sand", func(q *Target) { q.TargetGrain = "clay" }},
 		{"draws", "100 to", func(q *Target) { q.Draws = 1 }},
 		{"euler_frame", "spin-axis", func(q *Target) {

@@ -78,7 +78,7 @@ func locate(t *Target) (*place, error) {
 		return nil, refuse("days_per_year", "the day is given twice, as day_length_h and as days_per_year. Give one of them")
 	}
 	if (given(t.DayLengthH) || given(t.DaysPerYear)) && p.options.History != earth.Given {
-		p.notes = append(p.notes, "A day length was typed but is not used: the day comes from "+orDefault(t.Day)+". Choose day=given to use it.")
+		p.notes = append(p.notes, "Not used: the day length that was typed, because the day comes from "+dayName(p.options.History)+". Choose a given day to use it.")
 	}
 	if p.day, err = earth.DayLengthAt(p.age.Value, p.options); err != nil {
 		return nil, err
@@ -128,6 +128,7 @@ func (p *place) latitudeOf(t *Target) error {
 	if err != nil {
 		return err
 	}
+	p.notes = append(p.notes, t.unused(way)...)
 	missing := func(x float64, what string) {
 		if !given(x) {
 			p.notes = append(p.notes, "No "+what+" was given: it is taken as 0.")

@@ -100,7 +100,7 @@ func (t *Target) needs(way string) error {
 		}
 	}
 	if way == wayPlate && !given(t.Age) && t.Unit == "" {
-		return refuse("age", "a plate needs an age in Ma, or a unit, to find its pole")
+		return refuse("age", "a plate has its pole at an age, and none is given. Give age in Ma, or unit")
 	}
 	return nil
 }
