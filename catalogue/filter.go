@@ -15,6 +15,7 @@ type Filter struct {
 	AgeMin, AgeMax             Number // Ma
 	BBox                       *BBox
 	Release                    string
+	WithoutPrivate             bool // private=no: what everybody sees, said in the address; AsEverybody does it
 
 	Sort    string // column, "-" before it for descending
 	Page    int    // from 1; 0 is 1

@@ -13,7 +13,7 @@ import (
 var FilterParameters = []string{
 	"q", "kind", "setting", "margin", "feeder", "grain", "confinement", "activity", "burial", "survey", "extraction", "grade",
 	"basin", "parent_deposit", "source", "lat_min", "lat_max", "abs_lat_min", "abs_lat_max", "slope_min", "slope_max",
-	"sinuosity_min", "sinuosity_max", "width_min", "width_max", "age_min", "age_max", "bbox", "release", "sort", "page", "per_page",
+	"sinuosity_min", "sinuosity_max", "width_min", "width_max", "age_min", "age_max", "bbox", "release", "private", "sort", "page", "per_page",
 }
 
 // ChoiceParameters are those of FilterParameters that may be repeated; each is
@@ -140,6 +140,11 @@ func (f *Filter) parseSingle(name, v string) error {
 			return badParameter(name, strconv.Quote(Clip(v))+" is not the name of a release", "letters, digits, points, dashes and underscores, at most 64")
 		}
 		f.Release = v
+	case "private":
+		if v != "yes" && v != "no" {
+			return badParameter(name, strconv.Quote(Clip(v))+" is not allowed", "yes, or no for the rows that everybody sees")
+		}
+		f.WithoutPrivate = v == "no"
 	case "sort":
 		if _, ok := ColumnByName(strings.TrimPrefix(v, "-")); !ok {
 			return badParameter(name, strconv.Quote(Clip(v))+" is not a column", "a column, with - before it for descending; one of: "+strings.Join(ColumnNames(), ", "))
@@ -252,6 +257,9 @@ func (f Filter) Values() url.Values {
 		set("bbox", f.BBox.String())
 	}
 	set("release", f.Release)
+	if f.WithoutPrivate {
+		q.Set("private", "no")
+	}
 	set("sort", f.Sort)
 	if f.Page > 1 {
 		set("page", strconv.Itoa(f.Page))

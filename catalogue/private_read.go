@@ -115,7 +115,9 @@ func seenBy(ctx context.Context, q querier, v viewer) (querier, error) {
 	first := func(what string) string {
 		return "SELECT min(o.id) FROM main.hidden_rows o WHERE " + what + " AND " + v.sees("o")
 	}
-	system, source := "coalesce((SELECT y.id FROM main.systems y WHERE y.slug = h.slug), -h.system_key)", "(SELECT k.id FROM main.sources k WHERE k.citation = h.source AND k.doi = h.source_doi)"
+	// A system that was merged into another answers with that one.
+	system, source := "coalesce((WITH RECURSIVE chain (id) AS (SELECT y.id FROM main.systems y WHERE y.slug = h.slug UNION SELECT g.into_id FROM chain c JOIN main.merged_systems g ON g.system_id = c.id)"+
+		" SELECT id FROM chain WHERE id NOT IN (SELECT g.system_id FROM main.merged_systems g)), -h.system_key)", "(SELECT k.id FROM main.sources k WHERE k.citation = h.source AND k.doi = h.source_doi)"
 	if cited {
 		source = "coalesce(" + source + ", -(" + first("o.source = h.source AND o.source_doi = h.source_doi") + "))"
 	}

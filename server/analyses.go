@@ -50,6 +50,8 @@ func (a *App) freeze(c echo.Context) error {
 	if err != nil {
 		return err
 	}
+	// What is frozen is for everybody to check: private rows are left out of it.
+	withoutPrivate(c)
 	ctx := c.Request().Context()
 	revision, err := a.store.Revision(ctx)
 	if err != nil {
@@ -88,7 +90,11 @@ func (a *App) freeze(c echo.Context) error {
 	if err != nil {
 		return err
 	}
-	a.notice(c, "The analysis is kept. Its address will give these digits again whatever becomes of the catalogue.")
+	said := "The analysis is kept. Its address will give these digits again whatever becomes of the catalogue."
+	if c.Get(privateLeftOut) == true {
+		said += " It is fitted without private rows, which others could not check."
+	}
+	a.notice(c, said)
 	return c.Redirect(http.StatusSeeOther, "/analyses/"+url.PathEscape(name))
 }
 

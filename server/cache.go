@@ -3,6 +3,8 @@ package main
 import (
 	"context"
 	"sync"
+
+	"fathombend/catalogue"
 )
 
 // cache keeps the newest answers by key; equal questions asked at the same
@@ -23,9 +25,11 @@ type cached struct {
 
 func newCache(limit int) *cache { return &cache{limit: limit, held: map[string]*cached{}} }
 
-// do returns the value under key, computing it if needed. The computation is
+// do returns the value under key, computing it if needed. What one person sees
+// beside everybody is kept under a key of that person's own. The computation is
 // not cancelled when the first asker leaves, since others may wait for it.
 func (c *cache) do(ctx context.Context, key string, compute func(context.Context) (any, error)) (any, error) {
+	key = catalogue.ViewKey(ctx) + key
 	c.mu.Lock()
 	e, ok := c.held[key]
 	if !ok {

@@ -102,7 +102,7 @@ func (a *App) chartAnswer(ctx context.Context, f catalogue.Filter) (*chartAnswer
 			out.rows = append(out.rows, r)
 			out.items = append(out.items, views.ChartItem{
 				MeridianItem: meridianItem(r), Lat: r.LatitudeDeg.V, Lon: catalogue.NormalLongitude(r.LongitudeDeg.V),
-				Line: len(r.WindowSinuosities) > 0, Invented: r.Invented,
+				Line: len(r.WindowSinuosities) > 0, Invented: r.Invented, Private: r.Private, Coarse: r.Coarse,
 			})
 		}
 		return out, nil
@@ -193,6 +193,8 @@ type chartSystemJSON struct {
 	Grade          string   `json:"grade"`
 	Step           int      `json:"step"`
 	Invented       bool     `json:"invented"`
+	Private        bool     `json:"private,omitempty"`
+	PlaceRounded   bool     `json:"place_rounded,omitempty"`
 }
 
 type chartJSON struct {
@@ -201,6 +203,7 @@ type chartJSON struct {
 	Steps        []views.ChartStep `json:"steps"`
 	WithoutPlace int               `json:"without_place"`
 	InventedRows int               `json:"invented_rows"`
+	PrivateRows  int               `json:"private_rows,omitempty"`
 	Systems      []chartSystemJSON `json:"systems"`
 }
 
@@ -221,10 +224,13 @@ func (a *App) chartJSON(c echo.Context) error {
 		if it.Invented {
 			out.InventedRows++
 		}
+		if it.Private {
+			out.PrivateRows++
+		}
 		out.Systems = append(out.Systems, chartSystemJSON{
 			Slug: it.Slug, Name: it.Name, Latitude: it.Lat, Longitude: it.Lon, Palaeolatitude: orNull(r.PalaeolatitudeDeg), AgeMa: orNull(r.AgeMa),
 			Ancient: it.Ancient, Kind: it.Kind, Sinuosity: orNull(r.Sinuosity), SinuosityKind: it.PKind, ValleySlope: orNull(r.ValleySlope),
-			WidthM: orNull(r.ChannelWidthM), Grade: it.Grade, Step: it.Step, Invented: it.Invented,
+			WidthM: orNull(r.ChannelWidthM), Grade: it.Grade, Step: it.Step, Invented: it.Invented, Private: it.Private, PlaceRounded: it.Coarse,
 		})
 	}
 	return writeJSON(c, http.StatusOK, out)

@@ -30,7 +30,7 @@ var itemParameters = []string{"limit", "datetime", "after", "before"}
 func itemFilterParameters() []string {
 	var out []string
 	for _, p := range catalogue.FilterParameters {
-		if p != "sort" && p != "page" && p != "per_page" {
+		if p != "private" && p != "sort" && p != "page" && p != "per_page" {
 			out = append(out, p)
 		}
 	}

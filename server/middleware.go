@@ -14,6 +14,7 @@ import (
 
 	"github.com/labstack/echo/v4"
 
+	"fathombend/catalogue"
 	"fathombend/catalogue/planform"
 	"fathombend/views"
 )
@@ -27,7 +28,7 @@ const (
 // middleware hangs what every request passes through, outermost first. The
 // log stands outside the error handler's call so that it sees the status sent.
 func (a *App) middleware(e *echo.Echo) {
-	e.Use(a.identify, a.logged, securityHeaders, a.secured, a.recovered, sameOrigin(), limitBody, a.conditional, compressed)
+	e.Use(a.identify, a.logged, securityHeaders, a.secured, a.recovered, sameOrigin(), limitBody, a.lifted, a.conditional, compressed, a.seen)
 }
 
 // identify gives the request the id that the log and an error page share.
@@ -165,6 +166,7 @@ func (a *App) page(c echo.Context, title, nav string) views.Page {
 	}
 	p.InventedRows = a.invented(ctx)
 	p.Base = a.baseAddress(c)
+	p.SeesPrivate, p.LeavesPrivate = catalogue.SeesPrivate(ctx), c.Get(privateLeftOut) == true
 	a.nameReleaseOf(ctx, &p)
 	if u := a.user(c); u != nil {
 		p.User = &views.User{Name: u.Name, Credit: u.Credit, Role: u.Role}

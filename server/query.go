@@ -20,13 +20,22 @@ func params(c echo.Context) (url.Values, error) {
 		if err := c.Request().ParseForm(); err != nil {
 			return nil, &badInput{"body", "the form could not be read. Expected application/x-www-form-urlencoded"}
 		}
-		return c.Request().PostForm, nil
+		return ownView(c, c.Request().PostForm), nil
 	}
 	q, err := url.ParseQuery(c.Request().URL.RawQuery)
 	if err != nil {
 		return nil, &badInput{"query", "the address holds a broken escape (%). Expected %25 for a plain %"}
 	}
-	return q, nil
+	return ownView(c, q), nil
+}
+
+// ownView honours private=no wherever a question is read. Other values are for
+// ParseFilter to refuse.
+func ownView(c echo.Context, q url.Values) url.Values {
+	if strings.TrimSpace(q.Get("private")) == "no" {
+		withoutPrivate(c)
+	}
+	return q
 }
 
 // allow refuses every parameter that is not in one of the lists, naming it and

@@ -31,7 +31,11 @@ func appendRow(b []byte, r *catalogue.Row) []byte {
 		b = append(b, ',')
 	}
 	b = append(b, `"invented":`...)
-	return strconv.AppendBool(b, r.Invented)
+	b = strconv.AppendBool(b, r.Invented)
+	for _, m := range seenMarks(r) {
+		b = append(b, `,"`+m.name+`":true`...)
+	}
+	return b
 }
 
 func appendNumber(b []byte, n catalogue.Number) []byte {

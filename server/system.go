@@ -28,7 +28,7 @@ func (a *App) system(c echo.Context) error {
 	if err != nil {
 		return err
 	}
-	if err := allow(q, []string{"release"}); err != nil {
+	if err := allow(q, []string{"release", "private"}); err != nil {
 		return err
 	}
 	f, err := filterOf(q)

@@ -39,6 +39,7 @@ type systemDetailJSON struct {
 	systemJSON
 	Revision     int              `json:"revision"`
 	InventedRows int              `json:"invented_rows"`
+	PrivateRows  int              `json:"private_rows,omitempty"`
 	Sources      []sourceJSON     `json:"sources"`
 	Centrelines  []centrelineJSON `json:"centrelines"`
 	History      []revisionJSON   `json:"history"`
@@ -50,6 +51,9 @@ func (a *App) systemJSON(c echo.Context, d *catalogue.Detail) error {
 		if r.Invented {
 			out.Invented = true
 			out.InventedRows++
+		}
+		if r.Private {
+			out.PrivateRows++
 		}
 		out.Measurements = append(out.Measurements, rowJSON(&r))
 	}
@@ -80,9 +84,7 @@ func systemFeatures(d *catalogue.Detail) featureCollection {
 	for i := range d.Measurements {
 		r := &d.Measurements[i]
 		byID[r.Measurement] = r
-		if r.Invented {
-			out.InventedRows++
-		}
+		out.count(r)
 		out.Features = append(out.Features, pointFeature(r.Measurement, r))
 	}
 	for _, l := range d.Centrelines {
@@ -91,7 +93,7 @@ func systemFeatures(d *catalogue.Detail) featureCollection {
 			{"window_sinuosities", finiteValue(l.Sinuosities)},
 		}}
 		if r := byID[l.Measurement]; r != nil {
-			f.Properties = append(f.Properties, orderedField{"invented", r.Invented})
+			f.Properties = append(append(f.Properties, orderedField{"invented", r.Invented}), seenMarks(r)...)
 		}
 		out.Features = append(out.Features, f)
 	}

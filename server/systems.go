@@ -127,6 +127,7 @@ type systemsAnswer struct {
 	Page         int             `json:"page"`
 	PerPage      int             `json:"per_page"`
 	InventedRows int             `json:"invented_rows"`
+	PrivateRows  int             `json:"private_rows,omitempty"`
 	Dimensions   []dimensionJSON `json:"dimensions"`
 	Systems      []systemJSON    `json:"systems"`
 }
@@ -172,6 +173,9 @@ func (a *App) systemsJSON(c echo.Context) error {
 				j.Invented = true
 				answer.InventedRows++
 			}
+			if r.Private {
+				answer.PrivateRows++
+			}
 			j.Measurements = append(j.Measurements, rowJSON(&r))
 		}
 		answer.Systems = append(answer.Systems, j)
@@ -197,5 +201,17 @@ func rowJSON(r *catalogue.Row) orderedObject {
 		}
 		out = append(out, orderedField{col.Name, v})
 	}
-	return append(out, orderedField{"invented", r.Invented})
+	return append(append(out, orderedField{"invented", r.Invented}), seenMarks(r)...)
+}
+
+// seenMarks are the members of a row that not everybody sees as it is: absent
+// from all others.
+func seenMarks(r *catalogue.Row) (out orderedObject) {
+	if r.Private {
+		out = append(out, orderedField{"private", true})
+	}
+	if r.Coarse {
+		out = append(out, orderedField{"place_rounded", true})
+	}
+	return out
 }

@@ -23,6 +23,17 @@ type featureCollection struct {
 	Returned     int       `json:"numberReturned"`
 	Features     []feature `json:"features"`
 	InventedRows int       `json:"invented_rows"`
+	PrivateRows  int       `json:"private_rows,omitempty"`
+}
+
+// count adds a row to the counts of what is not everybody's survey.
+func (f *featureCollection) count(r *catalogue.Row) {
+	if r.Invented {
+		f.InventedRows++
+	}
+	if r.Private {
+		f.PrivateRows++
+	}
 }
 
 type pointGeometry struct {
@@ -52,15 +63,13 @@ func (a *App) systemsGeoJSON(c echo.Context) error {
 	return a.stream(c, func(w *patientWriter) error {
 		b := append([]byte(`{"type":"FeatureCollection","numberMatched":`), itoa(matched)...)
 		b = append(b, `,"features":[`...)
-		returned, invented := 0, 0
+		returned, of := 0, featureCollection{}
 		err := a.store.EachSystem(ctx, f, func(r catalogue.Row) error {
 			if returned > 0 {
 				b = append(b, ',')
 			}
 			returned++
-			if r.Invented {
-				invented++
-			}
+			of.count(&r)
 			b = appendFeature(b, r.System, &r)
 			if len(b) < 32<<10 {
 				return nil
@@ -72,7 +81,11 @@ func (a *App) systemsGeoJSON(c echo.Context) error {
 		if err != nil {
 			return err
 		}
-		b = append(b, `],"numberReturned":`+itoa(returned)+`,"invented_rows":`+itoa(invented)+"}\n"...)
+		b = append(b, `],"numberReturned":`+itoa(returned)+`,"invented_rows":`+itoa(of.InventedRows)...)
+		if of.PrivateRows > 0 {
+			b = append(b, `,"private_rows":`+itoa(of.PrivateRows)...)
+		}
+		b = append(b, "}\n"...)
 		_, err = w.Write(b)
 		return err
 	})
@@ -100,9 +113,7 @@ func (a *App) systemsGeoJSONPage(c echo.Context, f catalogue.Filter) error {
 	out := featureCollection{Type: "FeatureCollection", Matched: total, Returned: len(systems), Features: []feature{}}
 	for _, s := range systems {
 		best := s.Best()
-		if best.Invented {
-			out.InventedRows++
-		}
+		out.count(&best)
 		out.Features = append(out.Features, pointFeature(s.Slug, &best))
 	}
 	return writeGeoJSON(c, out)

@@ -22,7 +22,7 @@ func statsRows(rows []catalogue.Row, climate earth.ClimateTable) []stats.Row {
 		out[i] = stats.Row{
 			ID: r.Measurement, System: r.System, SystemName: r.SystemName,
 			ParentDeposit: r.ParentDeposit, Source: r.Source, Basin: r.Basin,
-			Kind: r.Kind, Invented: r.Invented, SinuosityKind: r.SinuosityKind,
+			Kind: r.Kind, Invented: r.Invented, Private: r.Private, SinuosityKind: r.SinuosityKind,
 			MeasuredLine: r.MeasuredLine, Grade: r.Grade, Order: i,
 			Sinuosity: num(r.Sinuosity), SinuositySE: num(r.SinuositySE), Windows: r.WindowSinuosities,
 			LatitudeDeg: num(r.LatitudeDeg), LongitudeDeg: num(r.LongitudeDeg), AgeMa: num(r.AgeMa),
@@ -77,7 +77,8 @@ func (a *App) analysisKey(ctx context.Context, f catalogue.Filter, req stats.Req
 		return "", err
 	}
 	req.Workers = 0
-	return fmt.Sprintf("regression|%d|%s|%+v", rev, fitFilter(f, req.Group).Values().Encode(), req), nil
+	// The view is part of it here too: the key also names the work on its way.
+	return fmt.Sprintf("%sregression|%d|%s|%+v", catalogue.ViewKey(ctx), rev, fitFilter(f, req.Group).Values().Encode(), req), nil
 }
 
 // analyse answers a regression question from the cache of this catalogue

@@ -22,6 +22,9 @@ func Analyse(ctx context.Context, rows []Row, req Request, progress func(float64
 		if used[i].Invented {
 			a.InventedRows++
 		}
+		if used[i].Private {
+			a.PrivateRows++
+		}
 	}
 	studies, err := runStudies(ctx, used, all, &req, progress)
 	if err != nil {

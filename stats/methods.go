@@ -21,6 +21,9 @@ func (s *study) methodsText(a *Analysis) string {
 	if r.Recomputed != "" {
 		say("Sinuosity was measured anew on the stored centrelines, all with one set of settings (recomputation %s%s).", r.Recomputed, prefixed(": ", r.RecomputedAs))
 	}
+	if a.PrivateRows > 0 {
+		say("%s private: only their owner and those the owner names see them.", plural(a.PrivateRows, "row is", "rows are"))
+	}
 	if a.InventedRows > 0 {
 		say("%s invented.", plural(a.InventedRows, "row is", "rows are"))
 	}

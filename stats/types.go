@@ -18,6 +18,7 @@ type Row struct {
 
 	Kind          string // submarine, river, lacustrine
 	Invented      bool
+	Private       bool   // only some people see it
 	SinuosityKind string // peak, p90, mean, bend, reach, unknown
 	MeasuredLine  string // thalweg, centreline, levee_crest, unknown
 	Grade         string // remeasured, surveyed, traced, quoted
@@ -118,6 +119,7 @@ type Analysis struct {
 	Systems      int            `json:"systems"`
 	Dropped      []Dropped      `json:"dropped"`
 	InventedRows int            `json:"invented_rows"`
+	PrivateRows  int            `json:"private_rows,omitempty"` // that only some people see, the asker among them
 	Settings     map[string]any `json:"settings"`
 	Models       []Model        `json:"models"`
 	Comparisons  []Comparison   `json:"comparisons"`

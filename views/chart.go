@@ -35,6 +35,8 @@ type ChartItem struct {
 	Step         int     // class of its colour
 	Line         bool    // a centreline is stored
 	Invented     bool
+	Private      bool // only some people see it
+	Coarse       bool // its place is rounded
 }
 
 // ChartLine is a stored centreline, thinned: longitude and latitude.
@@ -161,6 +163,12 @@ func (i ChartItem) title(step ChartStep) string {
 	if i.Invented {
 		s += ", invented"
 	}
+	if i.Private {
+		s += ", private"
+	}
+	if i.Coarse {
+		s += ", place rounded to 1 degree"
+	}
 	return s
 }
 
@@ -240,6 +248,15 @@ func (p ChartPage) captionEnd() string {
 	}
 	if k := p.inventedItems(); k > 0 {
 		s += " " + plural(k, "system is", "systems are") + " invented."
+	}
+	k := 0
+	for _, i := range p.Items {
+		if i.Private {
+			k++
+		}
+	}
+	if k > 0 {
+		s += " " + plural(k, "system is", "systems are") + " private."
 	}
 	return s
 }

@@ -150,6 +150,9 @@ func (p ExpectationPage) explanationCaption() string {
 	if p.Result.InventedRows > 0 {
 		s += " " + countText(p.Result.InventedRows, "row is", "rows are") + " invented."
 	}
+	if p.Result.PrivateRows > 0 {
+		s += " " + countText(p.Result.PrivateRows, "row is", "rows are") + " private."
+	}
 	return s
 }
 

@@ -126,6 +126,8 @@ func filterText(name, v string) string {
 		return rangeLabel(base) + " to " + v
 	}
 	switch name {
+	case "private":
+		return "without private rows"
 	case "q":
 		return "words: " + v
 	case "bbox":

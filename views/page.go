@@ -15,23 +15,27 @@ type Page struct {
 	Nav          string     // which way in is current: meridian, systems, chart, regression, expectation, measure, contribute, review, methods
 	InventedRows int        // invented rows in the catalogue; > 0 shows the banner
 	User         *User      // nil = signed out
-	ReadOnly     bool
-	RequestID    string
-	Pending      int    // submissions waiting, for curators
-	JSON         string // addresses of the data twins, "" = none
-	CSV          string
-	GeoJSON      string
-	Notice       string // one sentence shown once
-	Version      string
-	Assets       map[string]string // file name under static/ -> address with its content hash
-	Wide         bool              // the main column takes the full width
-	Base         string            // how the reader reached this program, without a path
-	Release      string            // the page shows this release, "" = the catalogue as it is
-	Live         string            // address of the same view of the catalogue as it is
-	LinkedData   string            // JSON-LD about the page, "" = none
-	Refusals     []Refusal         // what of the address or form cannot be used
-	Fields       []string          // the page's own settings that have a field
-	TypedFilter  url.Values        // the address as typed, when something of it was refused
+	SeesPrivate  bool       // the page may hold private rows of this person
+	// LeavesPrivate: this person sees private rows and asked for what everybody
+	// sees.
+	LeavesPrivate bool
+	ReadOnly      bool
+	RequestID     string
+	Pending       int    // submissions waiting, for curators
+	JSON          string // addresses of the data twins, "" = none
+	CSV           string
+	GeoJSON       string
+	Notice        string // one sentence shown once
+	Version       string
+	Assets        map[string]string // file name under static/ -> address with its content hash
+	Wide          bool              // the main column takes the full width
+	Base          string            // how the reader reached this program, without a path
+	Release       string            // the page shows this release, "" = the catalogue as it is
+	Live          string            // address of the same view of the catalogue as it is
+	LinkedData    string            // JSON-LD about the page, "" = none
+	Refusals      []Refusal         // what of the address or form cannot be used
+	Fields        []string          // the page's own settings that have a field
+	TypedFilter   url.Values        // the address as typed, when something of it was refused
 }
 
 // User is who is signed in.

@@ -251,6 +251,9 @@ func rowPoint(r stats.UsedRow, other string) Point {
 	if r.Invented {
 		words = append(words, "invented")
 	}
+	if r.Private {
+		words = append(words, "private")
+	}
 	q.Title = strings.Join(words, ", ")
 	return q
 }

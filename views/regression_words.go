@@ -346,6 +346,9 @@ func (p RegressionPage) mainCaption() string {
 	if a.InventedRows > 0 {
 		s += " " + countText(a.InventedRows, "row is", "rows are") + " invented."
 	}
+	if a.PrivateRows > 0 {
+		s += " " + countText(a.PrivateRows, "row is", "rows are") + " private."
+	}
 	return s + " The axis follows the rows; a band that leaves the frame goes on."
 }
 

@@ -19,7 +19,8 @@ type DeepTimeResult struct {
 	AncientRows     int              `json:"ancient_rows"`
 	AncientClusters int              `json:"ancient_clusters"`
 	InventedRows    int              `json:"invented_rows"`
-	Scatter         float64          `json:"scatter"` // standard deviation of ln(P - 1) between new systems
+	PrivateRows     int              `json:"private_rows,omitempty"` // that only some people see
+	Scatter         float64          `json:"scatter"`                // standard deviation of ln(P - 1) between new systems
 	Comparisons     []DeepComparison `json:"comparisons"`
 	Needed          []Needed         `json:"needed"`
 	Headline        string           `json:"headline"`
@@ -70,7 +71,7 @@ func DeepTime(ctx context.Context, rows []stats.Row, o Options) (*DeepTimeResult
 		return nil, err
 	}
 	f := newFrame(rows, o)
-	res := &DeepTimeResult{Response: f.response, MeasuredLine: f.line, InventedRows: f.invented, Scatter: math.NaN(),
+	res := &DeepTimeResult{Response: f.response, MeasuredLine: f.line, InventedRows: f.invented, PrivateRows: f.private, Scatter: math.NaN(),
 		Cautions: []string{
 			"Ancient systems were found by other methods and kept by other chances than modern ones: survey and preservation are confounded with age, and so with climate state.",
 			"A global icehouse is not ice at this margin, and relict channels ran at a glacial lowstand: supply counts as it was when the channel was active.",

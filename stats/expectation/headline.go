@@ -18,7 +18,7 @@ func (f *Fits) frameOf(t *Target, p *place, d *draws) *Result {
 		Coriolis:       math.Abs(earth.Coriolis(earth.Omega*p.ratio, p.lat.Value)),
 		Response:       f.frame.response, MeasuredLine: f.frame.line,
 		ResponseText: responseText(f.frame.response, f.frame.line),
-		Rows:         len(f.frame.obs), Clusters: len(f.frame.clusters), InventedRows: f.frame.invented,
+		Rows:         len(f.frame.obs), Clusters: len(f.frame.clusters), InventedRows: f.frame.invented, PrivateRows: f.frame.private,
 		ClimateState: stateNames[d.point.state],
 		Notes:        slices.Concat(p.notes, f.notes(t, p, d)), Cautions: Cautions(),
 		Settings: map[string]any{

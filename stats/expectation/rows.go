@@ -54,6 +54,7 @@ type frame struct {
 	notes    []string
 	dropped  map[string]int
 	invented int
+	private  int
 	ones     float64 // share of P = 1, clusters alike
 	all      []stats.Row
 	climate  earth.ClimateTable
@@ -180,6 +181,9 @@ func newFrame(rows []stats.Row, o Options) *frame {
 		}
 		if rows[i].Invented {
 			f.invented++
+		}
+		if rows[i].Private {
+			f.private++
 		}
 		f.obs = append(f.obs, ob)
 		clusterNames = append(clusterNames, clusterOf(&rows[i], o.Cluster))

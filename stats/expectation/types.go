@@ -66,6 +66,7 @@ type Result struct {
 	Rows                     int            `json:"rows"`
 	Clusters                 int            `json:"clusters"`
 	InventedRows             int            `json:"invented_rows"`
+	PrivateRows              int            `json:"private_rows,omitempty"` // that only some people see
 	Explanations             []Explanation  `json:"explanations"`
 	Combined                 Explanation    `json:"combined"`
 	Observed                 *Observed      `json:"observed"`
