@@ -203,3 +203,33 @@ func TestDemoIsTemporaryAndSaid(t *testing.T) {
 		}
 	}
 }
+
+func TestInventCommand(t *testing.T) {
+	file := filepath.Join(t.TempDir(), "large.db")
+	out := mustRun(t, "", "invent", "-catalogue", file, "-systems", "200")
+	if !strings.Contains(out, "200 systems") || !strings.Contains(out, "every one invented") {
+		t.Errorf("invent said %q", out)
+	}
+	table := mustRun(t, "", "export", "-catalogue", file)
+	rows := strings.Split(strings.TrimSpace(table), "\n")[1:]
+	for _, row := range rows {
+		if !strings.Contains(row, "Invented") {
+			t.Fatalf("a row does not say that it is invented: %s", row)
+		}
+	}
+	if len(rows) < 400 || len(rows) > 800 {
+		t.Errorf("%d measurements of 200 systems, want about three each", len(rows))
+	}
+	// A catalogue that exists is never added to.
+	if code, _, errOut := runCommand("", "invent", "-catalogue", file); code != exitProblem || !strings.Contains(errOut, "exists") {
+		t.Errorf("over a file: exit %d: %s", code, errOut)
+	}
+	for _, args := range [][]string{{}, {"-catalogue", file + ".new", "-systems", "0"}, {"-catalogue", file + ".new", "-demo-law", "luck"}, {"-catalogue", file + ".new", "more"}} {
+		if code, _, _ := runCommand("", append([]string{"invent"}, args...)...); code != exitBadCall {
+			t.Errorf("invent %v: exit %d, want %d", args, code, exitBadCall)
+		}
+	}
+	if _, err := os.Stat(file + ".new"); err == nil {
+		t.Error("a refused call left a file")
+	}
+}

@@ -339,7 +339,7 @@ func (b *batch) expect(ctx context.Context, row []string) (*expectation.Result, 
 	if err != nil {
 		return nil, err
 	}
-	return fits.Expect(ctx, t)
+	return fits.ExpectCombined(ctx, t)
 }
 
 // rowError is what the owner of the file may read about err: the same sentence

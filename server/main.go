@@ -42,6 +42,7 @@ func commands() []command {
 		{"backup", "copy a catalogue while it is in use", runBackup},
 		{"restore", "make a catalogue from a backup", runRestore},
 		{"check", "look for faults and odd values", runCheck},
+		{"invent", "write a large invented catalogue, for trials of speed", runInvent},
 	}
 }
 

@@ -44,6 +44,21 @@ func BenchmarkExpectMany100(b *testing.B) {
 	}
 }
 
+// 100 targets of a file, as /expectation.csv answers them, one core.
+func BenchmarkExpectCombined100(b *testing.B) {
+	f := mustFit(b, plainLaw.draw(3), Options{})
+	b.ReportAllocs()
+	for b.Loop() {
+		for i := range 100 {
+			q := latitude(float64(i)*0.8, 3)
+			q.Age, q.AgeSE = 70, 3
+			if _, err := f.ExpectCombined(context.Background(), q); err != nil {
+				b.Fatal(err)
+			}
+		}
+	}
+}
+
 func BenchmarkThroughTime(b *testing.B) {
 	f := mustFit(b, plainLaw.draw(3), Options{})
 	q := NewTarget()
@@ -64,7 +79,7 @@ func BenchmarkDeepTime(b *testing.B) {
 	}
 }
 
-// A catalogue of 2,000 rows in 700 deposits.
+// A catalogue of 2,000 rows in 700 deposits, of which MostDeposits are fitted on.
 func BenchmarkFitLarge(b *testing.B) {
 	l := plainLaw
 	l.deposits = 700

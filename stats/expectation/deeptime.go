@@ -70,7 +70,7 @@ func DeepTime(ctx context.Context, rows []stats.Row, o Options) (*DeepTimeResult
 	if err != nil {
 		return nil, err
 	}
-	f := newFrame(rows, o)
+	f := newFrame(rows, o, 0)
 	res := &DeepTimeResult{Response: f.response, MeasuredLine: f.line, InventedRows: f.invented, PrivateRows: f.private, Scatter: math.NaN(),
 		Cautions: []string{
 			"Ancient systems were found by other methods and kept by other chances than modern ones: survey and preservation are confounded with age, and so with climate state.",

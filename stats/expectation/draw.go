@@ -2,9 +2,7 @@ package expectation
 
 import (
 	"math"
-	"math/rand/v2"
 	"slices"
-	"sort"
 )
 
 // draws are the draws of one target: its inputs, and the sinuosities they give
@@ -15,12 +13,10 @@ type draws struct {
 	in     []inputs
 	lat    []float64
 	f      []float64 // |f|, s-1
-	set    []float64 // uniform: which parameter set
-	res    []float64 // uniform: which residual
-	one    []float64 // uniform: is P = 1
-	p      [][]float64
-	mix    mixture // of the weighted explanations
-	donors donors
+	chance []chance
+	p      [][]float64 // by explanation, sorted; nil = not asked for
+	mix    mixture     // of the weighted explanations
+	donors *donors
 	moves  moves
 	parts  []map[string]float64 // of the variance of ln(P - 1), by explanation
 }
@@ -33,9 +29,15 @@ type moves struct{ lat, age, day, slope, supply bool }
 type donors struct {
 	rows  []int
 	total []float64 // cumulative weight
+	guide []int     // where the search for each of as many equal shares begins
 }
 
-func (f *Fits) donorsFor(point *inputs) donors {
+func (f *Fits) donorsFor(point *inputs) *donors {
+	key := openness{point.level, !math.IsNaN(point.logSlope)}
+	return f.memory.donorsOf(key, func() donors { return f.findDonors(point) })
+}
+
+func (f *Fits) findDonors(point *inputs) donors {
 	collect := func(fits func(*observation) bool) donors {
 		var d donors
 		var sum float64
@@ -65,9 +67,31 @@ func (f *Fits) donorsFor(point *inputs) donors {
 	return d
 }
 
+// index prepares pick.
+func (d *donors) index() {
+	n := len(d.rows)
+	d.guide = make([]int, n+1)
+	k := 0
+	for c := range d.guide {
+		for k < n && d.total[k] < float64(c)/float64(n)*d.total[n-1] {
+			k++
+		}
+		d.guide[c] = k
+	}
+}
+
+// pick is the first row whose cumulative weight reaches the share u.
 func (d *donors) pick(u float64) int {
-	k := sort.SearchFloat64s(d.total, u*d.total[len(d.total)-1])
-	return d.rows[min(k, len(d.rows)-1)]
+	n := len(d.rows)
+	x := u * d.total[n-1]
+	k := d.guide[int(u*float64(n))]
+	for k > 0 && d.total[k-1] >= x {
+		k--
+	}
+	for k < n && d.total[k] < x {
+		k++
+	}
+	return d.rows[min(k, n-1)]
 }
 
 // fill puts a donor's slope and supply where the target has none.
@@ -101,59 +125,62 @@ func (f *Fits) pointOf(t *Target, p *place) inputs {
 }
 
 // draw makes a target's draws; draw j comes from its own stream PCG(seed, j),
-// so the answer does not depend on the number of cores.
-func (f *Fits) draw(t *Target, p *place) *draws {
+// so the answer does not depend on the number of cores. With all, every
+// explanation is drawn with the parts of its variance; without, those alone
+// that have a weight.
+func (f *Fits) draw(t *Target, p *place, all bool) *draws {
 	d := &draws{point: f.pointOf(t, p), n: t.Draws}
 	d.donors = f.donorsFor(&d.point)
 	d.moves = moves{
 		lat: p.lat.SE > 0, age: p.age.SE > 0, day: p.day.High > p.day.Low,
 		slope: math.IsNaN(d.point.logSlope), supply: slices.Contains(d.point.level[:], -1),
 	}
+	d.chance = f.memory.chances(t.Seed, d.n)
 	d.in = make([]inputs, d.n)
-	block := make([]float64, 5*d.n)
-	d.lat, d.f, d.set, d.res, d.one = block[:d.n], block[d.n:2*d.n], block[2*d.n:3*d.n], block[3*d.n:4*d.n], block[4*d.n:]
-	var pcg rand.PCG
-	rng := rand.New(&pcg)
+	block := make([]float64, 2*d.n)
+	d.lat, d.f = block[:d.n], block[d.n:]
 	for j := range d.n {
-		pcg.Seed(t.Seed, uint64(j))
-		d.set[j], d.res[j], d.one[j] = rng.Float64(), rng.Float64(), rng.Float64()
-		u := rng.Float64()
-		at := p.draw(rng, true, true, true)
-		in := d.point
+		at := p.at(&d.chance[j].where, true, true, true)
+		in := &d.in[j]
+		*in = d.point
 		in.sin, in.ratio = sinOf(at.lat), at.ratio
 		if at.age != p.age.Value {
 			in.state = stateAt(f.frame.climate, at.age)
 		}
-		d.donors.fill(f.frame, &in, u, true, true)
-		d.in[j], d.lat[j] = in, at.lat
+		d.donors.fill(f.frame, in, d.chance[j].donor, true, true)
+		d.lat[j] = at.lat
 		d.f[j] = fUnit * 1e-4 * in.ratio * in.sin
 	}
-	f.outcomes(d)
+	f.outcomes(d, all)
 	return d
 }
 
 // outcomes turns the draws into sinuosities, explanation by explanation:
 // 1 + exp(x'b* + s r*), or 1 with the share of rows that hold P = 1.
-func (f *Fits) outcomes(d *draws) {
-	d.mix.alpha = f.alpha
+func (f *Fits) outcomes(d *draws, all bool) {
+	d.mix.alpha, d.mix.known = f.alpha, f.inner
 	scratch := make([]float64, d.n)
 	d.p, d.parts = make([][]float64, len(f.fits)), make([]map[string]float64, len(f.fits))
 	for k, t := range f.fits {
-		if t.failure != "" {
+		if t.failure != "" || (!all && f.weights[k] == 0) {
 			continue
 		}
 		out := make([]float64, d.n)
 		for j := range out {
-			if d.one[j] < f.frame.ones {
+			u := &d.chance[j]
+			if u.one < f.frame.ones {
 				out[j] = 1
 				continue
 			}
-			b := int(d.set[j] * float64(t.sets))
-			y := t.value(&d.in[j], t.boot[b*t.p:(b+1)*t.p]) + t.s*t.pool[int(d.res[j]*float64(len(t.pool)))]
+			b := int(u.set * float64(t.sets))
+			y := t.value(&d.in[j], t.boot[b*t.p:(b+1)*t.p]) + t.s*t.pool[int(u.res*float64(len(t.pool)))]
 			out[j] = 1 + math.Exp(math.Min(y, 12))
 		}
 		sortPositive(out, scratch)
-		d.p[k], d.parts[k] = out, t.variances(d)
+		d.p[k] = out
+		if all {
+			d.parts[k] = t.variances(d)
+		}
 		if f.weights[k] > 0 {
 			d.mix.add(out, f.weights[k])
 		}
@@ -188,6 +215,16 @@ func (f *Fits) explain(d *draws, res *Result) {
 		}
 		res.Explanations = append(res.Explanations, e)
 	}
+	if res.Combined = f.combined(d); res.Combined.Failure != "" {
+		return
+	}
+	res.Combined.Jackknife = f.jackknife(d, func(j int) float64 { return f.weights[j] })
+	parts["explanation"] = math.Max(0, meanSquare-mean*mean)
+	res.Combined.Parts = shares(parts)
+}
+
+// combined is the expectation of all explanations together.
+func (f *Fits) combined(d *draws) Explanation {
 	c := Explanation{Name: "combined", Text: "All explanations together, by their weights; the spread of the mixture is set by what it held when each deposit was left out, because a mixture of rival forecasts is wider than it should be (Gneiting & Ranjan, Electron. J. Stat. 7:1747 (2013)).", Weight: 1, Score: math.NaN(),
 		Rows: len(f.frame.obs), Clusters: len(f.frame.clusters)}
 	if len(d.mix.draws) == 0 {
@@ -195,14 +232,10 @@ func (f *Fits) explain(d *draws, res *Result) {
 		if len(f.frame.obs) == 0 {
 			c.Failure = "No row with this sinuosity and a latitude is left after filtering. Widen the filter, or ask for another kind of sinuosity."
 		}
-		res.Combined = c
-		return
+		return c
 	}
 	c.Sinuosity, c.Coverage = d.mix.quantiles(), f.together
-	c.Jackknife = f.jackknife(d, func(j int) float64 { return f.weights[j] })
-	parts["explanation"] = math.Max(0, meanSquare-mean*mean)
-	c.Parts = shares(parts)
-	res.Combined = c
+	return c
 }
 
 // variances are the parts of the variance of ln(P - 1) of a new system: by the

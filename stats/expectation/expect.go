@@ -26,7 +26,9 @@ type Fits struct {
 	base     []float64 // base rate of each class, deposits alike
 	hull     [][2]float64
 	systems  []*system
-	sized    [4]sizes // rows with a width, a depth, a slope, a radius and width
+	sized    [4]sizes            // rows with a width, a depth, a slope, a radius and width
+	inner    map[float64]float64 // shares of the plain mixture at the usual quantiles
+	memory   memory
 }
 
 // Options of Fit.
@@ -73,6 +75,10 @@ func CheckClasses(limits []float64) error {
 	return nil
 }
 
+// MostDeposits is how many clusters the explanations are fitted on: leaving
+// each out in turn costs their number times their rows.
+const MostDeposits = 400
+
 // Fit fits every explanation on rows (modern and ancient mixed; it separates
 // them) with its bootstrap parameter sets, leave-one-cluster-out scores,
 // weights and coverage. Rows that are too few are no error: every explanation
@@ -83,7 +89,7 @@ func Fit(ctx context.Context, rows []stats.Row, o Options) (*Fits, error) {
 	if err != nil {
 		return nil, err
 	}
-	f := newFrame(rows, o)
+	f := newFrame(rows, o, MostDeposits)
 	r := newResampling(f, o.Seed)
 	list := models()
 	out := &Fits{options: o, frame: f, fits: make([]*fitted, len(list)), alone: make([]*Coverage, len(list)), scores: make([]float64, len(list))}
@@ -107,6 +113,7 @@ func Fit(ctx context.Context, rows []stats.Row, o Options) (*Fits, error) {
 		out.alone[k] = ch.alone(f, k)
 		out.scores[k] = out.scoreOn(common, k, ch)
 	}
+	out.inner = innerShares(out.alpha)
 	out.baseRates()
 	out.hull, out.systems = hullOf(f), systemsOf(f)
 	for k, has := range []func(*stats.Row) bool{
@@ -174,17 +181,11 @@ func className(limits []float64, k int) string {
 // Expect answers one target. An *InputError names the parameter that cannot be
 // used.
 func (f *Fits) Expect(ctx context.Context, t Target) (*Result, error) {
-	if err := t.Validate(); err != nil {
-		return nil, err
-	}
-	if err := ctx.Err(); err != nil {
-		return nil, err
-	}
-	p, err := locate(&t)
+	p, err := placed(ctx, &t)
 	if err != nil {
 		return nil, err
 	}
-	d := f.draw(&t, p)
+	d := f.draw(&t, p, true)
 	res := f.frameOf(&t, p, d)
 	f.explain(d, res)
 	f.classes(d, res)
@@ -196,4 +197,32 @@ func (f *Fits) Expect(ctx context.Context, t Target) (*Result, error) {
 	res.Extrapolation = f.extrapolation(&t, p, d, res)
 	f.observed(&t, d, res)
 	return res, nil
+}
+
+// ExpectCombined answers one of many targets: where and when, the combined
+// expectation, its classes and what stands beside them, equal to the digit to
+// those of Expect. The single explanations, jackknife and parts, the flow
+// regime, tendencies, nearest systems, dimensions and sensitivity are left out.
+func (f *Fits) ExpectCombined(ctx context.Context, t Target) (*Result, error) {
+	p, err := placed(ctx, &t)
+	if err != nil {
+		return nil, err
+	}
+	d := f.draw(&t, p, false)
+	res := f.frameOf(&t, p, d)
+	res.Combined = f.combined(d)
+	f.classes(d, res)
+	res.Extrapolation = f.extrapolation(&t, p, d, res)
+	f.observed(&t, d, res)
+	return res, nil
+}
+
+func placed(ctx context.Context, t *Target) (*place, error) {
+	if err := t.Validate(); err != nil {
+		return nil, err
+	}
+	if err := ctx.Err(); err != nil {
+		return nil, err
+	}
+	return locate(t)
 }

@@ -262,7 +262,7 @@ func TestStandardisedPeak(t *testing.T) {
 		p := rows[i].Sinuosity
 		rows[i].Windows = []float64{p, p, p, p, p}
 	}
-	f := newFrame(append(rows, rows...), Options{Response: "standardised_peak"})
+	f := newFrame(append(rows, rows...), Options{Response: "standardised_peak"}, 0)
 	if len(f.obs) != len(rows) || f.dropped["the same centreline is already counted"] != len(rows) {
 		t.Errorf("%d rows of %d, dropped %v", len(f.obs), len(rows), f.dropped)
 	}

@@ -88,6 +88,9 @@ func newResampling(f *frame, seed uint64) *resampling {
 
 // foldLatitude brings a latitude that was drawn past a pole back over it.
 func foldLatitude(lat float64) float64 {
+	if math.Abs(lat) <= 90 {
+		return lat
+	}
 	lat = math.Mod(lat, 360)
 	for lat > 90 || lat < -90 {
 		lat = math.Copysign(180, lat) - lat

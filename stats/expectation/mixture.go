@@ -14,7 +14,8 @@ type mixture struct {
 	draws   [][]float64
 	weights []float64
 	total   float64
-	alpha   float64 // exponent of the beta transform; 0 or 1 = none
+	alpha   float64             // exponent of the beta transform; 0 or 1 = none
+	known   map[float64]float64 // inner of the usual quantiles; nil = none known
 }
 
 // outer turns a share of the plain mixture into one of the transformed
@@ -30,7 +31,22 @@ func (m *mixture) inner(share float64) float64 {
 	if m.alpha == 0 || m.alpha == 1 {
 		return share
 	}
+	if v, ok := m.known[share]; ok {
+		return v
+	}
 	return mathext.InvRegIncBeta(m.alpha, m.alpha, share)
+}
+
+// usualShares are those of Quantiles.
+var usualShares = [...]float64{0.025, 0.1, 0.25, 0.5, 0.75, 0.9, 0.975}
+
+// innerShares is inner of the usual shares for one exponent.
+func innerShares(alpha float64) map[float64]float64 {
+	m, out := mixture{alpha: alpha}, map[float64]float64{}
+	for _, q := range usualShares {
+		out[q] = m.inner(q)
+	}
+	return out
 }
 
 func (m *mixture) add(sorted []float64, weight float64) {
@@ -86,10 +102,11 @@ func (m *mixture) quantile(q float64) float64 {
 }
 
 func (m *mixture) quantiles() *Quantiles {
-	return &Quantiles{
-		P2_5: m.quantile(0.025), P10: m.quantile(0.1), P25: m.quantile(0.25), P50: m.quantile(0.5),
-		P75: m.quantile(0.75), P90: m.quantile(0.9), P97_5: m.quantile(0.975),
+	var q [len(usualShares)]float64
+	for k, share := range usualShares {
+		q[k] = m.quantile(share)
 	}
+	return &Quantiles{P2_5: q[0], P10: q[1], P25: q[2], P50: q[3], P75: q[4], P90: q[5], P97_5: q[6]}
 }
 
 // quantileOf is the linear-interpolation quantile of sorted values.

@@ -3,7 +3,6 @@ package expectation
 import (
 	"fmt"
 	"math"
-	"math/rand/v2"
 
 	"fathombend/stats/earth"
 )
@@ -189,16 +188,15 @@ type drawn struct {
 	lat, ratio, age float64
 }
 
-// draw draws age, day length and palaeolatitude; each only if its flag is set.
-func (p *place) draw(rng *rand.Rand, withAge, withDay, withLat bool) drawn {
-	zAge, zDay, zLat := rng.NormFloat64(), rng.NormFloat64(), rng.NormFloat64()
-	uAge := rng.Float64()
+// at is where and when for one set of deviates: age, day length and
+// palaeolatitude move each only if its flag is set.
+func (p *place) at(z *deviates, withAge, withDay, withLat bool) drawn {
 	d := drawn{lat: p.lat.Value, ratio: p.ratio, age: p.age.Value}
 	hours, moved := float64(p.day.Value), false
 	if withAge && p.age.SE > 0 {
-		d.age = p.age.Value + p.age.SE*zAge
+		d.age = p.age.Value + p.age.SE*z.age
 		if p.age.Unit != "" {
-			d.age = p.age.Low + uAge*(p.age.High-p.age.Low)
+			d.age = p.age.Low + z.uAge*(p.age.High-p.age.Low)
 		}
 		d.age = math.Abs(d.age)
 		hours, moved = p.dayAt(d.age), true
@@ -209,13 +207,13 @@ func (p *place) draw(rng *rand.Rand, withAge, withDay, withLat bool) drawn {
 		}
 	}
 	if withDay && p.day.High > p.day.Low {
-		hours, moved = hours+p.day.SE()*zDay, true
+		hours, moved = hours+p.day.SE()*z.day, true
 	}
 	if moved && p.options.Rotation == 0 {
 		d.ratio = earth.SolarHours(hours).RotationRatio()
 	}
 	if withLat {
-		d.lat = foldLatitude(d.lat + p.lat.SE*zLat)
+		d.lat = foldLatitude(d.lat + p.lat.SE*z.lat)
 	}
 	return d
 }

@@ -2,7 +2,10 @@ package expectation
 
 import (
 	"cmp"
+	"encoding/binary"
 	"fmt"
+	"hash/fnv"
+	"maps"
 	"math"
 	"slices"
 
@@ -141,8 +144,9 @@ func standardisedPeak(windows []float64, k int) float64 {
 	return sum
 }
 
-// newFrame picks the rows and derives what the explanations look at.
-func newFrame(rows []stats.Row, o Options) *frame {
+// newFrame picks the rows and derives what the explanations look at. Of more
+// than most clusters (0 = no limit) it keeps that many, drawn whole.
+func newFrame(rows []stats.Row, o Options, most int) *frame {
 	rows = slices.Clone(rows)
 	// an order of their own values: that of the catalogue changes no digit
 	slices.SortStableFunc(rows, func(a, b stats.Row) int {
@@ -179,17 +183,52 @@ func newFrame(rows []stats.Row, o Options) *frame {
 			f.dropped[why]++
 			continue
 		}
-		if rows[i].Invented {
-			f.invented++
-		}
-		if rows[i].Private {
-			f.private++
-		}
 		f.obs = append(f.obs, ob)
 		clusterNames = append(clusterNames, clusterOf(&rows[i], o.Cluster))
 	}
+	f.thin(&clusterNames, most, o.Seed)
+	for i := range f.obs {
+		if f.obs[i].row.Invented {
+			f.invented++
+		}
+		if f.obs[i].row.Private {
+			f.private++
+		}
+	}
 	f.order(clusterNames)
 	return f
+}
+
+// thin keeps most whole clusters, those that come first by a hash of their name
+// and the seed: the choice follows from the names alone, and a filter that
+// drops some of them changes as few as it can.
+func (f *frame) thin(names *[]string, most int, seed uint64) {
+	hashes := map[string]uint64{}
+	for _, name := range *names {
+		if _, ok := hashes[name]; !ok {
+			h := fnv.New64a()
+			_, _ = h.Write(binary.LittleEndian.AppendUint64([]byte(name), seed))
+			hashes[name] = h.Sum64()
+		}
+	}
+	if most <= 0 || len(hashes) <= most {
+		return
+	}
+	order := slices.SortedFunc(maps.Keys(hashes), func(a, b string) int {
+		return cmp.Or(cmp.Compare(hashes[a], hashes[b]), cmp.Compare(a, b))
+	})
+	kept := map[string]bool{}
+	for _, name := range order[:most] {
+		kept[name] = true
+	}
+	obs, of := f.obs[:0:0], (*names)[:0:0]
+	for i, name := range *names {
+		if kept[name] {
+			obs, of = append(obs, f.obs[i]), append(of, name)
+		}
+	}
+	f.notes = append(f.notes, fmt.Sprintf("The explanations are fitted on %d rows in %d whole deposits drawn at random (seed %d) from %d rows in %d: each deposit is left out in turn, which more would make too long. A new system scatters far more than this choice moves the answer. Narrow the filter to use every row.", len(obs), most, seed, len(f.obs), len(hashes)))
+	f.obs, *names = obs, of
 }
 
 func observe(r *stats.Row, f *frame) (observation, string) {

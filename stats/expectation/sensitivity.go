@@ -51,7 +51,8 @@ func (f *Fits) oneInput(t *Target, p *place, d *draws, which moves) float64 {
 	for j := range min(n, d.n) {
 		pcg.Seed(t.Seed, uint64(j))
 		u := rng.Float64()
-		at := p.draw(rng, which.age, which.day, which.lat)
+		z := deviatesFrom(rng)
+		at := p.at(&z, which.age, which.day, which.lat)
 		in := d.point
 		in.sin, in.ratio = sinOf(at.lat), at.ratio
 		if at.age != p.age.Value {

@@ -98,7 +98,7 @@ func TestMixture(t *testing.T) {
 
 // Cholesky and QR agree on the same rows.
 func TestSolvers(t *testing.T) {
-	f := newFrame(plainLaw.draw(8), Options{})
+	f := newFrame(plainLaw.draw(8), Options{}, 0)
 	for _, m := range models() {
 		ft := fitModel(t.Context(), m, f, nil)
 		s := newSolver(ft.p)

@@ -96,7 +96,7 @@ func (f *Fits) seriesPoint(t Target) (SeriesPoint, error) {
 	if err != nil {
 		return SeriesPoint{}, err
 	}
-	d := f.draw(&t, p)
+	d := f.draw(&t, p, false)
 	r := f.frameOf(&t, p, d)
 	s := SeriesPoint{
 		Palaeolatitude: r.Palaeolatitude, DayLength: r.DayLength, RotationRatio: r.RotationRatio,
