@@ -21,6 +21,12 @@ import (
 // says on its console fails the test.
 func openBrowser(t *testing.T, expected ...string) context.Context {
 	t.Helper()
+	return openBrowserFor(t, 2*time.Minute, expected...)
+}
+
+// openBrowserFor is openBrowser for a test that needs another while.
+func openBrowserFor(t *testing.T, while time.Duration, expected ...string) context.Context {
+	t.Helper()
 	path := os.Getenv("CHROMIUM")
 	if path == "" {
 		var err error
@@ -34,7 +40,7 @@ func openBrowser(t *testing.T, expected ...string) context.Context {
 	}
 	ctx, stopAllocator := chromedp.NewExecAllocator(context.Background(), opts...)
 	ctx, stop := chromedp.NewContext(ctx)
-	ctx, cancel := context.WithTimeout(ctx, 2*time.Minute)
+	ctx, cancel := context.WithTimeout(ctx, while)
 	t.Cleanup(func() { cancel(); stop(); stopAllocator() })
 	if err := chromedp.Do(ctx, chromedp.EmulateViewport(1280, 900)); err != nil {
 		t.Fatal(err)

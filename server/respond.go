@@ -25,7 +25,7 @@ func render(c echo.Context, status int, t templ.Component) error {
 	if err := t.Render(c.Request().Context(), &buf); err != nil {
 		return err
 	}
-	return c.HTMLBlob(status, buf.Bytes())
+	return c.HTMLBlob(status, views.Finish(buf.Bytes()))
 }
 
 // writeJSON writes v with numbers that are not finite as null; equal values

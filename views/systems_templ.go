@@ -269,7 +269,7 @@ func systemsTable(p SystemsPage) templ.Component {
 		}
 		ctx = templ.InitializeContext(ctx)
 		ctx = templ.ClearChildren(ctx)
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 22, "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Table of systems\"><table class=\"data\" id=\"systems-table\"><caption>Each system by its best-graded, then newest measurement. Colour of the ribbon: valley slope, the stronger the steeper; grey where unknown; dashed for rivers.</caption> <thead><tr>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 22, "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Table of systems\"><table class=\"data listing\" id=\"systems-table\"><caption>Each system by its best-graded, then newest measurement. Colour of the ribbon: valley slope, the stronger the steeper; grey where unknown; dashed for rivers.</caption> <thead><tr>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}

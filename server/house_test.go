@@ -1,0 +1,243 @@
+package main
+
+import (
+	"net/http"
+	"net/url"
+	"regexp"
+	"slices"
+	"strings"
+	"testing"
+	"time"
+)
+
+// housePage is one page as one person meets it.
+type housePage struct {
+	who    string // reader, contributor, curator, keeper; "empty" is a reader of an empty catalogue
+	name   string // of its picture
+	path   string
+	status int    // 0 = 200
+	act    string // a script that sends a form of the page; what is looked at is the answer
+}
+
+func (p housePage) want() int {
+	if p.status == 0 {
+		return http.StatusOK
+	}
+	return p.status
+}
+
+// house is the demo with people, records that wait, a draft, a release, a
+// frozen analysis and centrelines measured again, so that every page has
+// something to show; and beside it an empty catalogue.
+type house struct {
+	*site
+	empty *site
+	who   map[string]*visitor
+	pages []housePage
+}
+
+func newHouse(t *testing.T) *house {
+	h := &house{site: newDemoSite(t), empty: newSite(t)}
+	h.people(map[string]string{"ann": "contributor", "cy": "curator"})
+	h.who = map[string]*visitor{"reader": h.visitor(), "contributor": h.as("ann"), "curator": h.as("cy"), "keeper": h.as("kit"), "empty": h.empty.visitor()}
+	h.pages = slices.Concat(h.readersPages(), h.contributorsPages(), h.curatorsPages(), h.keepersPages(), emptyPages)
+	return h
+}
+
+func (h *house) readersPages() []housePage {
+	analysis := h.who["contributor"].post("/regression/freeze", url.Values{"model": {"linear:abs_latitude", "linear:valley_slope"},
+		"resamples": {"199"}, "permutations": {"99"}, "title": {"Figure 3"}, "why": {"of the manuscript"}}).is(http.StatusOK).url.Path
+	h.who["curator"].post("/releases", url.Values{"name": {"2031.1"}, "title": {"The demonstration survey"}, "notes": {"The first."}, "licence": {"CC-BY-4.0"}, "doi": {""}}).is(http.StatusOK)
+	question := "palaeolatitude=28&palaeolatitude_se=4&age=70&age_se=3"
+	return []housePage{
+		{"reader", "meridian", "/", 0, ""},
+		{"reader", "meridian-folded", "/?fold=yes&colour=grade", 0, ""},
+		{"reader", "meridian-nothing", "/?q=zzzzzz", 0, ""},
+		{"reader", "systems", "/systems", 0, ""},
+		{"reader", "systems-filtered", "/systems?feeder=river&abs_lat_max=30&sort=-sinuosity", 0, ""},
+		{"reader", "systems-nothing", "/systems?q=zzzzzz", 0, ""},
+		{"reader", "system", "/systems/orquathe-main-channel", 0, ""},
+		{"reader", "system-ancient", "/systems/sarquembe-channel", 0, ""},
+		{"reader", "system-river", "/systems/yazoquelle-river", 0, ""},
+		{"reader", "chart", "/chart", 0, ""},
+		{"reader", "chart-polar", "/chart?view=north&colour=age", 0, ""},
+		{"reader", "regression", "/regression", 0, ""},
+		{"reader", "regression-more", "/regression?model=floor_decay:coriolis&model=linear:valley_slope&scale=raw", 0, ""},
+		{"reader", "regression-nothing", "/regression?q=zzzzzz", 0, ""},
+		{"reader", "regression-next", "/regression/next", 0, ""},
+		{"reader", "expectation-form", "/expectation", 0, ""},
+		{"reader", "expectation", "/expectation?" + question, 0, ""},
+		{"reader", "expectation-time", "/expectation/time?" + question, 0, ""},
+		{"reader", "expectation-report", "/expectation/report?" + question, 0, ""},
+		{"reader", "expectation-deep-time", "/expectation/deep-time", 0, ""},
+		{"reader", "measure", "/measure", 0, ""},
+		{"reader", "measured", "/measure", 0, typed("main [name=line]", "0 0\n0.02 0.03\n0.05 0.01\n0.07 0.05\n0.1 0.02\n0.13 0.06\n0.17 0.03\n0.2 0.05")},
+		{"reader", "methods", "/methods", 0, ""},
+		{"reader", "dictionary", "/dictionary", 0, ""},
+		{"reader", "sources", "/sources", 0, ""},
+		{"reader", "changes", "/changes", 0, ""},
+		{"reader", "analyses", "/analyses", 0, ""},
+		{"reader", "analysis", analysis, 0, ""},
+		{"reader", "releases", "/releases", 0, ""},
+		{"reader", "release", "/releases/2031.1", 0, ""},
+		{"reader", "difference", "/releases/2031.1/difference/present", 0, ""},
+		{"reader", "recomputed", "/recompute/thirty-widths", 0, ""},
+		{"reader", "sign-in", "/sign-in?return=/contribute", 0, ""},
+		{"reader", "sign-in-wrong", "/sign-in", http.StatusUnauthorized, typed("main #name", "nobody")},
+		{"reader", "error-missing", "/nothing-here", http.StatusNotFound, ""},
+		{"reader", "error-question", "/systems?lat_min=91", http.StatusBadRequest, ""},
+		{"reader", "error-forbidden", "/first-curator?token=spent", http.StatusForbidden, ""},
+		{"reader", "welcome", h.invitation(), 0, ""},
+	}
+}
+
+// ready asks for a page until its fit is done, so that a browser that opens it
+// next gets the page itself and not its progress.
+func (h *house) ready(p housePage) {
+	h.t.Helper()
+	for range 600 {
+		if a := h.who[p.who].get(p.path); a.status != http.StatusAccepted {
+			a.is(p.want())
+			return
+		}
+		time.Sleep(100 * time.Millisecond)
+	}
+	h.t.Fatalf("%s is never done", p.path)
+}
+
+// invitation makes an account that has not chosen its password yet.
+func (h *house) invitation() string {
+	a := h.who["keeper"].post("/people", url.Values{"name": {"new"}, "credit": {"N. Ewcomer"}, "role": {"contributor"}}).is(http.StatusOK)
+	link, err := url.Parse(a.doc().Find("#link").Text())
+	if err != nil {
+		h.t.Fatal(err)
+	}
+	return link.RequestURI()
+}
+
+func (h *house) contributorsPages() []housePage {
+	ann := h.who["contributor"]
+	// A record that waits, another one kept as a draft, a file with something odd.
+	ann.post("/contribute", press(ann.newRecord(goodRecord()), "submit")).is(http.StatusOK)
+	draft := goodRecord()
+	draft["system_name"] = "Sedge Hollow Channel"
+	saved := ann.post("/contribute", press(ann.newRecord(draft), "save")).is(http.StatusOK)
+	ann.upload([]byte(csvHead+"Loom Channel,-30,-20,1.4,peak,thalweg,Invented 2031,0.004\nWeft Channel,-31,-21,1.5,peak,thalweg,Invented 2031,3\n"), map[string]string{"why": "table 2"}).is(http.StatusOK)
+	file := `(() => { const d = new DataTransfer(); d.items.add(new File([` + "`" + csvHead + "Reed Channel,-30,-20,0.9,peak,thalweg,Invented 2031,0.004\\nRush Channel,91,-20,1.4,peak,thalweg,Invented 2031,0.004\\n`" + `], "table.csv")); document.querySelector("main input[type=file]").files = d.files; document.querySelector("main input[type=file]").form.requestSubmit() })()`
+	return []housePage{
+		{"contributor", "account", "/account", 0, ""},
+		{"contributor", "contribute", "/contribute", 0, ""},
+		{"contributor", "contribute-wrong", "/contribute", http.StatusUnprocessableEntity, typed("#latitude_deg", "91")},
+		{"contributor", "contribute-draft", saved.url.Path, 0, ""},
+		{"contributor", "upload", "/contribute/upload", 0, ""},
+		{"contributor", "upload-refused", "/contribute/upload", http.StatusUnprocessableEntity, file},
+		{"contributor", "error-role", "/review", http.StatusForbidden, ""},
+	}
+}
+
+func (h *house) curatorsPages() []housePage {
+	cy := h.who["curator"]
+	form := cy.get("/recompute").is(http.StatusOK).form("form[action='/recompute']")
+	fillIn(form, map[string]string{"name": "Thirty widths", "why": "wider windows", "window_widths": "30"})
+	cy.post("/recompute", form).is(http.StatusOK)
+	cy.finished("thirty-widths")
+	queue := cy.get("/review").is(http.StatusOK).doc()
+	record, there := queue.Find("table.data tbody th a[href^='/review/']").First().Attr("href")
+	if !there {
+		h.t.Fatal("nothing waits for the curator of the house")
+	}
+	return []housePage{
+		{"curator", "review", "/review", 0, ""},
+		{"curator", "review-activity", "/review/activity", 0, ""},
+		{"curator", "review-record", record, 0, ""},
+		{"curator", "review-edit", record + "/edit", 0, ""},
+		{"curator", "recompute", "/recompute", 0, ""},
+		{"curator", "releases-freeze", "/releases", 0, ""},
+	}
+}
+
+func (h *house) keepersPages() []housePage {
+	return []housePage{
+		{"keeper", "people", "/people", 0, ""},
+		{"keeper", "status", "/status", 0, ""},
+		{"keeper", "settings", "/settings", 0, ""},
+	}
+}
+
+var emptyPages = []housePage{
+	{"empty", "empty-meridian", "/", 0, ""},
+	{"empty", "empty-systems", "/systems", 0, ""},
+	{"empty", "empty-chart", "/chart", 0, ""},
+	{"empty", "empty-regression", "/regression", 0, ""},
+	{"empty", "empty-expectation", "/expectation", 0, ""},
+	{"empty", "empty-sources", "/sources", 0, ""},
+	{"empty", "empty-analyses", "/analyses", 0, ""},
+	{"empty", "empty-releases", "/releases", 0, ""},
+}
+
+// typed fills one control of a form of main and sends the form.
+func typed(selector, text string) string {
+	return `(() => { const c = document.querySelector("` + selector + `"); c.value = ` + "`" + text + "`" + `; const f = c.form; f.noValidate = true;
+		f.requestSubmit(f.querySelector("button.primary") || f.querySelector("button")) })()`
+}
+
+// notPages answer programs: data, files, feeds.
+var notPages = regexp.MustCompile(`\.(csv|json|geojson|zip|svg|png|pdf|bib|ris|atom|ico)$|^/(static/\*|healthz|metrics)$|^/features`)
+
+// Every page of the program stands in the list that is looked at: a new route
+// that shows a page must be put there.
+func TestTheHouseIsWhole(t *testing.T) {
+	h := newHouse(t)
+	seen := map[string]bool{}
+	for _, p := range h.pages {
+		u, err := url.Parse(p.path)
+		if err != nil {
+			t.Fatal(err)
+		}
+		seen[patternOf(routesOf(t), u.Path)] = true
+	}
+	for _, r := range routesOf(t) {
+		method, path, _ := strings.Cut(r, " ")
+		// A page with nothing of its own: it leads to the difference asked for.
+		if method != http.MethodGet || seen[path] || notPages.MatchString(path) || path == "/releases/:name/difference" {
+			continue
+		}
+		t.Errorf("%s is not among the pages of the house", path)
+	}
+	names := map[string]bool{}
+	for _, p := range h.pages {
+		if names[p.name] {
+			t.Errorf("two pages are named %s", p.name)
+		}
+		names[p.name] = true
+		if p.act == "" {
+			h.ready(p)
+		}
+	}
+	t.Logf("%d pages", len(h.pages))
+}
+
+// patternOf is the pattern that takes a path: the one with the fewest wild parts.
+func patternOf(routes []string, path string) string {
+	best, wild := "", 99
+	for _, r := range routes {
+		method, pattern, _ := strings.Cut(r, " ")
+		if n := strings.Count(pattern, ":"); method == "GET" && n < wild && fitsPattern(pattern, path) {
+			best, wild = pattern, n
+		}
+	}
+	return best
+}
+
+func fitsPattern(pattern, path string) bool {
+	want, got := strings.Split(pattern, "/"), strings.Split(path, "/")
+	if len(want) != len(got) {
+		return false
+	}
+	for i := range want {
+		if !strings.HasPrefix(want[i], ":") && want[i] != got[i] {
+			return false
+		}
+	}
+	return true
+}
