@@ -133,11 +133,12 @@ func (s *Store) setAccount(ctx context.Context, name, column string, value any) 
 	})
 }
 
-const selectAccount = `SELECT id, name, credit, role, orcid, disabled FROM accounts`
+const selectAccount = `SELECT id, name, credit, role, orcid, disabled,
+	EXISTS (SELECT 1 FROM registrations g WHERE g.account_id = accounts.id AND g.state = 'waiting') FROM accounts`
 
 func scanAccount(row interface{ Scan(...any) error }) (Account, error) {
 	var a Account
-	err := row.Scan(&a.ID, &a.Name, &a.Credit, &a.Role, &a.ORCID, &a.Disabled)
+	err := row.Scan(&a.ID, &a.Name, &a.Credit, &a.Role, &a.ORCID, &a.Disabled, &a.Waiting)
 	return a, err
 }
 

@@ -51,6 +51,9 @@ func (s *Store) FreezeAnalysis(ctx context.Context, a Analysis, by int64) (strin
 		return "", fault("pack rows", err)
 	}
 	return a.Name, s.write(ctx, func(tx *sql.Tx) error {
+		if err := maySend(ctx, tx, by); err != nil {
+			return err
+		}
 		var taken int
 		if err := tx.QueryRowContext(ctx, `SELECT count(*) FROM analyses WHERE name = ?`, a.Name).Scan(&taken); err != nil {
 			return err

@@ -80,6 +80,7 @@ type Account struct {
 	Role     string // contributor, curator, keeper
 	ORCID    string
 	Disabled bool
+	Waiting  bool // registered and not let in yet: keeps drafts, sends nothing
 }
 
 // Submission is a contributed change waiting for a curator.

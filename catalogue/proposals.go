@@ -26,6 +26,9 @@ func (s *Store) proposeAct(ctx context.Context, by int64, act, measurement, inst
 		return 0, err
 	}
 	err = s.write(ctx, func(tx *sql.Tx) error {
+		if err := maySend(ctx, tx, by); err != nil {
+			return err
+		}
 		row, revision, err := actsOn(ctx, tx, act, measurement, instead)
 		if err != nil {
 			return err

@@ -26,6 +26,9 @@ func (s *Store) Submit(ctx context.Context, by int64, sub Submission) (id int64,
 		return 0, err
 	}
 	err = s.write(ctx, func(tx *sql.Tx) error {
+		if err := maySend(ctx, tx, by); err != nil {
+			return err
+		}
 		if err := s.ready(ctx, tx, &sub); err != nil {
 			return err
 		}

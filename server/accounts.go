@@ -2,7 +2,6 @@ package main
 
 import (
 	"errors"
-	"net"
 	"net/http"
 	"net/url"
 	"strconv"
@@ -42,6 +41,7 @@ func (a *App) routesAccounts(e *echo.Echo) {
 	e.POST("/people/:id/role", p.changeRole)
 	e.POST("/people/:id/password", p.invite)
 	e.POST("/people/:id/state", p.changeState)
+	p.routesJoining(e)
 }
 
 // signInAddress is the way to sign in and back to where one was.
@@ -112,7 +112,7 @@ func formOf(c echo.Context) (url.Values, error) {
 	return r.PostForm, nil
 }
 
-func (p *accounts) signInPage(c echo.Context) error {
+func (p *accounts) signInPage(c echo.Context) (err error) {
 	back := localPath(c.QueryParam("return"))
 	if p.user(c) != nil {
 		return c.Redirect(http.StatusSeeOther, back)
@@ -122,6 +122,9 @@ func (p *accounts) signInPage(c echo.Context) error {
 	}
 	c.Response().Header().Set("Cache-Control", "no-store")
 	v := views.SignIn{Return: back}
+	if v.Register, err = p.store.RegistrationsOpen(c.Request().Context()); err != nil {
+		return err
+	}
 	if strings.HasPrefix(back, "/contribute") || strings.HasPrefix(back, "/review") {
 		v.Message = "Sign in to go on to that page."
 	}
@@ -187,14 +190,4 @@ func (p *accounts) signOut(c echo.Context) error {
 		return err
 	}
 	return c.Redirect(http.StatusSeeOther, "/")
-}
-
-// remoteHost is the address the throttle counts by: the peer's, since any
-// header naming another could be made up.
-func remoteHost(c echo.Context) string {
-	host, _, err := net.SplitHostPort(c.Request().RemoteAddr)
-	if err != nil {
-		return c.Request().RemoteAddr
-	}
-	return host
 }

@@ -9,6 +9,7 @@ import (
 	"net/url"
 	"strconv"
 	"strings"
+	"time"
 
 	"github.com/alexedwards/scs/v2"
 	"github.com/labstack/echo/v4"
@@ -241,6 +242,16 @@ func (p *accounts) showPeople(c echo.Context, status int, v views.PeopleForm) er
 	all, err := p.store.Accounts(c.Request().Context())
 	if err != nil {
 		return err
+	}
+	if v.Days == "" {
+		v.Days = "14"
+	}
+	list, err := p.store.Invitations(c.Request().Context(), 100)
+	if err != nil {
+		return err
+	}
+	for _, i := range list {
+		v.Invitations = append(v.Invitations, views.Invited{Invitation: i, Works: i.Open(time.Now())})
 	}
 	me := p.user(c)
 	for _, a := range all {

@@ -1,6 +1,7 @@
 package main
 
 import (
+	"cmp"
 	"crypto/sha256"
 	"encoding/hex"
 	"fmt"
@@ -132,31 +133,17 @@ func (a *App) secured(next echo.HandlerFunc) echo.HandlerFunc {
 // behind sets what depends on how the program is reached: with TLS, its own or
 // a proxy's, the cookie is bound to the host and to TLS; behind a proxy the
 // asker's address is the one the proxy adds.
-func (a *App) behind(tls, proxy bool) {
-	a.secure, a.proxied = tls || proxy, proxy
+func (a *App) behind(cfg serveConfig) {
+	a.secure = cfg.TLSCert != "" || cfg.BehindProxy
+	a.proxies, a.proxyChain = nil, cfg.TrustedProxy != ""
+	if cfg.BehindProxy {
+		// Checked when the flags were read.
+		a.proxies, _ = parseProxies(cmp.Or(cfg.TrustedProxy, usualProxies))
+	}
 	if a.secure {
 		a.sessions.Cookie.Name = "__Host-fathombend"
 		a.sessions.Cookie.Secure = true
 	}
-}
-
-// askerHost is the address that throttles count by. Behind a proxy it is the
-// last one of X-Forwarded-For, which the proxy itself wrote; what stands before
-// it the client may have made up.
-func (a *App) askerHost(c echo.Context) string {
-	if a.proxied {
-		all := c.Request().Header.Values("X-Forwarded-For")
-		if len(all) > 0 {
-			last := all[len(all)-1]
-			if i := strings.LastIndexByte(last, ','); i >= 0 {
-				last = last[i+1:]
-			}
-			if last = strings.TrimSpace(last); last != "" && len(last) <= 64 {
-				return last
-			}
-		}
-	}
-	return remoteHost(c)
 }
 
 // timeouts bound how long one client may hold a connection.

@@ -4,6 +4,7 @@ import (
 	"io"
 	"log/slog"
 	"net/http"
+	"net/netip"
 	"time"
 
 	"github.com/alexedwards/scs/v2"
@@ -28,7 +29,8 @@ type App struct {
 	began      time.Time
 	routes     map[string]bool // patterns of every route
 	secure     bool            // reached over TLS, see behind
-	proxied    bool
+	proxies    []netip.Prefix  // whose X-Forwarded-For is believed; nil = nobody's
+	proxyChain bool            // there may be several of them, one behind the other
 
 	// onListen run once, after the program listens: base is the address a
 	// person can open, say the console. For words that need the address.

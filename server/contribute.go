@@ -289,6 +289,10 @@ func (p *contributions) keep(c echo.Context, r *record, line *formLine, f views.
 		return p.refused(c, r, f, &catalogue.Error{Code: catalogue.Conflict,
 			Message: "This record is " + f.State + " by now and no longer changes here. What you typed is below: copy what you need into a new form, or propose a change from the page of its system"})
 	}
+	asked := action
+	if u.Waiting {
+		action = "save" // nothing typed is lost while a curator has not let the person in
+	}
 	refused := f.Line != nil && f.Line.Error != ""
 	if action == "submit" {
 		r.need()
@@ -323,7 +327,9 @@ func (p *contributions) keep(c echo.Context, r *record, line *formLine, f views.
 	if err != nil {
 		return p.refused(c, r, f, err)
 	}
-	if action == "save" {
+	if asked != action {
+		p.notice(c, "Saved as a draft, not sent: a curator has to let you in first. Send it from here then.")
+	} else if action == "save" {
 		p.notice(c, "The draft is saved.")
 	} else {
 		p.notice(c, "Sent. A curator reads it before it joins the catalogue; you can still change it until then.")

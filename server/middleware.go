@@ -169,7 +169,7 @@ func (a *App) page(c echo.Context, title, nav string) views.Page {
 	p.SeesPrivate, p.LeavesPrivate = catalogue.SeesPrivate(ctx), c.Get(privateLeftOut) == true
 	a.nameReleaseOf(ctx, &p)
 	if u := a.user(c); u != nil {
-		p.User = &views.User{Name: u.Name, Credit: u.Credit, Role: u.Role}
+		p.User = &views.User{Name: u.Name, Credit: u.Credit, Role: u.Role, Waiting: u.Waiting}
 	}
 	if p.User.Curates() {
 		waiting, err := a.store.CountSubmissions(ctx, "submitted", 0)
@@ -177,6 +177,9 @@ func (a *App) page(c echo.Context, title, nav string) views.Page {
 			a.log.Error("counting submissions failed", "err", err)
 		}
 		p.Pending = waiting
+		if p.Joining, err = a.store.CountRegistrations(ctx); err != nil {
+			a.log.Error("counting registrations failed", "err", err)
+		}
 	}
 	return p
 }

@@ -102,8 +102,8 @@ func wantCell(routes []string, method, path string, r role) string {
 	}
 	least := access[method+" "+path]
 	switch {
-	case path == "/first-curator" || path == "/welcome":
-		return "forbidden" // without its token
+	case slices.Contains([]string{"/first-curator", "/welcome", "/join", "/register"}, path):
+		return "forbidden" // without its token, and while registration is closed
 	case r < least && r == reader:
 		return "sign in"
 	case r < least:

@@ -32,6 +32,7 @@ type serveConfig struct {
 
 	TLSCert, TLSKey string        // files; "" = plain HTTP
 	BehindProxy     bool          // a proxy in front does TLS and names the asker
+	TrustedProxy    string        // addresses and networks of proxies; "" = usualProxies, one of them
 	BackupDir       string        // "" = no scheduled backups
 	BackupEvery     time.Duration // between two of them
 	BackupKeep      int           // how many stay
@@ -39,7 +40,8 @@ type serveConfig struct {
 }
 
 const serveHelp = `Usage: fathombend serve [-catalogue FILE] [-listen ADDR] [-read-only] [-demo-law LAW]
-                        [-tls-cert FILE -tls-key FILE] [-behind-proxy] [-log text|json]
+                        [-tls-cert FILE -tls-key FILE] [-behind-proxy [-trusted-proxy LIST]]
+                        [-log text|json]
                         [-backup-dir DIR] [-backup-every TIME] [-backup-keep N]
 
 Runs the web application until it is interrupted. Without -catalogue it shows
@@ -49,7 +51,9 @@ kept. A new FILE starts empty.
 With -backup-dir it makes a checked copy of the catalogue at intervals, while it
 is in use, and keeps the newest ones. With -read-only nobody signs in, nothing is
 written, and answers say how long a proxy may keep them. With -behind-proxy the
-proxy in front must do TLS, pass the Host header on and set X-Forwarded-For.
+proxy in front must do TLS, pass the Host header on and set X-Forwarded-For; the
+last address in it counts for throttles. With several proxies one behind the
+other, -trusted-proxy names them all.
 
 `
 
@@ -66,6 +70,7 @@ func runServe(args []string, in io.Reader, out, errOut io.Writer) int {
 	fs.StringVar(&cfg.TLSCert, "tls-cert", "", "certificate `FILE` (PEM) to serve over TLS")
 	fs.StringVar(&cfg.TLSKey, "tls-key", "", "its key `FILE` (PEM)")
 	fs.BoolVar(&cfg.BehindProxy, "behind-proxy", false, "a proxy in front does TLS and sets X-Forwarded-For")
+	fs.StringVar(&cfg.TrustedProxy, "trusted-proxy", "", "`LIST` of addresses or networks whose X-Forwarded-For is believed; without it, one proxy on this machine or a private network")
 	fs.StringVar(&cfg.BackupDir, "backup-dir", "", "`FOLDER` for scheduled backups; without it, none are made")
 	fs.DurationVar(&cfg.BackupEvery, "backup-every", 24*time.Hour, "`TIME` between two scheduled backups")
 	fs.IntVar(&cfg.BackupKeep, "backup-keep", 14, "how many scheduled backups to keep")
@@ -107,11 +112,18 @@ func runServe(args []string, in io.Reader, out, errOut io.Writer) int {
 
 // badCall says what is wrong with flags that parse one by one, "" if nothing is.
 func (cfg serveConfig) badCall(logAs string) string {
+	if cfg.TrustedProxy != "" {
+		if _, err := parseProxies(cfg.TrustedProxy); err != nil {
+			return "-trusted-proxy: " + err.Error()
+		}
+	}
 	switch {
 	case logAs != "text" && logAs != "json":
 		return fmt.Sprintf("-log %q is not a way to log; expected text or json", logAs)
 	case (cfg.TLSCert == "") != (cfg.TLSKey == ""):
 		return "-tls-cert and -tls-key go together; give both or neither"
+	case cfg.TrustedProxy != "" && !cfg.BehindProxy:
+		return "-trusted-proxy says whom to believe with -behind-proxy; give both"
 	case cfg.BackupEvery < shortestBackup:
 		return fmt.Sprintf("-backup-every %s is too short; expected %s or more", cfg.BackupEvery, shortestBackup)
 	case cfg.BackupKeep < 1:
@@ -153,7 +165,7 @@ func startServer(ctx context.Context, cfg serveConfig) (addr string, stop func()
 		return "", nil, err
 	}
 	a := newApp(store, cfg.Log, cfg.ReadOnly)
-	a.behind(cfg.TLSCert != "", cfg.BehindProxy)
+	a.behind(cfg)
 	background, stopBackground, err := a.inBackground(cfg)
 	if err != nil {
 		listener.Close()

@@ -1,6 +1,7 @@
 package views
 
 import (
+	"fathombend/catalogue"
 	"net/url"
 	"slices"
 )
@@ -13,6 +14,7 @@ type SignIn struct {
 	Errors    map[string]string // by field
 	Carried   url.Values        // fields of an interrupted form, to be sent on
 	CarriedTo string            // where that form was going
+	Register  bool              // anyone may make an account
 }
 
 // OneTime is the state of a page that is opened once by an address: the first
@@ -44,6 +46,24 @@ type PeopleForm struct {
 	Name, Credit, Role string // of the person being added
 	Errors             map[string]string
 	LinkFor, Link      string // a one-time link just made
+
+	InviteRole, Note, Days string // of the invitation being made
+	Invitation             string // its link, just made
+	Invitations            []Invited
+}
+
+// Invited is one line of the keeper's list of invitations.
+type Invited struct {
+	catalogue.Invitation
+	Works bool
+}
+
+// Joining is the state of the pages that make an account: by an invitation, or
+// by registering.
+type Joining struct {
+	Token, Role, By     string // of the invitation; Token "" = registering
+	Name, Credit, About string
+	Errors              map[string]string
 }
 
 // carriedField is one hidden field of a form that travels on.

@@ -22,6 +22,7 @@ type Page struct {
 	ReadOnly      bool
 	RequestID     string
 	Pending       int    // submissions waiting, for curators
+	Joining       int    // people waiting to be let in, for curators
 	JSON          string // addresses of the data twins, "" = none
 	CSV           string
 	GeoJSON       string
@@ -41,6 +42,7 @@ type Page struct {
 // User is who is signed in.
 type User struct {
 	Name, Credit, Role string
+	Waiting            bool // registered and not let in yet
 }
 
 // Curates says whether the user may review.

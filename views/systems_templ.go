@@ -238,7 +238,7 @@ func noSystems(p SystemsPage) templ.Component {
 				return templ_7745c5c3_Err
 			}
 		} else if !p.ReadOnly {
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 20, "<p class=\"warning\">The catalogue is empty. <a href=\"/contribute\">Add a measured system</a>, or import a table on the machine itself: <code>fathombend import -catalogue FILE -publish table.csv</code>.</p>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 20, "<p class=\"warning\">The catalogue is empty. <a href=\"/contribute\">Add a measured system</a>, <a href=\"/contribute/upload\">send a CSV file</a>, or import a table on the machine itself: <code>fathombend import -catalogue FILE -publish table.csv</code>.</p>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
