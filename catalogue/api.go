@@ -121,6 +121,8 @@ type Submission struct {
 	Became   string
 	Accepted *Row
 	Edits    []FieldChange // what the curator changed of the proposal
+	Said     int           // messages about it
+	LastSaid string        // credit line of who wrote the last
 	// Since are the changes others made to the record after the author saw it.
 	Since []FieldChange
 

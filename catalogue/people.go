@@ -137,18 +137,49 @@ type ChangeSet struct {
 	Changed    int   // fields changed
 	System     string
 	SystemName string
-	Systems    int // how many systems it touches
-	Settings   int // how many settings it changes
+	Systems    int   // how many systems it touches
+	Settings   int   // how many settings it changes
+	Withdrawn  int   // measurements that left the catalogue
+	Back       int   // and that came back
+	Merged     int   // systems that became part of another
+	Undoes     int64 // the change set it takes back, 0 = none
+	UndoneBy   int64 // the newest that takes it back, 0 = none
+	Sampled    int   // rows of its file that were read before all were accepted
+	SampledOf  int   // and how many waited
 }
 
 // Activity lists the latest accepted changes, newest first.
 func (s *Store) Activity(ctx context.Context, limit int) ([]ChangeSet, error) {
-	rows, err := s.r.QueryContext(ctx, `SELECT t.id, t.at, `+whoExpr+`, coalesce(b.credit, ''), t.why, coalesce(t.submission_id, 0),
-			(SELECT count(*) FROM revisions v WHERE v.change_set_id = t.id AND v.action = 'create'),
-			(SELECT count(*) FROM revisions v WHERE v.change_set_id = t.id AND v.action = 'change'),
-			(SELECT count(*) FROM revisions v WHERE v.change_set_id = t.id AND v.record >= 'setting:' AND v.record < 'setting;')
-		FROM change_sets t LEFT JOIN accounts a ON a.id = t.account_id LEFT JOIN accounts b ON b.id = t.author_id
-		ORDER BY t.id DESC LIMIT ?`, limit)
+	return s.changeSets(ctx, ` ORDER BY t.id DESC LIMIT ?`, limit)
+}
+
+// ChangeSet returns one of them.
+func (s *Store) ChangeSet(ctx context.Context, id int64) (*ChangeSet, error) {
+	sets, err := s.changeSets(ctx, ` WHERE t.id = ?`, id)
+	if err == nil && len(sets) == 0 {
+		err = &Error{Code: NotFound, Message: "there is no such change"}
+	}
+	if err != nil {
+		return nil, err
+	}
+	return &sets[0], nil
+}
+
+// countRevisions counts those of a change set t that did something.
+func countRevisions(condition string) string {
+	return `(SELECT count(*) FROM revisions v WHERE v.change_set_id = t.id AND ` + condition + `)`
+}
+
+var selectChangeSets = `SELECT t.id, t.at, ` + whoExpr + `, coalesce(b.credit, ''), t.why, coalesce(t.submission_id, 0), ` +
+	countRevisions(`v.action = 'create'`) + `, ` + countRevisions(`v.action = 'change'`) + `, ` + countRevisions(`v.record >= 'setting:' AND v.record < 'setting;'`) + `, ` +
+	countRevisions(`v.action = 'withdraw' AND v.record LIKE 'measurement:%'`) + `, ` + countRevisions(`v.action = 'accept' AND v.record LIKE 'measurement:%'`) + `, ` +
+	countRevisions(`v.action = 'withdraw' AND v.field = 'merged_into'`) + `,
+	coalesce(t.undoes, 0), coalesce((SELECT max(u.id) FROM change_sets u WHERE u.undoes = t.id), 0),
+	coalesce(json_array_length(p.drawn), 0), coalesce(p.total, 0)
+	FROM change_sets t LEFT JOIN accounts a ON a.id = t.account_id LEFT JOIN accounts b ON b.id = t.author_id LEFT JOIN samples p ON p.id = t.sample_id`
+
+func (s *Store) changeSets(ctx context.Context, tail string, args ...any) ([]ChangeSet, error) {
+	rows, err := s.r.QueryContext(ctx, selectChangeSets+tail, args...)
 	if err != nil {
 		return nil, fault("activity", err)
 	}
@@ -157,7 +188,7 @@ func (s *Store) Activity(ctx context.Context, limit int) ([]ChangeSet, error) {
 	for rows.Next() {
 		var c ChangeSet
 		var at string
-		if err := rows.Scan(&c.ID, &at, &c.Who, &c.Author, &c.Why, &c.Submission, &c.Created, &c.Changed, &c.Settings); err != nil {
+		if err := rows.Scan(&c.ID, &at, &c.Who, &c.Author, &c.Why, &c.Submission, &c.Created, &c.Changed, &c.Settings, &c.Withdrawn, &c.Back, &c.Merged, &c.Undoes, &c.UndoneBy, &c.Sampled, &c.SampledOf); err != nil {
 			return nil, fault("activity", err)
 		}
 		c.At = parseTime(at)
@@ -179,7 +210,7 @@ func (s *Store) touched(ctx context.Context, c *ChangeSet) error {
 	return s.r.QueryRowContext(ctx, `SELECT count(*), coalesce(min(slug), ''), coalesce(min(system_name), '') FROM (
 			SELECT y.slug, y.system_name FROM revisions v JOIN systems y ON y.slug = substr(v.record, 8)
 				WHERE v.change_set_id = ?1 AND v.record LIKE 'system:%'
-			UNION SELECT y.slug, y.system_name FROM revisions v JOIN measurements m ON m.measurement = substr(v.record, 13)
-				JOIN systems y ON y.id = m.system_id WHERE v.change_set_id = ?1 AND v.record LIKE 'measurement:%')`, c.ID).
+			UNION SELECT y.slug, y.system_name FROM revisions v JOIN (SELECT measurement, system_id FROM measurements UNION ALL SELECT measurement, system_id FROM withdrawn_measurements) m
+				ON m.measurement = substr(v.record, 13) JOIN systems y ON y.id = m.system_id WHERE v.change_set_id = ?1 AND v.record LIKE 'measurement:%')`, c.ID).
 		Scan(&c.Systems, &c.System, &c.SystemName)
 }

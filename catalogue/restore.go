@@ -225,6 +225,8 @@ func (a *applier) undo(ctx context.Context, revisions []Revision) error {
 			err = a.undoSystem(ctx, name, v)
 		case "centreline":
 			err = a.undoLine(ctx, name, v)
+		default:
+			err = &Error{Code: Conflict, Message: "this change is of " + strings.ReplaceAll(v.Record, ":", " ") + ", which is changed on its own page"}
 		}
 		if err != nil {
 			return err

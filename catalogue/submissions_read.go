@@ -13,6 +13,8 @@ const SubmissionsLimit = 1000
 
 const selectSubmission = `SELECT u.id, coalesce(u.batch_id, 0), u.state, u.measurement, u.proposed, u.typed, u.base, u.base_revision, u.overrides, u.comment,
 	u.line, u.line_settings, u.line_sinuosities, u.created_at, u.updated_at, u.act, u.instead,
+	(SELECT count(*) FROM messages g WHERE g.submission_id = u.id),
+	coalesce((SELECT coalesce(w.credit, 'command line') FROM messages g LEFT JOIN accounts w ON w.id = g.account_id WHERE g.submission_id = u.id ORDER BY g.id DESC LIMIT 1), ''),
 	coalesce(a.id, 0), coalesce(a.name, ''), coalesce(a.credit, 'command line'), coalesce(a.role, ''), coalesce(a.orcid, ''), coalesce(a.disabled, 0)
 	FROM submissions u LEFT JOIN accounts a ON a.id = u.account_id`
 
@@ -115,7 +117,7 @@ func scanSubmission(rows *sql.Rows) (Submission, error) {
 	var u Submission
 	var target, proposed, typed, base, overrides, windows, at, updated string
 	err := rows.Scan(&u.ID, &u.Batch, &u.State, &target, &proposed, &typed, &base, &u.BaseRevision, &overrides, &u.Comment,
-		&u.Centreline, &u.CentrelineSettings, &windows, &at, &updated, &u.Act, &u.Instead,
+		&u.Centreline, &u.CentrelineSettings, &windows, &at, &updated, &u.Act, &u.Instead, &u.Said, &u.LastSaid,
 		&u.By.ID, &u.By.Name, &u.By.Credit, &u.By.Role, &u.By.ORCID, &u.By.Disabled)
 	if err != nil {
 		return u, err

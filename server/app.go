@@ -64,6 +64,7 @@ func (a *App) router() *echo.Echo {
 	a.routesAccounts(e)
 	a.routesContribute(e)
 	a.routesReview(e)
+	a.routesHistory(e)
 	a.routesRecompute(e)
 	a.routesMethods(e)
 	a.routesTakingAway(e)

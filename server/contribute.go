@@ -30,6 +30,7 @@ func (a *App) routesContribute(e *echo.Echo) {
 	get(e, "/contribute/:id", p.saved)
 	e.POST("/contribute/:id", p.post)
 	e.POST("/contribute/:id/withdraw", p.withdraw)
+	e.POST("/contribute/:id/comment", p.comment)
 }
 
 // blank is an empty form; with ?system= for another measurement of a system,
@@ -39,7 +40,7 @@ func (p *contributions) blank(c echo.Context) error {
 	if err != nil {
 		return err
 	}
-	if err := allow(q, []string{"system", "measurement"}); err != nil {
+	if err := allow(q, []string{"system", "measurement", "revision"}); err != nil {
 		return err
 	}
 	u := p.user(c)
@@ -48,6 +49,9 @@ func (p *contributions) blank(c echo.Context) error {
 	case q.Get("measurement") != "":
 		row, revision, err := p.store.Measurement(c.Request().Context(), q.Get("measurement"))
 		if err != nil {
+			return err
+		}
+		if row, err = p.asOf(c.Request().Context(), q, row); err != nil {
 			return err
 		}
 		v = formOfRow(*row, nil)
@@ -68,6 +72,27 @@ func (p *contributions) blank(c echo.Context) error {
 	r := readRecord(v)
 	r.shown = map[string]string{}
 	return p.show(c, http.StatusOK, r, views.ContributeForm{})
+}
+
+// asOf is the record as it was after the revision asked for, to be proposed
+// again; its system stays as it is.
+func (p *contributions) asOf(ctx context.Context, q url.Values, row *catalogue.Row) (*catalogue.Row, error) {
+	revision, err := whole(q, "revision", 0, 0, 1<<53)
+	if err != nil || revision == 0 {
+		return row, err
+	}
+	was, _, err := p.store.RowAt(ctx, row.Measurement, int64(revision))
+	if err != nil {
+		return nil, err
+	}
+	for _, c := range catalogue.Columns {
+		if c.Table != catalogue.TableSystems && c.Name != "measurement" {
+			if e := c.Set(row, c.Get(was)); e != nil {
+				return nil, e
+			}
+		}
+	}
+	return row, nil
 }
 
 // ofSystem fills the columns of the whole system.
@@ -93,7 +118,7 @@ func (p *contributions) saved(c echo.Context) error {
 	if err != nil {
 		return err
 	}
-	if s.State == "accepted" || s.State == "withdrawn" {
+	if s.State == "accepted" || s.State == "withdrawn" || s.Act != catalogue.ActEdit {
 		return render(c, http.StatusOK, views.SettledPage(p.page(c, s.Row.SystemName, "contribute"), reviewOf(s)))
 	}
 	r := recordOf(s)
@@ -238,7 +263,7 @@ func submitted(s *catalogue.Submission) views.Submitted {
 	if name == "" {
 		name = s.Typed["system_name"]
 	}
-	return views.Submitted{ID: s.ID, SystemName: name, Sinuosity: num(s.Row.Sinuosity), State: s.State, At: s.UpdatedAt, Changes: s.Current != nil, Comment: s.Comment}
+	return views.Submitted{ID: s.ID, SystemName: name, Sinuosity: num(s.Row.Sinuosity), State: s.State, Act: s.Act, At: s.UpdatedAt, Changes: s.Current != nil, Comment: s.Comment}
 }
 
 // post takes the form: check, measure, fill, save or submit, as the button
@@ -393,6 +418,23 @@ func (r *record) submission(line *formLine) catalogue.Submission {
 		s.Centreline, s.CentrelineSettings, s.CentrelineSinuosities = line.geoJSON, line.settings, line.sinuosities()
 	}
 	return s
+}
+
+// comment is a word of the contributor to the curators, at any time.
+func (p *contributions) comment(c echo.Context) error {
+	form, err := formOf(c)
+	if err != nil {
+		return err
+	}
+	s, err := p.own(c)
+	if err != nil {
+		return err
+	}
+	if err := p.store.Comment(c.Request().Context(), s.ID, p.user(c).ID, form.Get("comment")); err != nil {
+		return err
+	}
+	p.notice(c, "Your message is kept; the curators see it.")
+	return c.Redirect(http.StatusSeeOther, "/contribute/"+strconv.FormatInt(s.ID, 10)+"#said")
 }
 
 func (p *contributions) withdraw(c echo.Context) error {

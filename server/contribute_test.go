@@ -9,6 +9,8 @@ import (
 	"strings"
 	"sync"
 	"testing"
+
+	"github.com/PuerkitoBio/goquery"
 )
 
 // goodRecord is what a person types for a measurement that the checks find
@@ -385,8 +387,14 @@ func TestUpload(t *testing.T) {
 	ann.upload([]byte(good), map[string]string{"why": "table 2"}).is(http.StatusOK).says("2 new", "waits for a curator")
 	ann.upload([]byte(good), nil).is(http.StatusOK).says("2 identical and skipped")
 	q := cy.get("/review").is(http.StatusOK).says("2 records wait", "A file from Credit of ann")
-	batch := q.doc().Find("form[action^='/review/batch/']").AttrOr("action", "")
-	cy.post(batch, url.Values{"comment": {"sampled two of two"}}).is(http.StatusOK).says("2 records accepted")
+	batch := q.doc().Find("a[href^='/review/batch/']").AttrOr("href", "")
+	sample := cy.get(batch).is(http.StatusOK).says("table 2", "The sample is the whole", "Loom Channel", "Weft Channel")
+	form := sample.form("form.record")
+	form.Set("comment", "looked up in the paper")
+	cy.post(batch, form).is(http.StatusUnprocessableEntity).says("2 rows of the sample are not marked as read")
+	sample.doc().Find("input[name=read]").Each(func(_ int, x *goquery.Selection) { form.Add("read", x.AttrOr("value", "")) })
+	cy.post(batch, form).is(http.StatusOK).says("2 records accepted, with a sample of 2 read")
+	cy.get("/review/activity").is(http.StatusOK).says("2 of 2 rows read", "looked up in the paper")
 	if rows := s.csv(); len(rows) != 3 {
 		t.Errorf("%d rows after accepting the file, want 2 and the header", len(rows)-1)
 	}

@@ -24,7 +24,14 @@ func (a *App) routesReview(e *echo.Echo) {
 	p := &reviews{a}
 	get(e, "/review", p.queue)
 	get(e, "/review/activity", p.activity)
+	get(e, "/review/batch/:id", p.batch)
 	e.POST("/review/batch/:id", p.acceptBatch)
+	get(e, "/review/changes/:id", p.changeSet)
+	e.POST("/review/changes/:id", p.undo)
+	get(e, "/review/merge", p.mergePage)
+	e.POST("/review/merge", p.merge)
+	get(e, "/review/merge/measurements", p.twinsPage)
+	e.POST("/review/merge/measurements", p.mergeTwins)
 	get(e, "/review/:id", p.one)
 	e.POST("/review/:id", p.decide)
 	get(e, "/review/:id/edit", p.edit)
@@ -68,29 +75,11 @@ func (p *reviews) queued(ctx context.Context, s *catalogue.Submission) (views.Qu
 	if err != nil {
 		return views.Queued{}, err
 	}
-	q := views.Queued{ID: s.ID, SystemName: s.Row.SystemName, Sinuosity: num(s.Row.Sinuosity), By: s.By.Credit, At: s.At, Odd: len(findings), Source: s.Row.Source}
+	q := views.Queued{ID: s.ID, Act: s.Act, Said: s.Said, LastSaid: s.LastSaid, Conflict: len(s.Since) > 0, SystemName: s.Row.SystemName, Sinuosity: num(s.Row.Sinuosity), By: s.By.Credit, At: s.At, Odd: len(findings), Source: s.Row.Source}
 	if s.Current != nil {
 		q.Measured, q.Changes = s.Current.Measurement, len(s.Changes)
 	}
 	return q, nil
-}
-
-// acceptBatch accepts all that waits of one imported file.
-func (p *reviews) acceptBatch(c echo.Context) error {
-	form, err := formOf(c)
-	if err != nil {
-		return err
-	}
-	id, err := idOf(c)
-	if err != nil {
-		return err
-	}
-	n, err := p.store.AcceptBatch(c.Request().Context(), id, p.user(c).ID, form.Get("comment"), nil)
-	if err != nil {
-		return err
-	}
-	p.notice(c, strconv.Itoa(n)+" records accepted.")
-	return c.Redirect(http.StatusSeeOther, "/review")
 }
 
 func (p *reviews) submission(c echo.Context) (*catalogue.Submission, error) {
@@ -125,15 +114,19 @@ func (p *reviews) show(c echo.Context, status int, s *catalogue.Submission, v vi
 		full.ConflictNote = "The record was changed after this was written."
 		full.Conflict = threeWays(&catalogue.VersionConflict{Base: *s.Base, Current: *s.Current, Proposed: full.Row, Since: s.Since, Proposal: catalogue.Diff(s.Base, &full.Row)})
 	}
-	findings, err := p.store.Check(ctx, s.Row)
-	if err != nil {
+	var err error
+	if full.Findings, err = p.findings(ctx, s); err != nil {
 		return err
-	}
-	for _, f := range findings {
-		full.Findings = append(full.Findings, views.ReviewFinding{Column: f.Column, Message: sentence(f.Message, f.Expected), Reason: s.Overrides[f.Key], Hard: f.Hard})
 	}
 	if full.Slug, err = p.slugOf(ctx, s); err != nil {
 		return err
+	}
+	if s.Act == catalogue.ActWithdraw && s.Current != nil {
+		d, err := p.store.System(ctx, s.Current.System)
+		if err != nil {
+			return err
+		}
+		full.Only = len(d.Measurements) == 1
 	}
 	full.NewSystem = full.Slug == ""
 	if full.Next, err = p.next(ctx, s.ID); err != nil {
@@ -142,11 +135,39 @@ func (p *reviews) show(c echo.Context, status int, s *catalogue.Submission, v vi
 	return render(c, status, views.ReviewPage(p.page(c, s.Row.SystemName, "review"), full))
 }
 
+// findings are the checks of a submission that waits, with what its contributor
+// says to them. One that is accepted is checked as the record it became: it is
+// no duplicate of itself.
+func (p *reviews) findings(ctx context.Context, s *catalogue.Submission) (out []views.ReviewFinding, err error) {
+	if s.Act != catalogue.ActEdit {
+		return nil, nil
+	}
+	row := s.Row
+	if s.Accepted != nil {
+		row = *s.Accepted
+	} else if s.State == "accepted" {
+		return nil, nil
+	}
+	findings, err := p.store.Check(ctx, row)
+	if err != nil {
+		return nil, err
+	}
+	for _, f := range findings {
+		out = append(out, views.ReviewFinding{Column: f.Column, Message: sentence(f.Message, f.Expected), Reason: s.Overrides[f.Key], Hard: f.Hard})
+	}
+	return out, nil
+}
+
 // reviewOf is a submission as its page shows it.
 func reviewOf(s *catalogue.Submission) views.Review {
 	row := s.Row
+	if s.Accepted != nil {
+		row = *s.Accepted
+	}
 	row.Normalise()
 	v := views.Review{
+		Act: s.Act, Instead: s.Instead, Edits: s.Edits, Became: s.Became, Seen: s.CurrentRevision,
+
 		ID: s.ID, State: s.State, Row: row, Sinuosity: num(row.Sinuosity), By: s.By.Name, Credit: s.By.Credit, ORCID: s.By.ORCID,
 		At: s.At, Messages: s.Messages, Changes: s.Changes,
 	}
@@ -227,7 +248,7 @@ func (p *reviews) decide(c echo.Context) error {
 	if err != nil {
 		return err
 	}
-	action, err := oneOf(form, "action", "comment", []string{"accept", "return", "comment"})
+	action, err := oneOf(form, "action", "comment", []string{"accept", "return", "comment", "settle"})
 	if err != nil {
 		return err
 	}
@@ -238,8 +259,16 @@ func (p *reviews) decide(c echo.Context) error {
 	ctx, by, comment := c.Request().Context(), p.user(c).ID, form.Get("comment")
 	done, to := "", "/review"
 	switch action {
+	case "settle":
+		return p.settle(c, s, form)
 	case "accept":
-		done, err = s.Row.SystemName+" is accepted and part of the catalogue.", p.store.Accept(ctx, s.ID, by, comment)
+		seen := int64(0) // of an edit what the author saw counts, of the other acts what the curator saw
+		done = s.Row.SystemName + " is accepted and part of the catalogue."
+		if s.Act != catalogue.ActEdit {
+			seen, _ = strconv.ParseInt(form.Get("seen"), 10, 64)
+			done = s.Row.Measurement + map[string]string{catalogue.ActWithdraw: " is withdrawn.", catalogue.ActRestore: " is back in the catalogue."}[s.Act]
+		}
+		err = p.store.AcceptSeen(ctx, s.ID, by, seen, comment)
 	case "return":
 		done, err = s.Row.SystemName+" is returned to its contributor.", p.store.Return(ctx, s.ID, by, comment)
 	case "comment":
@@ -305,7 +334,7 @@ func (p *reviews) activity(c echo.Context) error {
 }
 
 func activityOf(s catalogue.ChangeSet) views.Activity {
-	a := views.Activity{At: s.At, Who: s.Who, Why: s.Why, Created: s.Created, Changed: s.Changed}
+	a := views.Activity{ID: s.ID, At: s.At, Who: s.Who, Why: s.Why, Created: s.Created, Changed: s.Changed, Withdrawn: s.Withdrawn, Back: s.Back, Merged: s.Merged, Undoes: s.Undoes, UndoneBy: s.UndoneBy, Sampled: s.Sampled, SampledOf: s.SampledOf}
 	if s.Author != "" && s.Author != s.Who {
 		a.Author = s.Author
 	}

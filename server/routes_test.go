@@ -10,7 +10,7 @@ import (
 // openToAll lists every route that anyone may read. A new route must be put
 // here or into the table access, so that nobody opens one by forgetting it.
 var openToAll = []string{
-	"/", "/systems", "/systems.csv", "/systems.json", "/systems.geojson", "/systems/dimensions.csv", "/systems/:slug",
+	"/", "/systems", "/systems.csv", "/systems.json", "/systems.geojson", "/systems/dimensions.csv", "/systems/:slug", "/systems/:slug/history", "/systems/:slug/history.json", "/systems/:slug/history.csv", "/measurements/:id",
 	"/regression", "/regression.json", "/regression.csv", "/regression/next", "/regression/next.json", "/figures/regression.svg", "/figures/regression.png", "/figures/regression.pdf",
 	"/expectation", "/expectation.json", "/expectation/time", "/expectation/time.json", "/expectation/report", "/figures/expectation.svg",
 	"/figures/expectation.png", "/figures/expectation.pdf",

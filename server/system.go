@@ -43,7 +43,11 @@ func (a *App) system(c echo.Context) error {
 	if suffix != ".json" && suffix != ".geojson" {
 		suffix = ""
 	}
-	detail, err := a.store.SystemAt(c.Request().Context(), strings.TrimSuffix(slug, suffix), f.Release)
+	slug = strings.TrimSuffix(slug, suffix)
+	detail, err := a.store.SystemAt(c.Request().Context(), slug, f.Release)
+	if err != nil && f.Release == "" && catalogue.CodeOf(err) == catalogue.NotFound {
+		return a.goneOr(c, slug, suffix, err)
+	}
 	if err != nil {
 		return err
 	}

@@ -63,9 +63,7 @@ func (a *App) systemJSON(c echo.Context, d *catalogue.Detail) error {
 	for _, l := range d.Centrelines {
 		out.Centrelines = append(out.Centrelines, centrelineJSON{l.ID, l.Measurement, rawJSON(l.Line), rawJSON(l.Settings), l.Sinuosities})
 	}
-	for _, h := range d.History {
-		out.History = append(out.History, revisionJSON{h.ID, h.At.UTC().Format("2006-01-02T15:04:05Z"), h.Who, h.Why, h.Action, h.Record, h.Field, h.Before, h.After})
-	}
+	out.History = revisionsJSON(d.History)
 	return writeJSON(c, http.StatusOK, out)
 }
 

@@ -85,6 +85,7 @@ type Submitted struct {
 	SystemName string
 	Sinuosity  float64
 	State      string
+	Act        string // edit, withdraw or restore
 	At         time.Time
 	Changes    bool
 	Comment    string

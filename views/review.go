@@ -18,6 +18,10 @@ type Queued struct {
 	Measured   string // measurement id it changes, "" = new
 	Changes    int    // fields changed
 	Odd        int    // warnings
+	Act        string // edit, withdraw or restore
+	Conflict   bool   // its record changed since it was written
+	Said       int    // messages about it
+	LastSaid   string // and who wrote the last
 	Source     string
 }
 
@@ -70,8 +74,22 @@ type ReviewFinding struct {
 }
 
 // ThreeWay is one field of a conflict: as the author saw it, as it is accepted
-// now, and as proposed.
-type ThreeWay struct{ Column, Base, Now, Proposed string }
+// now, and as proposed. Choice is "now", "proposed" or not made yet.
+type ThreeWay struct{ Column, Base, Now, Proposed, Choice string }
+
+// chosen is the choice offered: where only one side changed the field, that
+// side's.
+func (w ThreeWay) chosen() string {
+	switch {
+	case w.Choice != "":
+		return w.Choice
+	case w.Now == w.Proposed || w.Proposed == w.Base:
+		return "now"
+	case w.Now == w.Base:
+		return "proposed"
+	}
+	return ""
+}
 
 // Review is one submission as a curator sees it.
 type Review struct {
@@ -95,16 +113,93 @@ type Review struct {
 	ConflictNote      string
 	Comment           string // typed, kept on error
 	Errors            map[string]string
-	Next              int64 // the next submission of the queue, 0 = none
+	Act, Instead      string                  // edit, withdraw or restore; what stands for a withdrawn record
+	Only              bool                    // the record to be withdrawn is the only one of its system
+	Seen              int64                   // revision of the record as shown
+	Became            string                  // the record an accepted one became
+	Edits             []catalogue.FieldChange // what the curator changed of the proposal
+	Next              int64                   // the next submission of the queue, 0 = none
 }
 
 // Activity is one line of what happened lately.
 type Activity struct {
+	ID               int64
 	At               time.Time
 	Who, Author      string // who accepted it; whose it was, when another's
 	What, Address    string
 	Created, Changed int // records made, fields changed
 	Why              string
+
+	Withdrawn, Back, Merged int   // measurements out and in, systems merged
+	Undoes, UndoneBy        int64 // changes it takes back, or that take it back
+	Sampled, SampledOf      int   // rows of its file that were read, of how many
+}
+
+// BatchPage is one imported file with the sample that is to be read before all
+// of it is accepted.
+type BatchPage struct {
+	ID         int64
+	Who, Why   string
+	At         time.Time
+	Total      int // rows that wait
+	Size, Seed int
+	Bound      int // rows that may be wrong although the sample holds none
+	Rows       []SampledRow
+	Read       []int64 // marked as read
+	Comment    string
+	Errors     map[string]string
+}
+
+// SampledRow is one row of a sample in full.
+type SampledRow struct {
+	ID        int64
+	Place     int // in the file, among what waits
+	Name      string
+	Sinuosity float64
+	Findings  []ReviewFinding
+	Changes   []catalogue.FieldChange // of an accepted record
+	Groups    []RecordGroup
+	Unsaid    []string
+	Read      bool
+}
+
+// ChangeSetPage is what was changed at once.
+type ChangeSetPage struct {
+	ID               int64
+	Set              Activity
+	Submission       int64
+	Undoes, UndoneBy int64
+	Revisions        []catalogue.Revision
+	Sample           *catalogue.Sample
+	Why, Refusal     string
+}
+
+// MergePage makes one system of two.
+type MergePage struct {
+	From, Into      string // slugs as typed
+	View            *catalogue.MergeView
+	Why, OtherNames string
+	Chosen          map[string]string // columns taken from the one that goes
+	TwinsChosen     []string
+	Errors          map[string]string
+}
+
+func (p MergePage) names() string {
+	if p.Chosen != nil {
+		return p.OtherNames
+	}
+	return p.View.OtherNames
+}
+
+// TwinsPage makes one measurement of two.
+type TwinsPage struct {
+	Keep, Drop    string
+	Kept, Dropped *catalogue.Row
+	Revision      int64
+	Changes       []catalogue.FieldChange // Before is the one that stays, After the one that goes
+	Take          []string
+	Why           string
+	Errors        map[string]string
 }
 
 // parsedNumber is the number in a cell, NaN when there is none.

@@ -108,6 +108,10 @@ func (p SystemPage) placement() string {
 	return "Its measurement is not among the rows of the fit."
 }
 
+func (p SystemPage) curates() bool {
+	return p.Page.User != nil && (p.Page.User.Role == "curator" || p.Page.User.Role == "keeper")
+}
+
 type fact struct{ name, value string }
 
 // whatItIs are the facts of the system as a whole and its setting.
@@ -186,14 +190,6 @@ func factLabel(name string) string {
 	name = strings.ReplaceAll(name, "_", " ")
 	name = strings.Replace(strings.Replace(name, " se", ", standard error", 1), "palaeolatitude", "palaeolatitude", 1)
 	return strings.ToUpper(name[:1]) + name[1:]
-}
-
-// actionText is what a revision did.
-func actionText(h catalogue.Revision) string {
-	if h.Field == "" {
-		return ChoiceLabel(h.Action)
-	}
-	return ChoiceLabel(h.Action) + ": " + h.Field
 }
 
 // sourceOf is the address of a source on this page.
