@@ -169,7 +169,7 @@ func (b *houseTab) load(t *testing.T, p housePage, width int64) loaded {
 		t.Fatalf("%s (%s): %v", p.name, p.path, err)
 	}
 	if int(resp.Status) != p.want() {
-		t.Errorf("%s (%s): status %d, want %d", p.name, p.path, resp.Status, p.want())
+		t.Errorf("%s (%s): status %d, want %d\n%.600s", p.name, p.path, resp.Status, p.want(), b.text())
 	}
 	l := evaluate[loaded](t, b.ctx, measureLoad)
 	requests, bytes := mostRequests, mostBytes

@@ -1,6 +1,8 @@
 package main
 
 import (
+	"fmt"
+	"math"
 	"net/http"
 	"net/url"
 	"regexp"
@@ -71,7 +73,7 @@ func (h *house) readersPages() []housePage {
 		{"reader", "expectation-report", "/expectation/report?" + question, 0, ""},
 		{"reader", "expectation-deep-time", "/expectation/deep-time", 0, ""},
 		{"reader", "measure", "/measure", 0, ""},
-		{"reader", "measured", "/measure", 0, typed("main [name=line]", "0 0\n0.02 0.03\n0.05 0.01\n0.07 0.05\n0.1 0.02\n0.13 0.06\n0.17 0.03\n0.2 0.05")},
+		{"reader", "measured", "/measure", 0, sentPlainly("main [name=line]", wanderingLine())},
 		{"reader", "methods", "/methods", 0, ""},
 		{"reader", "dictionary", "/dictionary", 0, ""},
 		{"reader", "sources", "/sources", 0, ""},
@@ -175,10 +177,25 @@ var emptyPages = []housePage{
 	{"empty", "empty-releases", "/releases", 0, ""},
 }
 
+// wanderingLine is a channel of ten bends, 2 km apart.
+func wanderingLine() string {
+	var b strings.Builder
+	for i := range 201 {
+		s := float64(i) / 10
+		fmt.Fprintf(&b, "%.5f %.5f, ", s*0.009, 0.006*math.Sin(s*math.Pi))
+	}
+	return "LINESTRING (" + strings.TrimSuffix(b.String(), ", ") + ")"
+}
+
 // typed fills one control of a form of main and sends the form.
 func typed(selector, text string) string {
 	return `(() => { const c = document.querySelector("` + selector + `"); c.value = ` + "`" + text + "`" + `; const f = c.form; f.noValidate = true;
 		f.requestSubmit(f.querySelector("button.primary") || f.querySelector("button")) })()`
+}
+
+// sentPlainly is typed for a form that a script answers in place: it goes past it.
+func sentPlainly(selector, text string) string {
+	return `(() => { const c = document.querySelector("` + selector + `"); c.value = ` + "`" + text + "`" + `; HTMLFormElement.prototype.submit.call(c.form) })()`
 }
 
 // notPages answer programs: data, files, feeds.

@@ -159,6 +159,11 @@ func (m *measures) readForm(c echo.Context, q url.Values) (*sent, error) {
 	if err != nil {
 		return nil, err
 	}
+	// A browser without scripts sends a file that nobody chose, which is read
+	// as an empty field.
+	if strings.Join(form["file"], "") == "" {
+		form.Del("file")
+	}
 	s := sentOf(form, q)
 	head, err := c.FormFile("file")
 	if err != nil || head.Size == 0 {

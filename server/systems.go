@@ -5,7 +5,9 @@ import (
 	"encoding/csv"
 	"net/http"
 	"net/url"
+	"slices"
 	"strconv"
+	"strings"
 
 	"github.com/labstack/echo/v4"
 
@@ -22,30 +24,63 @@ func (a *App) routesSystems(e *echo.Echo) {
 	get(e, "/systems/:slug", a.system)
 }
 
-// systemsQuestion reads the filter of a page or a twin of it.
-func systemsQuestion(c echo.Context) (url.Values, catalogue.Filter, error) {
+// systemsQuestion reads the filter of a page or a twin of it; more are
+// parameters beside it.
+func systemsQuestion(c echo.Context, more ...string) (url.Values, catalogue.Filter, error) {
 	q, err := params(c)
 	if err != nil {
 		return nil, catalogue.Filter{}, err
 	}
-	if err := allow(q, catalogue.FilterParameters); err != nil {
+	if err := allow(q, catalogue.FilterParameters, more); err != nil {
 		return q, catalogue.Filter{}, err
 	}
 	f, err := filterOf(q)
 	return q, f, err
 }
 
+// tableColumns reads which columns the table shows: names with commas between
+// them, in their order, or the ticked boxes of the form. short is how the
+// choice stands in an address, "" for the usual one.
+func tableColumns(q url.Values) (columns []string, short string, err error) {
+	for _, v := range q["columns"] {
+		for _, name := range strings.Split(v, ",") {
+			switch name = strings.TrimSpace(name); {
+			case name == "" || slices.Contains(columns, name):
+			case !slices.Contains(views.ChoosableColumns, name):
+				return nil, "", &badInput{"columns", strconv.Quote(clip(name)) + " is not a column of this table. Expected names with commas between them, of: " + strings.Join(views.ChoosableColumns, ", ")}
+			default:
+				columns = append(columns, name)
+			}
+		}
+	}
+	if len(q["columns"]) > 1 {
+		columns = views.InTableOrder(columns)
+	}
+	if len(columns) == 0 || slices.Equal(columns, views.TableColumns) {
+		return views.TableColumns, "", nil
+	}
+	return columns, strings.Join(columns, ","), nil
+}
+
 // systems is the filtered table.
 func (a *App) systems(c echo.Context) error {
 	refuse := func(q url.Values, err error) error {
-		return a.filterRefused(c, q, filterPage{title: "Systems", nav: "systems", question: "Channel systems", action: "Show"}, err)
+		return a.filterRefused(c, q, filterPage{title: "Systems", nav: "systems", question: "Channel systems", action: "Show", own: []string{"columns"}}, err)
 	}
-	q, f, err := systemsQuestion(c)
+	q, f, err := systemsQuestion(c, "columns")
 	if err != nil {
 		return refuse(q, err)
 	}
+	columns, short, err := tableColumns(q)
+	if err != nil {
+		return refuse(q, err)
+	}
+	if given := q["columns"]; len(given) > 0 && (len(given) > 1 || given[0] != short) {
+		q.Set("columns", short)
+		return c.Redirect(http.StatusFound, withQuery("/systems", withoutEmpty(q)))
+	}
 	ctx := c.Request().Context()
-	p := views.SystemsPage{Filter: f}
+	p := views.SystemsPage{Filter: f, Columns: columns}
 	if p.Systems, p.Total, err = a.store.Systems(ctx, f); err != nil {
 		return refuse(q, err)
 	}
@@ -59,8 +94,8 @@ func (a *App) systems(c echo.Context) error {
 	p.Wide = true
 	q = withoutEmpty(q)
 	p.Query = q
-	p.JSON = withQuery("/systems.json", q)
 	all := f.Values()
+	p.JSON = withQuery("/systems.json", all)
 	all.Del("page")
 	all.Del("per_page")
 	p.CSV, p.GeoJSON = withQuery("/systems.csv", all), withQuery("/systems.geojson", all)

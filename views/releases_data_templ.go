@@ -329,7 +329,7 @@ func Sources(p SourcesPage) templ.Component {
 				return templ_7745c5c3_Err
 			}
 			if len(p.Sources) > 0 {
-				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 23, "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Sources\"><table class=\"data\"><thead><tr><th scope=\"col\">Source</th><th scope=\"col\">DOI</th><th scope=\"col\" class=\"n\">Systems</th><th scope=\"col\" class=\"n\">Measurements</th></tr></thead> <tbody>")
+				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 23, "<div class=\"scroll high\" tabindex=\"0\" role=\"region\" aria-label=\"Sources\"><table class=\"data\"><thead><tr><th scope=\"col\">Source</th><th scope=\"col\">DOI</th><th scope=\"col\" class=\"n\">Systems</th><th scope=\"col\" class=\"n\">Measurements</th></tr></thead> <tbody>")
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}

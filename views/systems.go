@@ -18,28 +18,7 @@ type SystemsPage struct {
 	Total         int
 	Dimensions    []catalogue.Dimension
 	DimensionsCSV string
-}
-
-// systemsColumn is a column of the table; sort "" is not sortable.
-type systemsColumn struct {
-	sort, text, unit string
-	number           bool
-}
-
-var systemsColumns = []systemsColumn{
-	{"system_name", "System", "", false},
-	{"", "", "", false},
-	{"sinuosity", "Sinuosity", "", true},
-	{"sinuosity_kind", "of", "", false},
-	{"latitude_deg", "Latitude", "degrees", true},
-	{"palaeolatitude_deg", "Palaeolatitude", "degrees", true},
-	{"age_ma", "Age", "Ma", true},
-	{"valley_slope", "Valley slope", "m/m", true},
-	{"channel_width_m", "Width", "m", true},
-	{"channel_depth_m", "Depth", "m", true},
-	{"feeder", "Feeder", "", false},
-	{"parent_deposit", "Parent deposit", "", false},
-	{"grade", "Grade", "", false},
+	Columns       []string // of the table, in order
 }
 
 // sortState is ascending, descending or none.
