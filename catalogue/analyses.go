@@ -19,7 +19,7 @@ type Analysis struct {
 	Why      string
 	Question string // settings, filter and seed, as the query of its address
 	RowCount int
-	Digest   string // SHA-256 of the answer's JSON document, hexadecimal
+	Digest   string // SHA-256 of the numbers of the answer, in the order of its JSON document, hexadecimal
 	Program  string // version of the program that answered
 	Revision int64  // of the catalogue when it was frozen
 	By       string // credit line of who froze it, "" = the command line

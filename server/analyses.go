@@ -1,6 +1,7 @@
 package main
 
 import (
+	"bytes"
 	"context"
 	"crypto/sha256"
 	"encoding/hex"
@@ -25,15 +26,38 @@ func (a *App) routesAnalyses(e *echo.Echo) {
 }
 
 // documentOf is the JSON document of an analysis, byte for byte as it is
-// served, and its digest.
+// served, and the digest of its digits.
 func documentOf(analysis *stats.Analysis) (document []byte, digest string, err error) {
 	b, err := json.Marshal(finite(analysis))
 	if err != nil {
 		return nil, "", err
 	}
-	b = append(b, '\n')
-	sum := sha256.Sum256(b)
-	return b, hex.EncodeToString(sum[:]), nil
+	sum := sha256.Sum256(digitsOf(b))
+	return append(b, '\n'), hex.EncodeToString(sum[:]), nil
+}
+
+// answerParts are the parts of an analysis that are numbers; what is said of
+// them in sentences may be worded better by a later version.
+var answerParts = []string{"rows", "clusters", "models", "comparisons", "shares", "influence", "overturning", "breakpoint"}
+
+// digitsOf are the numbers of a document, in its order, as they are written.
+func digitsOf(document []byte) []byte {
+	var parts map[string]json.RawMessage
+	if json.Unmarshal(document, &parts) != nil {
+		return document
+	}
+	var out []byte
+	for _, name := range answerParts {
+		out = append(append(out, name...), ' ')
+		d := json.NewDecoder(bytes.NewReader(parts[name]))
+		d.UseNumber()
+		for token, err := d.Token(); err == nil; token, err = d.Token() {
+			if n, ok := token.(json.Number); ok {
+				out = append(append(out, n...), ' ')
+			}
+		}
+	}
+	return out
 }
 
 // freeze keeps the analysis of the question in the body under a name.
@@ -151,6 +175,7 @@ func (a *App) frozen(ctx context.Context, name string) (*frozenAnswer, error) {
 		if err := a.recomputedAs(ctx, &out.request); err != nil {
 			return nil, err
 		}
+		out.request.Chosen = views.FilterWords(regressionFilter(out.filter))
 		if out.analysis, err = analyseRows(ctx, kept.Rows, recordedSettings(kept.Settings), out.request); err != nil {
 			return nil, err
 		}

@@ -106,7 +106,7 @@ func runCheck(args []string, in io.Reader, out, errOut io.Writer) int {
 	if err != nil {
 		return c.failed(err)
 	}
-	fmt.Fprintf(out, "%d measurements, %d with a warning, %d faults in the file.\n", rows, odd, len(faults))
+	fmt.Fprintf(out, "%s, %d with a warning, %s in the file.\n", counted(rows, "measurement", "measurements"), odd, counted(len(faults), "fault", "faults"))
 	if len(faults) > 0 {
 		return exitProblem
 	}

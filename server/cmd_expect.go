@@ -105,7 +105,7 @@ func (c *call) expect(targets io.Reader, name string, f catalogue.Filter, base u
 		}
 		return c.failed(err)
 	}
-	fmt.Fprintf(c.err, "%d targets, %d without a result (see the error column).\n", n.Rows, n.Bad)
+	fmt.Fprintf(c.err, "%s, %d without a result (see the error column).\n", counted(n.Rows, "target", "targets"), n.Bad)
 	if n.Bad > 0 {
 		return exitProblem
 	}

@@ -158,7 +158,7 @@ func runExport(args []string, in io.Reader, out, errOut io.Writer) int {
 	if err != nil {
 		return c.failed(err)
 	}
-	fmt.Fprintf(errOut, "%d measurements written.\n", n)
+	fmt.Fprintf(errOut, "%s written.\n", counted(n, "measurement", "measurements"))
 	return exitOK
 }
 

@@ -173,7 +173,7 @@ func printLines(w io.Writer, report *planform.Report) {
 			seen[kind]++
 		}
 	}
-	fmt.Fprintf(w, "\nMeasured: %d lines. The peak stands with its range under half and double the window and the smoothing.\n", len(report.Lines))
+	fmt.Fprintf(w, "\nMeasured: %s. The peak stands with its range under half and double the window and the smoothing.\n", counted(len(report.Lines), "line", "lines"))
 	common := 0
 	for _, kind := range order {
 		if seen[kind] > 1 && common < 6 {

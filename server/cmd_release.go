@@ -65,8 +65,8 @@ func runRelease(args []string, in io.Reader, out, errOut io.Writer) int {
 	if err != nil {
 		return c.failed(err)
 	}
-	fmt.Fprintf(out, "Release %s is frozen: %d measurements of %d systems from %d sources, %d centrelines, licence %s.\nSHA-256 of its table: %s\n",
-		r.Name, r.Measurements, r.Systems, r.Sources, r.Centrelines, r.Licence, r.Checksum)
+	fmt.Fprintf(out, "Release %s is frozen: %s of %s from %s, %s, licence %s.\nSHA-256 of its table: %s\n",
+		r.Name, counted(r.Measurements, "measurement", "measurements"), counted(r.Systems, "system", "systems"), counted(r.Sources, "source", "sources"), counted(r.Centrelines, "centreline", "centrelines"), r.Licence, r.Checksum)
 	if r.Invented > 0 {
 		fmt.Fprintln(out, inventedOf(r.Invented, r.Measurements))
 	}

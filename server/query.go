@@ -109,6 +109,14 @@ func short(x float64) string {
 	return strconv.FormatFloat(x, 'f', -1, 64)
 }
 
+// counted writes a count with its noun.
+func counted(n int, one, many string) string {
+	if n == 1 {
+		return "1 " + one
+	}
+	return strconv.Itoa(n) + " " + many
+}
+
 // nearest is the one of names that text was most likely meant to be, "" when
 // none is near: at most a third of its letters differ.
 func nearest(text string, names []string) string {

@@ -11,6 +11,7 @@ import (
 	"fathombend/catalogue"
 	"fathombend/stats"
 	"fathombend/stats/earth"
+	"fathombend/views"
 )
 
 // statsRows turns catalogue rows into what a regression sees. climate gives the
@@ -76,7 +77,7 @@ func (a *App) analysisKey(ctx context.Context, f catalogue.Filter, req stats.Req
 	if err != nil {
 		return "", err
 	}
-	req.Workers = 0
+	req.Workers, req.Chosen = 0, views.FilterWords(regressionFilter(f))
 	// The view is part of it here too: the key also names the work on its way.
 	return fmt.Sprintf("%sregression|%d|%s|%+v", catalogue.ViewKey(ctx), rev, fitFilter(f, req.Group).Values().Encode(), req), nil
 }
@@ -88,6 +89,7 @@ func (a *App) analyse(ctx context.Context, f catalogue.Filter, req stats.Request
 	if err != nil {
 		return nil, err
 	}
+	req.Chosen = views.FilterWords(regressionFilter(f))
 	f = fitFilter(f, req.Group)
 	req.Workers = runtime.GOMAXPROCS(0)
 	v, err := a.fits.do(ctx, key, func(ctx context.Context) (any, error) {

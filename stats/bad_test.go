@@ -65,12 +65,12 @@ func TestAwkwardRows(t *testing.T) {
 		rows []Row
 		want string // in the failure or headline
 	}{
-		"nothing at all":      {nil, "No rows are left"},
+		"nothing at all":      {nil, "There is no row to fit"},
 		"all missing":         {change(func(_ int, r *Row) { *r = EmptyRow() }), "No rows are left"},
-		"constant response":   {change(func(_ int, r *Row) { r.Sinuosity = 1.5 }), "sinuosities are 1.5"},
-		"all sinuosities 1":   {change(func(_ int, r *Row) { r.Sinuosity = 1 }), "sinuosities are 1,"},
+		"constant response":   {change(func(_ int, r *Row) { r.Sinuosity = 1.5 }), "Every sinuosity is 1.5"},
+		"all sinuosities 1":   {change(func(_ int, r *Row) { r.Sinuosity = 1 }), "Every sinuosity is 1 "},
 		"constant predictor":  {change(func(_ int, r *Row) { r.LatitudeDeg = 30 }), "is the same in all 30 rows"},
-		"one cluster":         {change(func(_ int, r *Row) { r.ParentDeposit = "only" }), "belong to one deposit"},
+		"one cluster":         {change(func(_ int, r *Row) { r.ParentDeposit = "only" }), "come from one deposit"},
 		"two clusters":        {change(func(i int, r *Row) { r.ParentDeposit = []string{"a", "b"}[i%2] }), ""},
 		"rows = coefficients": {base[:2], "too few"},
 		"three rows":          {base[:3], "too few"},

@@ -359,17 +359,17 @@ func (s *study) breakpoint(ctx context.Context) (*Breakpoint, error) {
 				return nil, err
 			}
 		}
-		b.Text = b.sentence(f, s.req)
+		b.Text = b.sentence(f, s)
 		return b, nil
 	}
 	return nil, nil
 }
 
-func (b *Breakpoint) sentence(f *fitted, req *Request) string {
+func (b *Breakpoint) sentence(f *fitted, s *study) string {
 	unit := map[bool]string{true: " degrees"}[f.predictor == "abs_latitude"]
 	text := fmt.Sprintf("The broken line bends at %s%s (%s%s, whole %s resampled); against a straight line p = %s.",
-		number(b.At), unit, between(b.Interval), unit, clusterNoun(req.Cluster), number(b.P))
-	if b.P > 1-req.Level {
+		number(b.At), unit, between(b.Interval), unit, s.t.many(), number(b.P))
+	if b.P > 1-s.req.Level {
 		text += " These rows do not need a breakpoint."
 	}
 	if f.predictor != "abs_latitude" || !b.Interval.known() {

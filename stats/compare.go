@@ -17,7 +17,7 @@ func (s *study) comparisons() []Comparison {
 			if a.failure != "" || b.failure != "" {
 				continue
 			}
-			c := Comparison{A: a.label, B: b.label, Difference: a.r2 - b.r2, Interval: noInterval}
+			c := Comparison{A: a.label, B: b.label, Difference: a.r2 - b.r2, Interval: noInterval, Scale: "sinuosity"}
 			if s.boot != nil {
 				c.Interval = s.difference(i, j)
 			}
@@ -108,7 +108,7 @@ func (s *study) separability(col []Collinearity, comparisons []Comparison) []str
 		case r < together:
 			continue
 		case r < tooAlike:
-			out = append(out, fmt.Sprintf("%s and %s go together on these rows (r = %.2f, variance inflation %s): part of what one goes with is the other's. Fit them jointly (joint=%s,%s).",
+			out = append(out, fmt.Sprintf("%s and %s go together on these rows (r = %.2f, variance inflation %s): part of what one goes with is the other's. Fit them in one model (joint=%s,%s).",
 				upperFirst(nameOf(c.A)), nameOf(c.B), c.Correlation, number(c.VIF), c.A, c.B))
 			continue
 		}
@@ -121,8 +121,8 @@ func (s *study) separability(col []Collinearity, comparisons []Comparison) []str
 			continue
 		}
 		if c.Interval.known() && !c.Interval.excludes(0) {
-			out = append(out, fmt.Sprintf("These rows cannot say whether %s or %s goes better with sinuosity: the difference of R2 (%s minus %s) is %s, with whole %s resampled %s.",
-				nameOf(a.predictor), nameOf(b.predictor), c.A, c.B, number(c.Difference), clusterNoun(s.req.Cluster), between(c.Interval)))
+			out = append(out, fmt.Sprintf("These rows cannot say whether %s or %s goes better with sinuosity: the difference of R2 in sinuosity units (%s less %s) is %s, with whole %s resampled %s.",
+				nameOf(a.predictor), nameOf(b.predictor), nameOf(a.predictor), nameOf(b.predictor), number(c.Difference), s.t.many(), between(c.Interval)))
 		}
 	}
 	return append(out, s.supply()...)
@@ -169,8 +169,8 @@ func (s *study) supply() []string {
 	}
 	slices.SortStableFunc(tied, func(a, b tie) int { return cmp.Compare(b.common, a.common) })
 	t := tied[0]
-	text := fmt.Sprintf("Latitude and supply cannot be separated by these rows: %s goes with %s of the variance of %s (%s); %s alone has R2 %.2f, %s alone %.2f, and %.2f they hold in common.",
-		nameOf(t.category), percent(t.eta), nameOf(lat), plural(t.rows, "row", "rows"), nameOf(lat), t.alone, nameOf(t.category), t.other, t.common)
+	text := fmt.Sprintf("Latitude and supply cannot be separated by these rows: %s goes with %s of the variance of %s (%s); on the scale of %s, %s alone has R2 %.2f, %s alone %.2f, and %.2f they hold in common.",
+		nameOf(t.category), percent(t.eta), nameOf(lat), plural(t.rows, "row", "rows"), scaleName(s.req.Scale), nameOf(lat), t.alone, nameOf(t.category), t.other, t.common)
 	if len(tied) > 1 {
 		var names []string
 		for _, o := range tied[1:] {
@@ -178,7 +178,7 @@ func (s *study) supply() []string {
 		}
 		text += " The same holds for " + list(names) + "."
 	}
-	return []string{text + fmt.Sprintf(" Add systems that break the pattern, or fit both (joint=%s,%s).", lat, t.category)}
+	return []string{text + fmt.Sprintf(" Add systems that break the pattern, or fit both in one model (joint=%s,%s).", lat, t.category)}
 }
 
 // tie is how far latitude and one category of supply go together: R2 of each

@@ -60,7 +60,7 @@ func difference(ctx context.Context, a, b *study, k int) (GroupDifference, error
 		verdict = "differ"
 	}
 	d.Text = fmt.Sprintf("%s: %s is %s in %s and %s in %s; the difference %s [%s], p = %s: they %s.",
-		d.Model, d.Term, number(f.coef[j]), a.kind, number(g.coef[j]), b.kind, number(d.Difference), between(d.Interval), number(d.P), verdict)
+		d.Model, coefficientText(d.Term), number(f.coef[j]), a.kind, number(g.coef[j]), b.kind, number(d.Difference), between(d.Interval), number(d.P), verdict)
 	return d, nil
 }
 

@@ -78,32 +78,44 @@ func (m *Model) anyExcludesZero() bool {
 func (s *study) headline(models []Model) string {
 	k := leading(models)
 	if s.t.n() == 0 {
-		return "No rows are left for this question: nothing can be said. Widen the filter, or ask for fewer predictors at once."
+		return s.nothingLeft()
 	}
 	if k < 0 {
-		return fmt.Sprintf("Nothing can be said from these %s: %s", plural(s.t.n(), "row", "rows"), models[0].Failure)
+		return fmt.Sprintf("Nothing can be said from %s: %s", plural(s.t.n(), "row", "rows"), models[0].Failure)
 	}
 	m := &models[k]
 	if s.boot == nil {
-		return fmt.Sprintf("Nothing is found: all %s belong to one %s, so no interval can be given.", plural(s.t.n(), "row", "rows"), clusterOne(s.req.Cluster))
+		return fmt.Sprintf("Nothing is found: %s one %s, so no interval can be given.", plural(s.t.n(), "row comes from", "rows come from"), s.t.one())
 	}
-	goes := fmt.Sprintf("%s goes with %s of the variance here, whole %s resampled: %s", upperFirst(m.subject()), percent(m.RSquared), clusterNoun(s.req.Cluster), percents(m.RSquaredInterval))
+	goes := fmt.Sprintf("%s goes with %s of the variance here, whole %s resampled: %s", upperFirst(m.subject()), percent(m.RSquared), s.t.many(), percents(m.RSquaredInterval))
 	if s.req.Cluster == "none" {
 		goes = fmt.Sprintf("%s goes with %s of the variance here, rows resampled as if independent: %s", upperFirst(m.subject()), percent(m.RSquared), percents(m.RSquaredInterval))
 	}
 	text := goes + "."
 	switch c := m.slope(); {
 	case !m.Found && m.RSquared < leastShare:
-		text = fmt.Sprintf("Nothing is found: %s goes with no part of the variance here (%s).", m.subject(), m.whyNot(s.req))
+		text = fmt.Sprintf("Nothing is found: %s goes with no part of the variance here (%s).", m.subject(), m.whyNot(s))
 	case !m.Found && m.related():
-		text = goes + fmt.Sprintf(", but it is not a relation to predict from: %s.", m.whyNot(s.req))
+		text = goes + fmt.Sprintf(", but it is not a relation to predict from: %s.", m.whyNot(s))
 	case !m.Found:
-		text = fmt.Sprintf("Nothing is found: %s, which these rows cannot tell from no relation (%s).", lowerFirst(goes), m.whyNot(s.req))
+		text = fmt.Sprintf("Nothing is found: %s, which these rows cannot tell from no relation (%s).", lowerFirst(goes), m.whyNot(s))
 	case m.Form == "joint":
 	case !c.Interval.excludes(0):
-		text = goes + fmt.Sprintf(", but its %s interval holds zero because %s %s carries the estimate.", kindName(c.IntervalKind), clusterOne(s.req.Cluster), m.Carrier)
+		text = goes + fmt.Sprintf(", but its coefficient may lie anywhere from %s, zero included, because %s %s carries the estimate.", between(c.Interval), s.t.one(), m.Carrier)
 	}
 	return text + s.withoutSentence(m)
+}
+
+// nothingLeft says why there are no rows: an empty catalogue cannot be helped
+// by a wider filter.
+func (s *study) nothingLeft() string {
+	if s.t.considered == 0 && s.req.Chosen == "" {
+		return "The catalogue holds no row for this question yet: nothing can be said. Add measurements, or look at another kind of channel."
+	}
+	if s.t.considered == 0 {
+		return "No row passes the filter: nothing can be said. Widen it."
+	}
+	return "No rows are left for this question: nothing can be said. Ask for fewer predictors at once, or widen the filter."
 }
 
 // subject is what a headline speaks of.
@@ -123,16 +135,16 @@ func (m *Model) related() bool {
 }
 
 // whyNot gives the reason a model does not count as found.
-func (m *Model) whyNot(req *Request) string {
-	p := "the sign-flip test gives p = " + number(m.PermutationP)
+func (m *Model) whyNot(s *study) string {
+	p := "p = " + number(m.PermutationP)
 	c := m.slope()
 	switch {
 	case !(m.OutOfSampleR2 > 0):
-		return p + fmt.Sprintf(", and it predicts left-out %s no better than their mean", clusterNoun(req.Cluster))
-	case m.PermutationP <= 1-req.Level && !(m.RSquaredInterval[0] >= leastShare):
-		return p + ", but the interval of R2 reaches down to 0 %"
+		return p + fmt.Sprintf(", and it predicts left-out %s no better than their mean", s.t.many())
+	case m.PermutationP <= 1-s.req.Level && !(m.RSquaredInterval[0] >= leastShare):
+		return p + ", but its share of the variance may be as low as 0 %"
 	case m.Form != "joint" && c != nil && c.Interval.known() && !c.Interval.excludes(0):
-		return p + fmt.Sprintf(", and the %s interval of its coefficient, %s, holds zero", kindName(c.IntervalKind), between(c.Interval))
+		return p + fmt.Sprintf(", and its coefficient may lie anywhere from %s, zero included", between(c.Interval))
 	}
 	return p
 }

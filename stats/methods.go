@@ -2,6 +2,7 @@ package stats
 
 import (
 	"fmt"
+	"slices"
 	"strings"
 )
 
@@ -10,14 +11,15 @@ func (s *study) methodsText(a *Analysis) string {
 	r := s.req
 	var b strings.Builder
 	say := func(format string, args ...any) { fmt.Fprintf(&b, format+" ", args...) }
-	response := map[string]string{"any": "sinuosity (of any kind)", "standardised_peak": fmt.Sprintf("standardised peak sinuosity (expected largest of %d windows)", r.K)}[r.Response]
+	response := map[string]string{"any": "sinuosity", "standardised_peak": fmt.Sprintf("standardised peak sinuosity (expected largest of %s)", plural(r.K, "window", "windows"))}[r.Response]
 	if response == "" {
 		response = r.Response + " sinuosity"
 	}
 	scale := map[string]string{"raw": "untransformed", "ln": "as ln P", "ln_excess": "as ln(P - 1)"}[r.Scale]
-	say("%s, %s unless the form sets its own scale, was regressed on %s in %s from %s and %s (%s).",
-		upperFirst(response), scale, list(mapSlice(predictorsIn(r), nameOf)), plural(a.Rows, "row", "rows"), plural(a.Systems, "system", "systems"),
-		plural(a.Clusters, clusterOne(r.Cluster), clusterNoun(r.Cluster)), droppedText(a.Dropped))
+	say("%s, %s%s, was regressed on %s in %s of %s (%s; %s).",
+		upperFirst(response), scale, map[bool]string{true: " unless the form sets its own scale"}[s.anyOwnScale()], list(mapSlice(predictorsIn(r), nameOf)), plural(a.Rows, "row", "rows"),
+		plural(a.Systems, "system", "systems"), s.clustersText(a.Clusters), droppedText(a.Dropped))
+	say("%s", s.rowsText())
 	if r.Recomputed != "" {
 		say("Sinuosity was measured anew on the stored centrelines, all with one set of settings (recomputation %s%s).", r.Recomputed, prefixed(": ", r.RecomputedAs))
 	}
@@ -39,12 +41,12 @@ func (s *study) methodsText(a *Analysis) string {
 		return strings.TrimSpace(b.String())
 	}
 	say("Reported fits are least squares by QR on centred, scaled columns; fits that are nonlinear in their parameters by damped Gauss-Newton to a relative change of 1e-10.")
-	say("Whole %s were resampled %d times (bootstrap of pairs; Efron & Tibshirani 1993; seed %d, one generator stream a resample).", clusterNoun(r.Cluster), r.Resamples, r.Seed)
+	say("Whole %s were resampled %d times (bootstrap of pairs; Efron & Tibshirani 1993; seed %d, one generator stream a resample).", s.t.many(), r.Resamples, r.Seed)
 	say("%s", intervalText(r))
 	say("Beside them stand the CR2 error with Satterthwaite degrees of freedom (Bell & McCaffrey 2002; Pustejovsky & Tipton 2018), BCa and percentile intervals, and the interval of rows resampled as if independent (BCa, at most 3,999 resamples).")
-	say("R2 is in sinuosity units; its intervals, those of differences of R2 (same resamples, paired) and of Lindeman-Merenda-Gold shares are %s at %s.", statKindText(s.statKind()), percent(r.Level))
+	say("R2 and differences of R2 (same resamples, paired) are in sinuosity units, Lindeman-Merenda-Gold shares on the scale of %s; their intervals are %s at %s.", scaleName(r.Scale), statKindText(s.statKind()), percent(r.Level))
 	say("Out-of-sample R2 leaves each %s out in turn. p values come from %d sign flips of whole %s of the residuals of the null model (%s weights). AICc counts rows as independent.",
-		clusterOne(r.Cluster), r.Permutations, clusterNoun(r.Cluster), weightsText(s.t.cluster.count()))
+		s.t.one(), r.Permutations, s.t.many(), weightsText(s.t.cluster.count()))
 	if r.MeasurementError {
 		say("Stated errors of measurement were drawn anew in every resample.")
 	}
@@ -52,8 +54,8 @@ func (s *study) methodsText(a *Analysis) string {
 	for _, m := range a.Models {
 		if m.Failure == "" && m.slope() != nil {
 			c := m.slope()
-			say("%s: R2 = %.3f [%s], %s = %s [%s] (%s), out-of-sample R2 = %s, p = %s.", upperFirst(m.name()), m.RSquared, between(m.RSquaredInterval),
-				c.Name, number(c.Estimate), between(c.Interval), kindName(c.IntervalKind), number(m.OutOfSampleR2), number(m.PermutationP))
+			say("%s: R2 = %.3f [%s], coefficient of %s = %s [%s] (%s), out-of-sample R2 = %s, p = %s.", upperFirst(m.name()), m.RSquared, between(m.RSquaredInterval),
+				coefficientText(c.Name), number(c.Estimate), between(c.Interval), kindName(c.IntervalKind), number(m.OutOfSampleR2), number(m.PermutationP))
 		}
 	}
 	if a.Breakpoint != nil {
@@ -66,6 +68,61 @@ func (s *study) methodsText(a *Analysis) string {
 		say("%s", x.Text)
 	}
 	return strings.TrimSpace(b.String())
+}
+
+// anyOwnScale says whether a form of the question sets its own response scale.
+func (s *study) anyOwnScale() bool {
+	return slices.ContainsFunc(s.req.Models, func(m ModelSpec) bool { return setsOwnScale(m.Form) })
+}
+
+// clustersText counts what is resampled whole, and the systems that stand for
+// themselves in it because no deposit, source or basin is recorded for them.
+func (s *study) clustersText(clusters int) string {
+	if s.req.Cluster == "none" {
+		return "each row taken for independent"
+	}
+	alone := map[string]bool{}
+	for _, r := range s.t.source {
+		if s.req.Cluster != "system" && clusterLabel(r, s.req.Cluster) == r.System {
+			alone[r.System] = true
+		}
+	}
+	by := strings.ReplaceAll(s.req.Cluster, "_", " ")
+	text := "in " + plural(clusters, s.t.one(), s.t.many())
+	switch {
+	case s.t.unit != s.req.Cluster:
+		return "each standing for itself, as no " + by + " is recorded for any"
+	case len(alone) > 0:
+		text += fmt.Sprintf(", of which %s for want of a recorded %s", plural(len(alone), "is a single system", "are single systems"), by)
+	}
+	return text
+}
+
+// rowsText says which rows these are: kinds of channel, kinds of sinuosity and
+// measured lines as they occur, and the filter.
+func (s *study) rowsText() string {
+	var parts []string
+	of := func(what string, values []string) {
+		if len(values) == 0 {
+			return
+		}
+		text := tally(values)
+		if text == "" {
+			text = strings.ReplaceAll(orUnknown(values[0]), "_", " ") + " throughout"
+		}
+		parts = append(parts, what+": "+text)
+	}
+	of("Kind of channel", s.t.kind)
+	of("sinuosity", s.t.sinuosityKind)
+	of("measured line", s.t.measuredLine)
+	text := ""
+	if len(parts) > 0 {
+		text = strings.Join(parts, "; ") + "."
+	}
+	if s.req.Chosen == "" {
+		return text + " No other filter was set."
+	}
+	return text + " Filter: " + s.req.Chosen + "."
 }
 
 func prefixed(prefix, s string) string {

@@ -31,6 +31,7 @@ type NextAnswer struct {
 	Boxes      []NextBox  `json:"boxes"`    // of the map, 15 by 30 degrees
 	Separation Separation `json:"separation"`
 	Text       []string   `json:"text"`
+	unit       string     // what a cluster is, as a plural
 }
 
 // NextCell is a cell of the latitude-slope grid; Narrowing is the fraction by
@@ -97,7 +98,7 @@ func Next(ctx context.Context, rows []Row, req Request, o NextOptions) (*NextAns
 		a.Text = append(a.Text, "Nothing can be said about the next system: "+f.failure)
 		return a, nil
 	case t.cluster.count() < 4:
-		a.Text = append(a.Text, fmt.Sprintf("Nothing can be said about the next system: there are only %d %s. Widen the filter.", t.cluster.count(), clusterNoun(req.Cluster)))
+		a.Text = append(a.Text, fmt.Sprintf("Nothing can be said about the next system: there are only %d %s. Widen the filter.", t.cluster.count(), t.many()))
 		return a, nil
 	}
 	if err := a.cells(ctx, &req, o, t, f); err != nil {
@@ -276,6 +277,7 @@ func leftOutResiduals(t *table, f *fitted) []float64 {
 
 // count fills bands and boxes.
 func (a *NextAnswer) count(t *table) {
+	a.unit = t.many()
 	for i := range len(nextLatitudes) - 1 {
 		a.Bands = append(a.Bands, NextBand{From: nextLatitudes[i], To: nextLatitudes[i+1]})
 	}
@@ -324,10 +326,10 @@ func (a *NextAnswer) sentences(req *Request) {
 			return 0
 		})
 		if best.Narrowing > 0 {
-			a.Text = append(a.Text, fmt.Sprintf("One more system between %s and %s degrees on a slope of %s to %s m/m would narrow the interval of %s by %s (there %s now).",
-				number(best.LatitudeFrom), number(best.LatitudeTo), number(best.SlopeFrom), number(best.SlopeTo), nameOf(a.Term), percent(best.Narrowing), plural(best.Systems, "system", "systems")))
+			a.Text = append(a.Text, fmt.Sprintf("One more system between %s and %s degrees on a slope of %s to %s m/m would narrow the interval of %s by %s (%s there now).",
+				number(best.LatitudeFrom), number(best.LatitudeTo), number(best.SlopeFrom), number(best.SlopeTo), nameOf(a.Term), percent(best.Narrowing), plural(best.Systems, "system is", "systems are")))
 		} else {
-			a.Text = append(a.Text, "One more system would not be expected to narrow the interval of "+nameOf(a.Term)+" anywhere on the grid: its scatter between "+clusterNoun(req.Cluster)+" is too large. It takes several.")
+			a.Text = append(a.Text, "One more system would not be expected to narrow the interval of "+nameOf(a.Term)+" anywhere on the grid: its scatter between "+a.unit+" is too large. It takes several.")
 		}
 	}
 	empty := 0
@@ -337,7 +339,7 @@ func (a *NextAnswer) sentences(req *Request) {
 		}
 	}
 	if empty > 0 {
-		a.Text = append(a.Text, fmt.Sprintf("%d of the %d cells of latitude and slope hold no system.", empty, len(a.Cells)))
+		a.Text = append(a.Text, fmt.Sprintf("%s no system, of the %d cells of latitude and slope.", plural(empty, "cell holds", "cells hold"), len(a.Cells)))
 	}
 	if a.Separation.Text != "" {
 		a.Text = append(a.Text, a.Separation.Text)

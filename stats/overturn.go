@@ -29,7 +29,7 @@ func (s *study) overturning(ctx context.Context) (*Overturning, error) {
 		return nil, nil
 	}
 	if !c.Interval.excludes(0) {
-		out.Text = fmt.Sprintf("The %s interval of %s (%s) already holds zero: no contrary system is needed.", kindName(c.IntervalKind), c.Name, between(c.Interval))
+		out.Text = fmt.Sprintf("The %s interval of %s (%s) already holds zero: no contrary system is needed.", kindName(c.IntervalKind), coefficientText(c.Name), between(c.Interval))
 		return out, nil
 	}
 	x := append([]float64(nil), f.x...)
@@ -62,7 +62,7 @@ func (s *study) overturning(ctx context.Context) (*Overturning, error) {
 		would = "would be needed for"
 	}
 	out.Text = fmt.Sprintf("%s (%s: sinuosity %s, with %s of %s to %s) %s the interval of %s to hold zero.",
-		upperFirst(count), what, number(level), nameOf(f.predictor), number(sortedQuantile(x, 0.75)), number(x[len(x)-1]), would, c.Name)
+		upperFirst(count), what, number(level), nameOf(f.predictor), number(sortedQuantile(x, 0.75)), number(x[len(x)-1]), would, coefficientText(c.Name))
 	return out, nil
 }
 

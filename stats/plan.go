@@ -20,6 +20,7 @@ type plan struct {
 	y         []float64   // the response in sinuosity units
 	terms     []term
 	levels    []Level
+	none      bool // no row came in at all
 }
 
 // term is a run of columns that stand for one predictor, category or
@@ -61,7 +62,7 @@ func coefficientNames(form, predictor string) []string {
 func slopeIndex(string) int { return 1 }
 
 func newPlan(t *table, m ModelSpec, scale string) *plan {
-	p := &plan{label: m.String(), form: m.Form, predictor: m.Predictor, scale: scaleOf(m.Form, scale),
+	p := &plan{none: t.considered == 0, label: m.String(), form: m.Form, predictor: m.Predictor, scale: scaleOf(m.Form, scale),
 		names: coefficientNames(m.Form, m.Predictor), x: t.predictor[m.Predictor], y: t.y}
 	p.z = scaled(p.scale, t.y)
 	c := make([]float64, t.n())
@@ -85,7 +86,7 @@ func scaled(scale string, y []float64) []float64 {
 // treatment coding against the alphabetically first level, an interaction as
 // the products of its members' columns.
 func newJointPlan(t *table, members []string, interaction [2]string, scale string) *plan {
-	p := &plan{form: "joint", predictor: strings.Join(members, ","), label: "joint:" + strings.Join(members, "+"),
+	p := &plan{none: t.considered == 0, form: "joint", predictor: strings.Join(members, ","), label: "joint:" + strings.Join(members, "+"),
 		scale: scale, names: []string{"intercept"}, y: t.y, z: scaled(scale, t.y)}
 	for _, name := range members {
 		from := len(p.cols)
@@ -145,6 +146,9 @@ func (p *plan) term(name string) term {
 // refusal says in a sentence why the model cannot be fitted, or "".
 func (p *plan) refusal() string {
 	n, k := len(p.y), len(p.names)
+	if n == 0 && p.none {
+		return "There is no row to fit."
+	}
 	if n == 0 {
 		return "No rows are left for this model. Widen the filter, or ask for fewer predictors at once."
 	}
@@ -153,15 +157,15 @@ func (p *plan) refusal() string {
 	}
 	for _, l := range p.levels {
 		if len(l.Levels) < 2 {
-			return fmt.Sprintf("Every row has %s = %s, so there is nothing to compare. Leave %s out.", l.Category, l.Levels[0], l.Category)
+			return fmt.Sprintf("Every row has the %s %q, so there is nothing to compare. Leave %s out.", nameOf(l.Category), strings.ReplaceAll(l.Levels[0], "_", " "), nameOf(l.Category))
 		}
 	}
 	if constant(p.y) {
-		return fmt.Sprintf("All %d sinuosities are %s, so there is nothing to fit. Widen the filter.", n, number(p.y[0]))
+		return fmt.Sprintf("Every sinuosity is %s (%s), so there is nothing to fit. Widen the filter.", number(p.y[0]), plural(n, "row", "rows"))
 	}
 	for j, c := range p.cols {
 		if constant(c) {
-			return fmt.Sprintf("%s is the same in all %d rows, so nothing can be told about it. Widen the filter, or leave it out.", upperFirst(p.names[min(j+1, len(p.names)-1)]), n)
+			return fmt.Sprintf("%s is the same in %s, so nothing can be told about it. Widen the filter, or leave it out.", upperFirst(coefficientText(p.names[min(j+1, len(p.names)-1)])), map[bool]string{true: "the only row", false: fmt.Sprintf("all %d rows", n)}[n == 1])
 		}
 	}
 	return ""

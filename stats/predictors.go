@@ -45,6 +45,21 @@ func predictorOf(r *Row, name, time string) derived {
 	return latitudePredictor(r, name, time)
 }
 
+// storedValue is what the record holds of a predictor, for a row that is left
+// out for it: a slope below zero is shown, not hidden. NaN where nothing is
+// stored or the predictor is derived.
+func storedValue(r *Row, name string) float64 {
+	switch name {
+	case "valley_slope":
+		return r.ValleySlope
+	case "channel_width":
+		return r.ChannelWidthM
+	case "channel_depth":
+		return r.ChannelDepthM
+	}
+	return nan
+}
+
 func positive(x float64, what string) derived {
 	if !finite(x) || x <= 0 {
 		return derived{why: "no " + what}

@@ -99,7 +99,7 @@ func (r Request) validateModels() error {
 			return refuse("model", "%s is asked for twice. Expected once", m)
 		}
 		if setsOwnScale(m.Form) && r.Scale != "raw" {
-			return refuse("scale", "%s cannot be combined with %s, which sets its own response scale. Use scale=raw, or another form", r.Scale, m.Form)
+			return refuse("scale", "%s cannot be combined with %s, which sets its own response scale. Use P itself (scale=raw), or another form", r.Scale, m.Form)
 		}
 		if m.Predictor == "log10_slope" && (m.Form == "logarithmic" || m.Form == "power") {
 			return refuse("model", "%s takes the logarithm of a logarithm. Use %s:valley_slope", m, m.Form)

@@ -79,8 +79,8 @@ func (s *study) thin(f *fitted, side string, fraction float64) Selection {
 	sortFloats(r2)
 	out.Coefficient, out.RSquared = sortedQuantile(coef, 0.5), sortedQuantile(r2, 0.5)
 	out.Range = Interval{sortedQuantile(coef, 0.025), sortedQuantile(coef, 0.975)}
-	out.Text = fmt.Sprintf("With %d of the %d systems of the %s half left out at random, %d times over, the coefficient %s of %s is %s (%s) in place of %s, and R2 %.2f in place of %.2f.",
-		leave, len(picked), halfName(side), thinnings, f.names[j], f.label, number(out.Coefficient), between(out.Range), number(f.coef[j]), out.RSquared, f.r2)
+	out.Text = fmt.Sprintf("With %d of the %s of the %s half left out at random, %d times over, the coefficient of %s in %s is %s (%s) in place of %s, and R2 %.2f in place of %.2f.",
+		leave, plural(len(picked), "system", "systems"), halfName(side), thinnings, coefficientText(f.names[j]), f.label, number(out.Coefficient), between(out.Range), number(f.coef[j]), out.RSquared, f.r2)
 	return out
 }
 

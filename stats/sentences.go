@@ -4,25 +4,28 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"strings"
 )
 
 // fewClusters is the number of clusters under which every interval is warned of.
 const fewClusters = 10
 
-// warnings are all warning sentences of the page.
+// warnings are all warning sentences of the page. Where one advises a setting,
+// the setting's parameter stands in a bracket of its own, (name=value), after
+// the words for it: documents and terminals keep it, pages leave it out.
 func (s *study) warnings(a *Analysis) []string {
 	var out []string
 	add := func(format string, args ...any) { out = append(out, fmt.Sprintf(format, args...)) }
-	g, noun := s.t.cluster.count(), clusterNoun(s.req.Cluster)
+	g, noun := s.t.cluster.count(), s.t.many()
 	switch {
 	case s.t.n() == 0:
 	case g == 1:
-		add("All rows belong to one %s, so no interval or test is possible. Widen the filter, or choose another cluster.", clusterOne(s.req.Cluster))
+		add("All rows belong to one %s, so no interval or test is possible. Widen the filter, or choose another cluster.", s.t.one())
 	case g < fewClusters:
 		add("Only %d %s: every interval here is rough and probably too narrow. Take none of them as settled; widen the filter if you can.", g, noun)
 	}
 	if s.req.Cluster == "none" && s.t.n() > 0 {
-		add("Rows are resampled as if they were independent (cluster=none). Rows of one deposit are not: these intervals are too narrow. Use cluster=parent_deposit.")
+		add("Rows are resampled as if they were independent (cluster=none). Rows of one deposit are not: these intervals are too narrow. Resample whole parent deposits (cluster=parent_deposit).")
 	}
 	out = append(out, s.mixed()...)
 	out = append(out, s.ranges()...)
@@ -47,7 +50,7 @@ func (s *study) warnings(a *Analysis) []string {
 				n++
 			}
 		}
-		add("%s a sinuosity of exactly 1: on scale=ln_excess they would be dropped.", plural(n, "row has", "rows have"))
+		add("%s a sinuosity of exactly 1, which has no ln(P - 1): on that scale (scale=ln_excess) %s would be dropped.", plural(n, "row has", "rows have"), map[bool]string{true: "it", false: "they"}[n == 1])
 	}
 	return append(out, a.Separability...)
 }
@@ -67,12 +70,12 @@ func (s *study) mixed() []string {
 	var out []string
 	if s.req.Response == "any" {
 		if text := tally(s.t.sinuosityKind); text != "" {
-			out = append(out, "The rows mix kinds of sinuosity ("+text+"): a peak is larger than a mean of the same channel, so part of the scatter is definition. Keep to one with response=.")
+			out = append(out, "The rows mix kinds of sinuosity ("+text+"): a peak is larger than a mean of the same channel, so part of the scatter is definition. Keep to one kind where it has rows enough (response=peak, say).")
 		}
 	}
 	if s.req.MeasuredLine == "all" {
 		if text := tally(s.t.measuredLine); text != "" {
-			out = append(out, "The rows mix measured lines ("+text+"): a levee crest is straighter than its thalweg. Keep to one with measured_line=.")
+			out = append(out, "The rows mix measured lines ("+text+"): a levee crest is straighter than its thalweg. Keep to one line where it has rows enough (measured_line=thalweg, say).")
 		}
 	}
 	return out
@@ -89,7 +92,7 @@ func tally(values []string) string {
 	}
 	var parts []string
 	for _, k := range slices.Sorted(mapKeys(count)) {
-		parts = append(parts, fmt.Sprintf("%d %s", count[k], k))
+		parts = append(parts, fmt.Sprintf("%d %s", count[k], strings.ReplaceAll(k, "_", " ")))
 	}
 	return list(parts)
 }
@@ -103,7 +106,7 @@ func (s *study) modelWarnings(m *Model) []string {
 	if m.ResamplesUsed > 0 && m.DegenerateResamples > 0 {
 		advice := "its intervals rest on the others."
 		if 10*m.DegenerateResamples > m.ResamplesUsed {
-			advice = "its intervals rest on the others and are not to be trusted. Leave out the category or predictor that hangs on few " + clusterNoun(s.req.Cluster) + "."
+			advice = "its intervals rest on the others and are not to be trusted. Leave out the category or predictor that hangs on few " + s.t.many() + "."
 		}
 		add("%d of %d resamples could not be fitted; %s", m.DegenerateResamples, m.ResamplesUsed, advice)
 	}
@@ -176,7 +179,7 @@ func disagreement(c *Coefficient, m *Model, s *study) string {
 	if overZero {
 		about = "about zero"
 	}
-	return fmt.Sprintf("the intervals of %s disagree %s (%s), because %s %s carries the estimate. Quote the widest, and say why.", c.Name, about, text, clusterOne(s.req.Cluster), m.Carrier)
+	return fmt.Sprintf("the intervals of %s disagree %s (%s), because %s %s carries the estimate. Quote the widest, and say why.", coefficientText(c.Name), about, text, s.t.one(), m.Carrier)
 }
 
 // clusteringSentence puts the intervals with and without clustering side by
@@ -197,12 +200,12 @@ func clusteringSentence(c *Coefficient, s *study) string {
 	verdict := ""
 	switch {
 	case rows.excludes(0) && !whole.excludes(0):
-		verdict = " Rows taken for independent would say that it matters; whole " + clusterNoun(s.req.Cluster) + " say that it cannot be told."
+		verdict = " Rows taken for independent would say that it matters; whole " + s.t.many() + " say that it cannot be told."
 	case !rows.excludes(0) && whole.excludes(0):
 		verdict = " Only the clustered interval excludes zero."
 	}
 	return fmt.Sprintf("clustering changes the interval of %s by more than half: rows resampled %s, whole %s resampled %s (%s).%s Use the second.",
-		c.Name, between(rows), clusterNoun(s.req.Cluster), between(whole), kinds, verdict)
+		coefficientText(c.Name), between(rows), s.t.many(), between(whole), kinds, verdict)
 }
 
 // leverage warns when one row alone holds more than half of the leverage of an
@@ -220,7 +223,7 @@ func (s *study) leverage(m *Model) string {
 	if !(worst.Leverage > 1) {
 		return ""
 	}
-	return fmt.Sprintf("%s has a leverage of %.2f of 2: 1/%s is ruled by the system nearest to zero. Prefer floor_decay.", worst.SystemName, worst.Leverage, m.Predictor)
+	return fmt.Sprintf("%s has a leverage of %.2f of 2: the inverse of %s is ruled by the system nearest to zero. Prefer a decay to the floor (model=floor_decay:%s).", worst.SystemName, worst.Leverage, nameOf(m.Predictor), m.Predictor)
 }
 
 // Spans under which a predictor hardly varies: a decade of what spans decades, a
@@ -275,10 +278,10 @@ func (s *study) oddSlopes() []string {
 	if odd == 0 {
 		return nil
 	}
-	return []string{fmt.Sprintf("%s a valley slope outside %s to %s m/m (%s: %s): is it degrees or per mille? Such a row can rule a slope fit by itself. Check the record, or leave it out with slope_max=%s.",
-		plural(odd, "row has", "rows have"), number(leastSlope), number(greatestSlope), s.t.label[worst], number(s.t.source[worst].ValleySlope), number(greatestSlope))}
+	return []string{fmt.Sprintf("%s a valley slope outside %s to %s m/m (%s: %s): is it degrees or per mille? Such a row can rule a slope fit by itself. Check the record, or leave it out by a largest valley slope of %s (slope_max=%s).",
+		plural(odd, "row has", "rows have"), number(leastSlope), number(greatestSlope), s.t.label[worst], number(s.t.source[worst].ValleySlope), number(greatestSlope), number(greatestSlope))}
 }
 
 func (s *study) size() string {
-	return fmt.Sprintf("%s in %s", plural(s.t.n(), "row", "rows"), plural(s.t.cluster.count(), clusterOne(s.req.Cluster), clusterNoun(s.req.Cluster)))
+	return fmt.Sprintf("%s in %s", plural(s.t.n(), "row", "rows"), plural(s.t.cluster.count(), s.t.one(), s.t.many()))
 }

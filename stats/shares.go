@@ -194,7 +194,7 @@ func (s *study) reportShares() ([]Share, []Part) {
 	var shares []Share
 	for j, name := range e.members {
 		shares = append(shares, Share{Predictor: name, Share: own[j],
-			Interval: s.statInterval(s.shareJob, j, own[j], columnOf(s.shareJack, j))})
+			Interval: s.statInterval(s.shareJob, j, own[j], columnOf(s.shareJack, j)), Scale: s.req.Scale})
 	}
 	var parts []Part
 	if e.parts {

@@ -145,9 +145,9 @@ func TestReferenceSentences(t *testing.T) {
 	a := analyse(t, referenceRows(t), DefaultRequest())
 	text := strings.Join(a.Warnings, "\n")
 	for _, want := range []string{
-		"linear:valley_slope: clustering changes the interval of valley_slope by more than half",
+		"linear:valley_slope: clustering changes the interval of valley slope by more than half",
 		"Rows taken for independent would say that it matters; whole deposits say that it cannot be told.",
-		"linear:abs_latitude: the intervals of abs_latitude disagree about zero",
+		"linear:abs_latitude: the intervals of latitude disagree about zero",
 		"because deposit C17 carries the estimate",
 		"no regression on them can tell the two apart",
 		"Latitude and supply cannot be separated by these rows",

@@ -5,6 +5,7 @@ import (
 	"math"
 	"slices"
 	"strconv"
+	"strings"
 )
 
 // table is the rows one analysis uses, in the order of the request, complete
@@ -22,7 +23,13 @@ type table struct {
 	sinuosityKind, measuredLine []string
 	cluster                     grouping
 	system                      grouping
+	considered                  int    // rows that came in, before any was dropped
+	unit                        string // what a cluster is: a Clustering, "system" where no row names a deposit
 }
+
+// many and one are what is resampled whole, in words.
+func (t *table) many() string { return clusterNoun(t.unit) }
+func (t *table) one() string  { return clusterOne(t.unit) }
 
 func (t *table) n() int { return len(t.y) }
 
@@ -92,7 +99,7 @@ func clusterLabel(r *Row, by string) string {
 // wantedResponse derives the response of a row, or says why it has none.
 func wantedResponse(r *Row, req *Request) derived {
 	if req.MeasuredLine != "all" && orUnknown(r.MeasuredLine) != req.MeasuredLine {
-		return derived{why: "measured along another line than " + req.MeasuredLine}
+		return derived{why: "measured along another line than " + strings.ReplaceAll(req.MeasuredLine, "_", " ")}
 	}
 	p := r.Sinuosity
 	if req.Recomputed != "" && !finite(p) {
@@ -107,7 +114,7 @@ func wantedResponse(r *Row, req *Request) derived {
 		p = standardisedPeak(r.Windows, req.K)
 	default:
 		if orUnknown(r.SinuosityKind) != req.Response {
-			return derived{why: "sinuosity of another kind than " + req.Response}
+			return derived{why: "sinuosity of another kind than " + strings.ReplaceAll(req.Response, "_", " ")}
 		}
 	}
 	switch {
@@ -191,7 +198,7 @@ func consider(rows []Row, req *Request) []UsedRow {
 			u.Response = d.value
 		}
 		for _, name := range predictors {
-			u.PredictorOf[name] = math.NaN()
+			u.PredictorOf[name] = storedValue(&u.Row, name)
 			if d := predictorOf(&u.Row, name, req.Time); d.why != "" {
 				drop(d.why)
 			} else {
@@ -205,7 +212,7 @@ func consider(rows []Row, req *Request) []UsedRow {
 		}
 		for _, name := range categories {
 			if v := u.Categories[name]; v == "" || v == "unknown" {
-				drop(name + " unknown")
+				drop(nameOf(name) + " unknown")
 			}
 		}
 	}
@@ -334,6 +341,10 @@ func newTable(used []UsedRow, req *Request, kind string) *table {
 		for k := range clusters {
 			clusters[k] = strconv.Itoa(k) // every row by itself, whatever its id
 		}
+	}
+	t.considered, t.unit = len(used), req.Cluster
+	if req.Cluster == "parent_deposit" && !slices.ContainsFunc(t.source, func(r *Row) bool { return r.ParentDeposit != "" }) {
+		t.unit = "system" // rivers, say: no row names a deposit, and each system stands for itself
 	}
 	t.cluster, t.system = newGrouping(clusters), newGrouping(systems)
 	if req.Cluster == "none" {

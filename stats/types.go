@@ -78,6 +78,8 @@ type Request struct {
 	// Recomputed names the recomputation that gave the rows' sinuosities and
 	// windows, "" = they are as stored; RecomputedAs is its settings in words.
 	Recomputed, RecomputedAs string
+	// Chosen is the filter of the catalogue in words, for the methods text.
+	Chosen string
 
 	Workers int // cores to use; no effect on any number
 }
@@ -291,6 +293,7 @@ type Comparison struct {
 	B          string   `json:"b"`
 	Difference float64  `json:"r_squared_difference"`
 	Interval   Interval `json:"interval"`
+	Scale      string   `json:"scale"` // of both R2: always sinuosity units
 }
 
 // Share is one predictor's share of R2 (Lindeman-Merenda-Gold).
@@ -298,6 +301,7 @@ type Share struct {
 	Predictor string   `json:"predictor"`
 	Share     float64  `json:"share"`
 	Interval  Interval `json:"interval"`
+	Scale     string   `json:"scale"` // of the R2 shared out: raw, ln, ln_excess
 }
 
 // Influence says what happens without one system, for the leading model.

@@ -74,6 +74,26 @@ func nameOf(p string) string {
 	return strings.ReplaceAll(p, "_", " ")
 }
 
+// coefficientText names a coefficient: its predictor in words, or the letter or
+// level that it has in its form.
+func coefficientText(name string) string {
+	if name == "intercept" {
+		return "the intercept"
+	}
+	return nameOf(name)
+}
+
+// scaleName is a response scale as it is written.
+func scaleName(scale string) string {
+	switch scale {
+	case "ln":
+		return "ln P"
+	case "ln_excess":
+		return "ln(P - 1)"
+	}
+	return "P"
+}
+
 // clusterNoun is what is resampled whole, as a plural.
 func clusterNoun(by string) string {
 	switch by {

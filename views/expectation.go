@@ -93,6 +93,9 @@ func (p ExpectationPage) sentence() string {
 	where := "A channel at " + latitudeText(r.Palaeolatitude.Value) + " " + p.timeText()
 	q := r.Combined.Sinuosity
 	if q == nil {
+		if r.Rows == 0 && len(p.Filter.Values()) == 0 {
+			return where + ": no expectation can be formed, because the catalogue holds no row to learn from yet. What follows from place and age alone stands below."
+		}
 		return where + ": no expectation can be formed from these rows. Widen the filter of the training rows."
 	}
 	s := where + ": expected " + p.responseName() + " " + fixedText(q.P50, 2) + " [" + fixedText(q.P10, 2) + ", " + fixedText(q.P90, 2) + "]; " +

@@ -107,6 +107,32 @@ func activeFilters(p Page, f catalogue.Filter) []navItem {
 	return out
 }
 
+// FilterWords is a filter in words, as a sentence of a paper has it; "" when
+// nothing is chosen.
+func FilterWords(f catalogue.Filter) string {
+	values := f.Values()
+	var out []string
+	for _, name := range catalogue.FilterParameters {
+		if name == "sort" || name == "page" || name == "per_page" {
+			continue
+		}
+		var parts []string
+		for _, v := range values[name] {
+			parts = append(parts, filterText(name, v))
+		}
+		if len(parts) > 1 { // the label once
+			label, first, _ := strings.Cut(parts[0], ": ")
+			rest := []string{first}
+			for _, p := range parts[1:] {
+				rest = append(rest, strings.TrimPrefix(p, label+": "))
+			}
+			parts = []string{label + ": " + strings.Join(rest, " or ")}
+		}
+		out = append(out, parts...)
+	}
+	return strings.Join(out, "; ")
+}
+
 // sameValue: the address may hold 10.0 where the filter writes 10.
 func sameValue(a, b string) bool {
 	if a == b {

@@ -185,8 +185,8 @@ func measureLevels(m *planform.Measured) []measureLevel {
 		level("Peak", m.PeakSinuosity, m.Sensitivity, "grows with the number of windows"),
 	}
 	if s := m.StandardisedPeak; s != nil {
-		out = append(out, measureLevel{fmt.Sprintf("Standardised peak, %d windows", s.K), sinuosityText(s.Expected), "", "",
-			"standard deviation " + numberText(s.SD, 2) + "; the expected largest of " + strconv.Itoa(s.K) + " windows drawn from these"})
+		out = append(out, measureLevel{"Standardised peak, " + countText(s.K, "window", "windows"), sinuosityText(s.Expected), "", "",
+			"standard deviation " + numberText(s.SD, 2) + "; the expected largest of " + countText(s.K, "window", "windows") + " drawn from these"})
 	}
 	return out
 }

@@ -767,15 +767,15 @@ func RecomputationResult(p RecomputationPage) templ.Component {
 					return templ_7745c5c3_Err
 				}
 				var templ_7745c5c3_Var37 string
-				templ_7745c5c3_Var37, templ_7745c5c3_Err = templ.JoinStringErrs(strconv.Itoa(p.K))
+				templ_7745c5c3_Var37, templ_7745c5c3_Err = templ.JoinStringErrs(countText(p.K, "window", "windows"))
 				if templ_7745c5c3_Err != nil {
-					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/recompute.templ`, Line: 173, Col: 113}
+					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/recompute.templ`, Line: 173, Col: 131}
 				}
 				_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var37))
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}
-				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 63, " windows</a></p>")
+				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 63, "</a></p>")
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}
@@ -1107,15 +1107,15 @@ func recomputationMoves(p RecomputationPage) templ.Component {
 			return templ_7745c5c3_Err
 		}
 		var templ_7745c5c3_Var52 string
-		templ_7745c5c3_Var52, templ_7745c5c3_Err = templ.JoinStringErrs(strconv.Itoa(p.K))
+		templ_7745c5c3_Var52, templ_7745c5c3_Err = templ.JoinStringErrs(countText(p.K, "window", "windows"))
 		if templ_7745c5c3_Err != nil {
-			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/recompute.templ`, Line: 246, Col: 104}
+			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/recompute.templ`, Line: 246, Col: 122}
 		}
 		_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var52))
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 96, " windows</caption> <thead><tr><th scope=\"col\">Level</th><th scope=\"col\" class=\"n\">Lines</th><th scope=\"col\" class=\"n\">Stored</th><th scope=\"col\" class=\"n\">Again</th><th scope=\"col\" class=\"n\">Difference</th><th scope=\"col\" class=\"n\">Least</th><th scope=\"col\" class=\"n\">Most</th></tr></thead> <tbody>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 96, "</caption> <thead><tr><th scope=\"col\">Level</th><th scope=\"col\" class=\"n\">Lines</th><th scope=\"col\" class=\"n\">Stored</th><th scope=\"col\" class=\"n\">Again</th><th scope=\"col\" class=\"n\">Difference</th><th scope=\"col\" class=\"n\">Least</th><th scope=\"col\" class=\"n\">Most</th></tr></thead> <tbody>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}

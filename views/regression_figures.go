@@ -169,7 +169,7 @@ func fitDescription(a *stats.Analysis, panel panelModels) string {
 		}
 		parts = append(parts, s)
 	}
-	return strconv.Itoa(a.Rows) + " rows. " + strings.Join(parts, "; ") + "."
+	return countText(a.Rows, "row", "rows") + ". " + strings.Join(parts, "; ") + "."
 }
 
 // otherVariable is what colour carries: never the variable on the axis. Where

@@ -107,7 +107,7 @@ func responseText(r string, k int) string {
 	case "bend":
 		return "bend sinuosity"
 	case "standardised_peak":
-		return "standardised peak sinuosity (largest of " + strconv.Itoa(k) + " windows)"
+		return "standardised peak sinuosity (largest of " + countText(k, "window", "windows") + ")"
 	}
 	return r + " sinuosity"
 }
@@ -132,6 +132,14 @@ func intervalText(kind string) string {
 		return "rows resampled singly"
 	}
 	return strings.ReplaceAll(kind, "_", " ")
+}
+
+// intervalKindText names the kind of interval of the coefficients.
+func intervalKindText(kind string) string {
+	if kind == "percentile" {
+		return "percentile bootstrap"
+	}
+	return intervalTexts[kind]
 }
 
 // otherKinds lists the interval kinds defined for c beside the one shown, in a
@@ -245,20 +253,48 @@ func (p RegressionPage) ownWarnings() []string {
 	return slices.DeleteFunc(slices.Clone(p.Analysis.Warnings), func(w string) bool { return slices.Contains(p.Analysis.Separability, w) })
 }
 
-// plain writes a sentence with true minus signs and the models by their names:
-// the sentences themselves stay plain text for documents and terminals.
+// plain writes a sentence with true minus signs, the models by their names and
+// without the parameters that stand in brackets: the sentences themselves stay
+// plain text for documents and terminals.
 func (p RegressionPage) plain(s string) string {
 	for _, m := range p.Analysis.Models {
-		name := m.Model
-		if m.Group != "" {
+		name, start := m.Model, false
+		if m.Group != "" && strings.HasPrefix(s, name+" ("+m.Group+")") {
 			name += " (" + m.Group + ")"
+		} else {
+			m.Group = ""
 		}
-		if rest, ok := strings.CutPrefix(s, name+": "); ok {
-			s = upperFirst(modelText(m)) + ": " + rest
-			break
+		start = strings.HasPrefix(s, name)
+		if s = replaceName(s, name, modelText(m)); start {
+			s = upperFirst(s)
 		}
 	}
-	return trueSigns(s)
+	return trueSigns(asides.ReplaceAllString(s, ""))
+}
+
+// asides are the brackets in which a sentence names a parameter.
+var asides = regexp.MustCompile(` \([a-z0-9_]+=[^()]*\)`)
+
+// replaceName puts words for a model's name, not inside a longer one or in the
+// value of a parameter.
+func replaceName(s, name, words string) string {
+	var b strings.Builder
+	for {
+		i := strings.Index(s, name)
+		if i < 0 {
+			b.WriteString(s)
+			return b.String()
+		}
+		end := i + len(name)
+		whole := (i == 0 || !strings.ContainsAny(s[i-1:i], "=_abcdefghijklmnopqrstuvwxyz")) && (end == len(s) || !strings.ContainsAny(s[end:end+1], "_,+abcdefghijklmnopqrstuvwxyz"))
+		b.WriteString(s[:i])
+		if whole {
+			b.WriteString(words)
+		} else {
+			b.WriteString(name)
+		}
+		s = s[end:]
+	}
 }
 
 // signs are hyphens that stand for a minus: before a digit, after a space or a

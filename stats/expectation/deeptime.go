@@ -285,14 +285,14 @@ func deepHeadline(r *DeepTimeResult) string {
 		if c.Preferred == "" {
 			s += fmt.Sprintf("%s or %s: not yet", capital(ruleWords[c.A]), ruleWords[c.B])
 			if !math.IsNaN(c.Needed) && c.Needed > float64(r.AncientClusters) {
-				s += fmt.Sprintf(" (%d ancient deposits; about %s would be needed)", r.AncientClusters, count(c.Needed))
+				s += fmt.Sprintf(" (%s; about %s would be needed)", plural(r.AncientClusters, "ancient deposit", "ancient deposits"), count(c.Needed))
 			} else if r.AncientClusters == 0 {
 				s += " (no ancient rows)"
 			}
 			s += "."
 			continue
 		}
-		s += fmt.Sprintf("%s or %s: the ancient rows prefer %s (%d deposits).", capital(ruleWords[c.A]), ruleWords[c.B], ruleWords[c.Preferred], r.AncientClusters)
+		s += fmt.Sprintf("%s or %s: the ancient rows prefer %s (%s).", capital(ruleWords[c.A]), ruleWords[c.B], ruleWords[c.Preferred], plural(r.AncientClusters, "deposit", "deposits"))
 	}
 	return s
 }

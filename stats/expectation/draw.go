@@ -232,6 +232,9 @@ func (f *Fits) combined(d *draws) Explanation {
 		if len(f.frame.obs) == 0 {
 			c.Failure = "No row with this sinuosity and a latitude is left after filtering. Widen the filter, or ask for another kind of sinuosity."
 		}
+		if len(f.frame.all) == 0 {
+			c.Failure = noRows
+		}
 		return c
 	}
 	c.Sinuosity, c.Coverage = d.mix.quantiles(), f.together

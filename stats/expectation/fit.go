@@ -104,7 +104,7 @@ func fitModel(ctx context.Context, m model, f *frame, r *resampling) *fitted {
 	t := &fitted{design: newDesign(m, f), frame: f, usable: make([]bool, len(f.obs)), x: make([][]float64, len(f.obs)), score: math.NaN()}
 	t.gather()
 	if need := t.fixed + 2; t.clusters < fewestClusters || t.rows < need {
-		t.failure = fmt.Sprintf("It needs at least %d deposits and %d rows with P above 1 that hold what it looks at; there are %d deposits and %d rows. Widen the filter.", fewestClusters, need, t.clusters, t.rows)
+		t.failure = fmt.Sprintf("It needs at least %d deposits and %d rows with P above 1 that hold what it looks at; there are %s and %s. %s", fewestClusters, need, plural(t.clusters, "deposit", "deposits"), plural(t.rows, "row", "rows"), f.more())
 		return t
 	}
 	var xs [][]float64
@@ -116,12 +116,12 @@ func fitModel(ctx context.Context, m model, f *frame, r *resampling) *fitted {
 	}
 	var ok bool
 	if t.beta, ok = leastSquares(xs, ys, ws, t.fixed); !ok {
-		t.failure = "What it looks at does not vary enough on these rows to be fitted. Widen the filter."
+		t.failure = "What it looks at does not vary enough on these rows to be fitted. " + f.more()
 		return t
 	}
 	s := newSolver(t.p)
 	if !s.factor(&t.total, t.fixed) {
-		t.failure = "What it looks at does not vary enough on these rows to be fitted. Widen the filter."
+		t.failure = "What it looks at does not vary enough on these rows to be fitted. " + f.more()
 		return t
 	}
 	t.s, t.df = t.spread(&t.total, s, t.beta, t.clusters)
@@ -143,7 +143,7 @@ func fitModel(ctx context.Context, m model, f *frame, r *resampling) *fitted {
 	}
 	t.poolVariance, t.coefficients = pool.variance(), t.estimates()
 	if t.failure == "" && (len(t.pool) == 0 || (t.sets == 0 && r != nil)) {
-		t.failure = "No deposit can be left out without losing the fit. Widen the filter."
+		t.failure = "No deposit can be left out without losing the fit. " + f.more()
 	}
 	return t
 }

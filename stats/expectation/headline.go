@@ -119,7 +119,7 @@ func (f *Fits) notes(t *Target, p *place, d *draws) []string {
 		out = append(out, fmt.Sprintf("P = 1 has no ln(P - 1): it is expected with the chance it has in the rows (%.1f %%), and the explanations are scored by the continuous ranked probability score.", 100*f.frame.ones))
 	}
 	for _, why := range sortedReasons(f.frame.dropped) {
-		out = append(out, fmt.Sprintf("%d rows left out: %s.", f.frame.dropped[why], why))
+		out = append(out, fmt.Sprintf("%s left out: %s.", plural(f.frame.dropped[why], "row", "rows"), why))
 	}
 	if f.frame.response == "any" {
 		out = append(out, "Peak, mean, bend and reach sinuosities differ by definition; keep to one kind where the rows allow it.")
@@ -130,7 +130,7 @@ func (f *Fits) notes(t *Target, p *place, d *draws) []string {
 		}
 	}
 	if f.common > 0 && f.common < len(f.frame.obs) {
-		out = append(out, fmt.Sprintf("The weights rest on the %d rows that every explanation can be scored on.", f.common))
+		out = append(out, fmt.Sprintf("The weights rest on %s that every explanation can be scored on.", plural(f.common, "row", "rows")))
 	}
 	if f.common == 0 && len(d.mix.draws) > 0 {
 		out = append(out, "No row can be scored under every explanation: the weights are equal.")

@@ -87,7 +87,7 @@ func (q *quantity) assumed() string {
 	case given(q.given):
 		return ""
 	case len(q.from.rows) > 0:
-		return fmt.Sprintf("No %s was given: drawn from %d rows of the catalogue.", q.name, len(q.from.rows))
+		return fmt.Sprintf("No %s was given: drawn from %s of the catalogue.", q.name, plural(len(q.from.rows), "row", "rows"))
 	}
 	return fmt.Sprintf("No %s was given and no row has one: drawn between %g and %g %s, each order of magnitude alike.", q.name, q.lo, q.hi, q.unit)
 }
@@ -200,7 +200,7 @@ func (f *Fits) regimeAssumed(t *Target, q ...*quantity) []string {
 	}
 	if !given(t.RadiusM) {
 		if n := len(f.sized[3].rows); n > 0 {
-			out = append(out, fmt.Sprintf("No bend radius was given: the ratio of radius to width is drawn from %d rows of the catalogue.", n))
+			out = append(out, fmt.Sprintf("No bend radius was given: the ratio of radius to width is drawn from %s of the catalogue.", plural(n, "row", "rows")))
 		} else {
 			out = append(out, fmt.Sprintf("No bend radius was given and no row has one with its width: drawn between %d and %d channel widths, each order of magnitude alike.", fewestWidths, mostWidths))
 		}

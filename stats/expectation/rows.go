@@ -78,7 +78,7 @@ func chooseResponse(rows []stats.Row, o Options) (string, string) {
 	if n >= 12 && len(clusters) >= 8 {
 		return "peak", ""
 	}
-	return "any", fmt.Sprintf("Only %d rows in %d deposits hold a peak sinuosity, too few to fit: sinuosities of every kind are used together.", n, len(clusters))
+	return "any", fmt.Sprintf("Peak sinuosity is held by %s in %s only, too few to fit: sinuosities of every kind are used together.", plural(n, "row", "rows"), plural(len(clusters), "deposit", "deposits"))
 }
 
 func lineFits(r *stats.Row, line string) bool {
@@ -333,4 +333,15 @@ func (f *frame) setLevels() {
 
 func (f *frame) levelOf(factor int, value string) int16 {
 	return int16(slices.Index(f.levels[factor], value))
+}
+
+// noRows is said where nothing was given to learn from: no wider filter helps.
+const noRows = "There is no row to learn from yet."
+
+// more is what would help an explanation that cannot be fitted.
+func (f *frame) more() string {
+	if len(f.all) == 0 {
+		return noRows
+	}
+	return "Widen the filter."
 }

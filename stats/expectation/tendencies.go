@@ -231,7 +231,7 @@ func categoryBase(column, value, words string) func(*Fits) (float64, string) {
 		if rows == 0 {
 			return rate, "no base rate: " + column + " is not filled in any chosen row"
 		}
-		return rate, fmt.Sprintf("%s in %.0f %% of the chosen rows that say (%d rows in %d deposits, deposits alike)", words, 100*rate, rows, deposits)
+		return rate, fmt.Sprintf("%s in %.0f %% of the chosen rows that say (%s in %s, deposits alike)", words, 100*rate, plural(rows, "row", "rows"), plural(deposits, "deposit", "deposits"))
 	}
 }
 
@@ -241,7 +241,7 @@ func sinuousBase(has func(*stats.Row) bool, words string) func(*Fits) (float64, 
 		if rows == 0 {
 			return rate, "no base rate: no chosen row is " + words
 		}
-		return rate, fmt.Sprintf("sinuosity of %g and more in %.0f %% of the %s rows (%d rows in %d deposits, deposits alike)", f.sinuousFrom(), 100*rate, words, rows, deposits)
+		return rate, fmt.Sprintf("sinuosity of %g and more in %.0f %% of the %s rows (%s in %s, deposits alike)", f.sinuousFrom(), 100*rate, words, plural(rows, "row", "rows"), plural(deposits, "deposit", "deposits"))
 	}
 }
 
@@ -256,5 +256,5 @@ func netToGross(f *Fits) (float64, string) {
 	if len(x) == 0 {
 		return math.NaN(), "no base rate: net-to-gross is not filled in any chosen row"
 	}
-	return math.NaN(), fmt.Sprintf("net-to-gross in the chosen rows: median %.2f (%d rows)", weightedQuantiles(x, 0.5)[0], len(x))
+	return math.NaN(), fmt.Sprintf("net-to-gross in the chosen rows: median %.2f (%s)", weightedQuantiles(x, 0.5)[0], plural(len(x), "row", "rows"))
 }

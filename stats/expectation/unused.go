@@ -1,6 +1,7 @@
 package expectation
 
 import (
+	"strconv"
 	"strings"
 
 	"fathombend/stats/earth"
@@ -78,4 +79,12 @@ func listed(items []string) string {
 		return strings.Join(items[:n-1], ", ") + " and " + items[n-1]
 	}
 	return strings.Join(items, "")
+}
+
+// plural writes a count with its noun.
+func plural(n int, one, many string) string {
+	if n == 1 {
+		return "1 " + one
+	}
+	return strconv.Itoa(n) + " " + many
 }
