@@ -1,9 +1,6 @@
 package catalogue
 
-import (
-	"context"
-	"slices"
-)
+import "context"
 
 // Dimension holds quantiles of one dimension over rows that give it. All are
 // in metres but width_depth, a pure number. Without rows they are not given.
@@ -26,49 +23,37 @@ var dimensionExprs = []struct{ name, unit, expr string }{
 // DimensionQuantiles returns the quantiles of the dimensions of the rows under
 // the filter, each over the rows that give it.
 func (s *Store) DimensionQuantiles(ctx context.Context, f Filter) ([]Dimension, error) {
-	w, err := f.condition()
+	out := make([]Dimension, len(dimensionExprs))
+	err := s.indexed(ctx, &f, func(q querier, ix *rowIndex) error {
+		in, err := ix.match(ctx, q, &f)
+		if err != nil {
+			return err
+		}
+		for i, d := range dimensionExprs {
+			values := ix.sizes[i].under(in)
+			out[i] = Dimension{Name: d.name, Unit: d.unit, N: len(values),
+				P10: quantile(values, 0.10), P25: quantile(values, 0.25), P50: quantile(values, 0.50), P75: quantile(values, 0.75), P90: quantile(values, 0.90)}
+		}
+		return nil
+	})
 	if err != nil {
 		return nil, err
 	}
-	query := "SELECT "
-	for i, d := range dimensionExprs {
-		if i > 0 {
-			query += ", "
-		}
-		query += d.expr
+	return out, nil
+}
+
+// under are the values of the rows in in, rising.
+func (s *sizeIndex) under(in []bool) []float64 {
+	if in == nil {
+		return s.values
 	}
-	q, err := at(ctx, s.r, f.Release)
-	if err != nil {
-		return nil, fault("dimensions", err)
-	}
-	rows, err := q.QueryContext(ctx, query+fromRows+w.String(), w.args...)
-	if err != nil {
-		return nil, fault("dimensions", err)
-	}
-	defer rows.Close()
-	values := make([][]float64, len(dimensionExprs))
-	cells := make([]Number, len(dimensionExprs))
-	dest := make([]any, len(dimensionExprs))
-	for i := range cells {
-		dest[i] = &cells[i]
-	}
-	for rows.Next() {
-		if err := rows.Scan(dest...); err != nil {
-			return nil, fault("dimensions", err)
-		}
-		for i, c := range cells {
-			if c.Valid {
-				values[i] = append(values[i], c.V)
-			}
+	values := make([]float64, 0, len(s.values))
+	for k, row := range s.rows {
+		if in[row] {
+			values = append(values, s.values[k])
 		}
 	}
-	out := make([]Dimension, len(dimensionExprs))
-	for i, d := range dimensionExprs {
-		slices.Sort(values[i])
-		out[i] = Dimension{Name: d.name, Unit: d.unit, N: len(values[i]),
-			P10: quantile(values[i], 0.10), P25: quantile(values[i], 0.25), P50: quantile(values[i], 0.50), P75: quantile(values[i], 0.75), P90: quantile(values[i], 0.90)}
-	}
-	return out, fault("dimensions", rows.Err())
+	return values
 }
 
 // quantile is Hyndman and Fan's type 7 (The American Statistician 50:361

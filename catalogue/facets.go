@@ -2,12 +2,8 @@ package catalogue
 
 import (
 	"context"
-	"database/sql"
 	"slices"
 	"sort"
-	"strconv"
-	"strings"
-	"sync"
 )
 
 // FacetLimit is the most values of a free-text column that Facets lists.
@@ -19,224 +15,94 @@ const FacetLimit = 200
 // chosen value is listed even when it counts none. Choices come in the order
 // of the column, free texts by falling count.
 func (s *Store) Facets(ctx context.Context, f Filter) ([]Facet, error) {
-	var ix *facetIndex
-	var under map[int64]bool // rows under the other parameters, nil = all
-	err := s.read(ctx, func(tx *sql.Tx) (err error) {
-		q, err := at(ctx, tx, f.Release)
+	out := make([]Facet, len(ChoiceParameters))
+	err := s.indexed(ctx, &f, func(q querier, ix *rowIndex) error {
+		in, err := ix.under(ctx, q, &f)
 		if err != nil {
 			return err
 		}
-		if ix, err = s.facets.of(ctx, q, f.Release); err != nil {
-			return err
+		for i, counts := range ix.counted(f.Choices, in) {
+			out[i] = Facet{Column: ChoiceParameters[i], Values: ix.values(i, counts, f.Choices[ChoiceParameters[i]])}
 		}
-		under, err = rowsWithoutChoices(ctx, q, f)
-		return err
+		return nil
 	})
 	if err != nil {
 		return nil, err
-	}
-	out := make([]Facet, len(ChoiceParameters))
-	for i, counts := range ix.count(f.Choices, under) {
-		out[i] = Facet{Column: ChoiceParameters[i], Values: ix.values(i, counts, f.Choices[ChoiceParameters[i]])}
 	}
 	return out, nil
 }
 
-// rowsWithoutChoices finds the measurements under all of the filter but its
-// choices; nil when there is nothing else in it.
-func rowsWithoutChoices(ctx context.Context, tx querier, f Filter) (map[int64]bool, error) {
-	f.Choices = nil
-	alone := Filter{Release: f.Release}
-	w, err := f.condition()
-	if err != nil {
-		return nil, err
+// counted is count, once for the page without a filter, which is asked for most.
+func (ix *rowIndex) counted(choices map[string][]string, in []bool) [][]int {
+	if in != nil || slices.ContainsFunc(ChoiceParameters, func(name string) bool { return len(choices[name]) > 0 }) {
+		return ix.count(choices, in)
 	}
-	if all, err := alone.condition(); err != nil || len(w.parts) == len(all.parts) {
-		return nil, err
+	ix.mu.Lock()
+	defer ix.mu.Unlock()
+	if ix.all == nil {
+		ix.all = ix.count(nil, nil)
 	}
-	rows, err := tx.QueryContext(ctx, "SELECT m.id"+fromRows+w.String(), w.args...)
-	if err != nil {
-		return nil, err
-	}
-	defer rows.Close()
-	under := map[int64]bool{}
-	for rows.Next() {
-		var id int64
-		if err := rows.Scan(&id); err != nil {
-			return nil, err
-		}
-		under[id] = true
-	}
-	return under, rows.Err()
-}
-
-// facetIndex holds the choices of every accepted measurement as small numbers.
-type facetIndex struct {
-	revision int64
-	release  string
-	ids      []int64   // measurements, those of one system together
-	systems  []int64   // their systems
-	codes    [][]int32 // per choice parameter and measurement, an index into texts
-	texts    [][]string
-}
-
-// facetIndexes keeps the index of the latest revision, and those of the
-// releases asked for last.
-type facetIndexes struct {
-	mu     sync.Mutex
-	last   *facetIndex
-	frozen []*facetIndex // newest use last
-}
-
-// maxFrozenFacets is how many indexes of releases are kept: each holds some 60
-// bytes a measurement.
-const maxFrozenFacets = 3
-
-// of returns the index of a release, or, without a name, of the catalogue as
-// it is for who asks.
-func (x *facetIndexes) of(ctx context.Context, q querier, release string) (*facetIndex, error) {
-	if release == "" && SeesPrivate(ctx) {
-		var revision int64
-		if err := q.QueryRowContext(ctx, `SELECT coalesce(max(id), 0) FROM revisions`).Scan(&revision); err != nil {
-			return nil, err
-		}
-		release = ViewKey(ctx) + strconv.FormatInt(revision, 10) // no name of a release holds blanks
-	}
-	if release == "" {
-		return x.current(ctx, q)
-	}
-	x.mu.Lock()
-	defer x.mu.Unlock()
-	var ix *facetIndex
-	x.frozen = slices.DeleteFunc(x.frozen, func(have *facetIndex) bool {
-		found := strings.EqualFold(have.release, release)
-		if found {
-			ix = have
-		}
-		return found
-	})
-	if ix == nil {
-		var err error
-		if ix, err = readFacetIndex(ctx, q); err != nil {
-			return nil, err
-		}
-		ix.release = release
-	}
-	x.frozen = append(x.frozen, ix)
-	if len(x.frozen) > maxFrozenFacets {
-		x.frozen = slices.Delete(x.frozen, 0, 1)
-	}
-	return ix, nil
-}
-
-// current returns the index as of the snapshot of tx, reading it anew when the
-// catalogue has changed.
-func (x *facetIndexes) current(ctx context.Context, tx querier) (*facetIndex, error) {
-	var revision int64
-	if err := tx.QueryRowContext(ctx, `SELECT coalesce(max(id), 0) FROM revisions`).Scan(&revision); err != nil {
-		return nil, err
-	}
-	x.mu.Lock()
-	defer x.mu.Unlock()
-	if x.last != nil && x.last.revision == revision {
-		return x.last, nil
-	}
-	ix, err := readFacetIndex(ctx, tx)
-	if err != nil {
-		return nil, err
-	}
-	ix.revision = revision
-	if x.last == nil || x.last.revision < revision {
-		x.last = ix
-	}
-	return ix, nil
-}
-
-func readFacetIndex(ctx context.Context, tx querier) (*facetIndex, error) {
-	n := len(ChoiceParameters)
-	ix := &facetIndex{codes: make([][]int32, n), texts: make([][]string, n)}
-	exprs := make([]string, n)
-	known := make([]map[string]int32, n)
-	cells := make([]any, n+2)
-	dest := make([]any, n+2)
-	for i, name := range ChoiceParameters {
-		c, _ := ColumnByName(name)
-		exprs[i] = c.expr
-		known[i] = map[string]int32{}
-	}
-	for i := range dest {
-		dest[i] = &cells[i]
-	}
-	rows, err := tx.QueryContext(ctx, "SELECT m.id, m.system_id, "+strings.Join(exprs, ", ")+fromRows+" ORDER BY m.system_id")
-	if err != nil {
-		return nil, err
-	}
-	defer rows.Close()
-	for rows.Next() {
-		if err := rows.Scan(dest...); err != nil {
-			return nil, err
-		}
-		id, _ := cells[0].(int64)
-		system, _ := cells[1].(int64)
-		ix.ids, ix.systems = append(ix.ids, id), append(ix.systems, system)
-		for i := range n {
-			text, _ := cells[i+2].(string)
-			code, ok := known[i][text]
-			if !ok {
-				code = int32(len(ix.texts[i]))
-				known[i][text] = code
-				ix.texts[i] = append(ix.texts[i], text)
-			}
-			ix.codes[i] = append(ix.codes[i], code)
-		}
-	}
-	return ix, rows.Err()
+	return ix.all
 }
 
 // count returns, for each choice parameter, the systems by value. A row counts
 // for a parameter when it fails no other one.
-func (ix *facetIndex) count(choices map[string][]string, under map[int64]bool) [][]int {
-	n := len(ChoiceParameters)
-	counts, last, picked := make([][]int, n), make([][]int64, n), make([][]bool, n)
-	for i, name := range ChoiceParameters {
-		counts[i], last[i] = make([]int, len(ix.texts[i])), make([]int64, len(ix.texts[i]))
-		if values := choices[name]; len(values) > 0 {
-			picked[i] = make([]bool, len(ix.texts[i]))
-			for code, text := range ix.texts[i] {
-				picked[i][code] = slices.Contains(values, text)
+func (ix *rowIndex) count(choices map[string][]string, in []bool) [][]int {
+	// Of each row, the only parameter it fails; none, or more than one.
+	const none, several = -1, -2
+	failed := make([]int8, len(ix.ids))
+	for row := range failed {
+		failed[row] = none
+		if in != nil && !in[row] {
+			failed[row] = several
+		}
+	}
+	for i, picked := range ix.picked(choices) {
+		if picked == nil {
+			continue
+		}
+		for row, code := range ix.codes[i] {
+			switch {
+			case picked[code] || failed[row] == several:
+			case failed[row] == none:
+				failed[row] = int8(i)
+			default:
+				failed[row] = several
 			}
 		}
 	}
-	for row, id := range ix.ids {
-		if under != nil && !under[id] {
-			continue
+	counts := make([][]int, len(ChoiceParameters))
+	for i := range counts {
+		counts[i] = make([]int, len(ix.texts[i]))
+		// Rows of one system stand together: the last row that counted for a
+		// value tells whether its system has.
+		last := make([]int32, len(ix.texts[i]))
+		for code := range last {
+			last[code] = -1
 		}
-		failed, which := 0, 0
-		for i := range n {
-			if picked[i] != nil && !picked[i][ix.codes[i][row]] {
-				failed, which = failed+1, i
-			}
-		}
-		for i := range n {
-			if failed > 1 || (failed == 1 && which != i) {
+		for row, code := range ix.codes[i] {
+			if f := failed[row]; f != none && f != int8(i) {
 				continue
 			}
-			// Rows of one system stand together, and ids of systems start at 1.
-			if code := ix.codes[i][row]; last[i][code] != ix.systems[row] {
-				last[i][code] = ix.systems[row]
+			if l := last[code]; l < 0 || ix.systems[l] != ix.systems[row] {
 				counts[i][code]++
 			}
+			last[code] = int32(row)
 		}
 	}
 	return counts
 }
 
 // values lists the counted values of a parameter, and the chosen ones.
-func (ix *facetIndex) values(param int, counts []int, chosen []string) []FacetValue {
+func (ix *rowIndex) values(param int, counts []int, chosen []string) []FacetValue {
 	c, _ := ColumnByName(ChoiceParameters[param])
 	var out []FacetValue
+	least := 1
+	if c.Kind != KindChoice {
+		least = leastOf(counts, FacetLimit)
+	}
 	for code, n := range counts {
-		if text := ix.texts[param][code]; text != "" && (n > 0 || slices.Contains(chosen, text)) {
+		if text := ix.texts[param][code]; text != "" && (n >= least || slices.Contains(chosen, text)) {
 			out = append(out, FacetValue{Value: text, Count: n})
 		}
 	}
@@ -264,4 +130,24 @@ func (ix *facetIndex) values(param int, counts []int, chosen []string) []FacetVa
 		}
 	}
 	return kept
+}
+
+// leastOf is the smallest count worth sorting: as many values as are listed
+// have it or a larger one. It is 1 where fewer values have any.
+func leastOf(counts []int, most int) int {
+	top := 0
+	for _, n := range counts {
+		top = max(top, n)
+	}
+	with := make([]int, top+1)
+	for _, n := range counts {
+		with[n]++
+	}
+	n := top
+	for seen := 0; n > 1; n-- {
+		if seen += with[n]; seen >= most {
+			break
+		}
+	}
+	return max(n, 1)
 }

@@ -111,31 +111,53 @@ func (w *where) addBox(b BBox, release string) {
 	w.add(exact+")", b.West, b.East)
 }
 
+// sortColumn is the column that the filter sorts by, and whether it falls; nil
+// without one.
+func (f *Filter) sortColumn(def string) (c *Column, down bool, err error) {
+	name := f.Sort
+	if name == "" {
+		name = def
+	}
+	if name == "" {
+		return nil, false, nil
+	}
+	if strings.HasPrefix(name, "-") {
+		name, down = name[1:], true
+	}
+	found, ok := ColumnByName(name)
+	if !ok {
+		return nil, false, badParameter("sort", fmt.Sprintf("%q is not a column", Clip(name)), "one of: "+strings.Join(ColumnNames(), ", "))
+	}
+	return &found, down, nil
+}
+
+// sorting is, in SQL, whether a cell of the column is not given, and what its
+// cells are sorted by.
+func (c *Column) sorting() (without, by string) {
+	switch {
+	case c.Name == "grade":
+		return "m.grade_rank IS NULL", "m.grade_rank"
+	case c.Numeric():
+		return c.expr + " IS NULL", c.expr
+	}
+	return c.expr + " = ''", c.expr + " COLLATE NOCASE"
+}
+
 // orderBy sorts by the column of the filter, what is not given last, ties by
 // the order in which the measurements were accepted.
 func (f *Filter) orderBy(def string) (string, error) {
-	sort := f.Sort
-	if sort == "" {
-		sort = def
+	c, down, err := f.sortColumn(def)
+	if err != nil {
+		return "", err
 	}
-	if sort == "" {
+	if c == nil {
 		return " ORDER BY m.id", nil
 	}
-	name, dir := sort, ""
-	if strings.HasPrefix(sort, "-") {
-		name, dir = sort[1:], " DESC"
+	without, by := c.sorting()
+	if down {
+		by += " DESC"
 	}
-	c, ok := ColumnByName(name)
-	if !ok {
-		return "", badParameter("sort", fmt.Sprintf("%q is not a column", Clip(name)), "one of: "+strings.Join(ColumnNames(), ", "))
-	}
-	switch {
-	case c.Name == "grade":
-		return " ORDER BY m.grade_rank" + dir + ", m.id", nil
-	case c.Numeric():
-		return " ORDER BY " + c.expr + " IS NULL, " + c.expr + dir + ", m.id", nil
-	}
-	return " ORDER BY " + c.expr + " = '', " + c.expr + " COLLATE NOCASE" + dir + ", m.id", nil
+	return " ORDER BY " + without + ", " + by + ", m.id", nil
 }
 
 // paging returns the page of the filter as LIMIT and OFFSET.

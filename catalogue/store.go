@@ -29,7 +29,7 @@ type Store struct {
 	// immutable is added to the address of connections when the file lies where
 	// nothing can be written.
 	immutable string
-	facets    facetIndexes
+	index     rowIndexes
 	hashes    chan struct{} // bounds the memory of password hashing
 	now       func() time.Time
 	due       atomic.Int64 // second at which Lift has to look again

@@ -12,55 +12,24 @@ import (
 // filter, with the total number of such systems. Each holds its measurements
 // under the filter, best-graded first; sorting uses the first of them.
 func (s *Store) Systems(ctx context.Context, f Filter) ([]System, int, error) {
-	w, err := f.condition()
-	if err != nil {
+	if _, _, err := f.sortColumn("system"); err != nil {
 		return nil, 0, err
 	}
-	order, err := f.orderBy("system")
-	if err != nil {
-		return nil, 0, err
-	}
-	limit, offset := f.paging()
 	var systems []System
 	var total int
-	err = s.read(ctx, func(tx *sql.Tx) error {
-		q, err := at(ctx, tx, f.Release)
+	err := s.indexed(ctx, &f, func(q querier, ix *rowIndex) error {
+		in, err := ix.match(ctx, q, &f)
 		if err != nil {
 			return err
 		}
-		if err := q.QueryRowContext(ctx, "SELECT count(DISTINCT m.system_id)"+fromRows+w.String(), w.args...).Scan(&total); err != nil {
+		var page []int32
+		if page, total, err = ix.page(ctx, q, &f, in); err != nil || len(page) == 0 {
 			return err
 		}
-		ids, err := systemPage(ctx, q, w, order, limit, offset)
-		if err != nil || len(ids) == 0 {
-			return err
-		}
-		systems, err = systemsByID(ctx, q, w, ids)
+		systems, err = ix.read(ctx, q, in, page)
 		return err
 	})
 	return systems, total, err
-}
-
-// systemPage finds the ids of one page: one representative row a system, its
-// best-graded, then newest under the filter.
-func systemPage(ctx context.Context, db querier, w *where, order string, limit, offset int) ([]int64, error) {
-	q := `SELECT m.system_id FROM (SELECT m.id, row_number() OVER (PARTITION BY m.system_id ORDER BY m.grade_rank, m.id DESC) AS place` +
-		fromRows + w.String() + `) best JOIN measurements m ON m.id = best.id JOIN systems s ON s.id = m.system_id JOIN sources c ON c.id = m.source_id
-		WHERE best.place = 1` + order + ` LIMIT ? OFFSET ?`
-	rows, err := db.QueryContext(ctx, q, append(append([]any{}, w.args...), limit, offset)...)
-	if err != nil {
-		return nil, err
-	}
-	defer rows.Close()
-	var ids []int64
-	for rows.Next() {
-		var id int64
-		if err := rows.Scan(&id); err != nil {
-			return nil, err
-		}
-		ids = append(ids, id)
-	}
-	return ids, rows.Err()
 }
 
 // systemsByID reads the systems in the order of ids, with their rows under w.
