@@ -165,6 +165,7 @@ type ImportOptions struct {
 	By      int64 // account, 0 = the command line
 	Partial bool  // keep the good rows although others are bad
 	Why     string
+	Reading Reading // how the file is read, when not as the contract says
 	// Progress, if set, is told the number of rows read so far, now and then.
 	Progress func(rows int)
 }

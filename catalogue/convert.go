@@ -22,6 +22,7 @@ func buildConversions() map[string]conversion {
 	for _, c := range Columns {
 		if base, ok := strings.CutSuffix(c.Name, "_m"); ok && c.Unit == "m" {
 			m[base+"_km"] = conversion{c.Name, "km", shifted(3)}
+			m[base+"_ft"] = conversion{c.Name, "feet", feet}
 		}
 		if base, ok := strings.CutSuffix(c.Name, "_ma"); ok && c.Unit == "Ma" {
 			m[base+"_ka"] = conversion{c.Name, "ka", shifted(-3)}
@@ -30,6 +31,7 @@ func buildConversions() map[string]conversion {
 	for _, name := range []string{"valley_slope", "channel_slope"} {
 		m[name+"_deg"] = conversion{name, "degrees", slopeOfDegrees}
 		m[name+"_permille"] = conversion{name, "per mille", shifted(-3)}
+		m[name+"_percent"] = conversion{name, "per cent", shifted(-2)}
 		m[name+"_ratio"] = conversion{name, "1:n", slopeOfRatio}
 	}
 	return m
@@ -52,6 +54,12 @@ func shifted(power int) func(string) (float64, error) {
 		}
 		return strconv.ParseFloat(mantissa+"e"+strconv.Itoa(exp+power), 64)
 	}
+}
+
+// feet are international ones, 0.3048 m by definition.
+func feet(text string) (float64, error) {
+	v, err := shifted(0)(text)
+	return v * 0.3048, err
 }
 
 func slopeOfDegrees(text string) (float64, error) {

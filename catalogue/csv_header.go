@@ -3,6 +3,7 @@ package catalogue
 import (
 	"fmt"
 	"slices"
+	"strconv"
 	"strings"
 	"unicode/utf8"
 )
@@ -17,6 +18,7 @@ type cellPlan struct {
 // layout is a header understood.
 type layout struct {
 	cells   []cellPlan
+	reading Reading
 	unknown []string
 	ids     bool // there is a column measurement
 }
@@ -47,6 +49,41 @@ func readHeader(header []string) (layout, []RowProblem) {
 			filled[plan.column.Name] = true
 		}
 		seen[plan.name] = true
+		l.cells = append(l.cells, plan)
+	}
+	l.ids = filled["measurement"]
+	return l, append(problems, missingColumns(filled, l.ids)...)
+}
+
+// matchedHeader is a header whose columns were matched by a person.
+func matchedHeader(header []string, r Reading) (layout, []RowProblem) {
+	l := layout{reading: r}
+	if len(header) != len(r.Columns) {
+		return l, []RowProblem{{Line: 1, Message: fmt.Sprintf("the header has %d columns and %d were matched", len(header), len(r.Columns)), Expected: "the file that was matched"}}
+	}
+	var problems []RowProblem
+	filled, seen := map[string]bool{}, map[string]bool{}
+	for i, name := range r.Columns {
+		plan := cellPlan{name: CleanText(strings.ToValidUTF8(header[i], "\ufffd"))}
+		if plan.name == "" || utf8.RuneCountInString(plan.name) > 60 {
+			plan.name = "column " + strconv.Itoa(i+1)
+		}
+		if name == "" {
+			l.unknown = append(l.unknown, plan.name)
+			l.cells = append(l.cells, plan)
+			continue
+		}
+		as := planCell(name)
+		switch {
+		case as.column == nil:
+			problems = append(problems, RowProblem{Line: 1, Column: plan.name, Value: Clip(name), Message: "there is no such column", Expected: "a column of the measurement table"})
+		case seen[as.name]:
+			problems = append(problems, RowProblem{Line: 1, Column: plan.name, Value: Clip(name), Message: "two columns of the file are read as it", Expected: "each once, or in another unit, of which a row fills one"})
+		default:
+			plan.column, plan.conv = as.column, as.conv
+			filled[as.column.Name] = true
+		}
+		seen[as.name] = true
 		l.cells = append(l.cells, plan)
 	}
 	l.ids = filled["measurement"]
@@ -148,6 +185,14 @@ func (l *layout) fill(r *Row, record []string, note cellNote) {
 // set reads one cell, converting units visibly.
 func (l *layout) set(r *Row, plan cellPlan, text string, converted func(string)) *Error {
 	c := plan.column
+	if c.num != nil && text != "" {
+		plain, err := l.reading.number(text)
+		if err != nil {
+			err.Field = c.Name
+			return err
+		}
+		text = plain
+	}
 	if plan.conv != nil {
 		return setConverted(r, plan, text, converted)
 	}
@@ -180,8 +225,8 @@ func setConverted(r *Row, plan cellPlan, text string, converted func(string)) *E
 	c := plan.column
 	v, err := plan.conv.parse(text)
 	if err != nil {
-		if looksDecimalComma(text) {
-			err = fmt.Errorf("it has a decimal comma; write it with a point")
+		if hint := NumberHint(text, ErrorColumn(c.Name)); hint != "" {
+			return &Error{Code: Invalid, Field: c.Name, Message: hint, Expected: "a number in " + plan.conv.unit + ", with a point as decimal sign"}
 		}
 		return unreadable(c, text, err, "a number in "+plan.conv.unit+", with a point as decimal sign")
 	}

@@ -33,6 +33,7 @@ type importer struct {
 	waiting map[string]int // fingerprint of a row of this file -> line, without publishing
 	near    map[string][]filedPlace
 	ids     map[string]int // measurement id -> line
+	check   *uploadCheck   // the file is checked for a person; nil = it is imported
 }
 
 // Import reads the measurement table. All or nothing, unless Partial; the
@@ -75,6 +76,9 @@ func (im *importer) allowed(ctx context.Context, tx *sql.Tx) error {
 	if err != nil {
 		return err
 	}
+	if err := maySend(ctx, tx, im.o.By); err != nil && im.check == nil {
+		return err
+	}
 	if im.o.Publish && !who.Curates() {
 		return &Error{Code: Forbidden, Message: "only curators publish without review"}
 	}
@@ -102,7 +106,7 @@ func (g *guard) Read(p []byte) (int, error) {
 }
 
 func (im *importer) read(ctx context.Context, r io.Reader) error {
-	br := bufio.NewReader(r)
+	br := bufio.NewReader(im.o.Reading.decoded(r))
 	start, _ := br.Peek(4)
 	switch {
 	case bytes.HasPrefix(start, []byte("\xff\xfe")), bytes.HasPrefix(start, []byte("\xfe\xff")):
@@ -116,6 +120,7 @@ func (im *importer) read(ctx context.Context, r io.Reader) error {
 	}
 	g := &guard{r: br}
 	cr := csv.NewReader(g)
+	cr.Comma = im.o.Reading.comma()
 	g.csv = cr
 	cr.FieldsPerRecord = -1
 	cr.ReuseRecord = true
@@ -127,7 +132,12 @@ func (im *importer) read(ctx context.Context, r io.Reader) error {
 		return err
 	}
 	var problems []RowProblem
-	im.layout, problems = readHeader(header)
+	if im.o.Reading.Columns != nil {
+		im.layout, problems = matchedHeader(header, im.o.Reading)
+	} else {
+		im.layout, problems = readHeader(header)
+		im.layout.reading = im.o.Reading
+	}
 	im.report.UnknownColumns = im.layout.unknown
 	for _, p := range problems {
 		im.problem(p)
@@ -183,13 +193,29 @@ func (im *importer) rows(ctx context.Context, cr *csv.Reader) error {
 		if im.o.Progress != nil && n%500 == 0 {
 			im.o.Progress(n)
 		}
+		if im.check != nil {
+			if err := im.check.reached(ctx, n); err != nil {
+				return err
+			}
+		}
 	}
 }
 
-func (im *importer) problem(p RowProblem) { im.report.Problems = append(im.report.Problems, p) }
+// problem is what refuses a row, or the file.
+func (im *importer) problem(p RowProblem) {
+	if im.check != nil {
+		im.check.problem(p)
+		return
+	}
+	im.report.Problems = append(im.report.Problems, p)
+}
 
 // remark lists a warning or conversion, or counts it when there are too many.
 func (im *importer) remark(list *[]RowProblem, kind string, p RowProblem) {
+	if im.check != nil {
+		im.check.remark(kind, p)
+		return
+	}
 	if len(*list) < maxRemarks {
 		*list = append(*list, p)
 		return

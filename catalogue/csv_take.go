@@ -37,6 +37,9 @@ func (im *importer) take(ctx context.Context, line int, row Row, record []string
 	if ex.current == nil && row.Contributor == "" {
 		row.Contributor, raw.Contributor = im.credit, im.credit
 	}
+	if ex.current == nil && row.Licence == "" {
+		row.Licence, raw.Licence = im.o.Reading.Licence, im.o.Reading.Licence
+	}
 	if !im.o.Publish {
 		return im.propose(ctx, line, raw, &row, ex)
 	}
@@ -109,7 +112,11 @@ func (im *importer) propose(ctx context.Context, line int, raw Row, row *Row, ex
 	if ex.current == nil {
 		im.nearInFile(line, row)
 	}
-	if err := im.submit(ctx, proposed, print, ex); err != nil {
+	if im.check != nil {
+		if err := im.check.keep(line, proposed, print, ex); err != nil {
+			return err
+		}
+	} else if err := im.submit(ctx, proposed, print, ex); err != nil {
 		return err
 	}
 	if ex.current == nil {

@@ -37,7 +37,7 @@ func TestReadCells(t *testing.T) {
 func TestCellUnits(t *testing.T) {
 	slope, _ := ColumnByName("valley_slope")
 	units := slope.CellUnits()
-	if len(units) != 4 || units[0] != (CellUnit{"valley_slope", "m/m"}) {
+	if len(units) != 5 || units[0] != (CellUnit{"valley_slope", "m/m"}) {
 		t.Fatalf("units of slope: %v", units)
 	}
 	for _, u := range units {

@@ -130,9 +130,9 @@ func (c Column) parseNumber(text string) (Number, *Error) {
 	}
 	v, err := strconv.ParseFloat(text, 64)
 	if err != nil || strings.ContainsAny(text, "_xXpP") {
-		msg := strconv.Quote(Clip(text)) + " is not a number"
-		if looksDecimalComma(text) {
-			msg = strconv.Quote(Clip(text)) + " has a decimal comma; write it with a point"
+		msg := NumberHint(text, ErrorColumn(c.Name))
+		if msg == "" {
+			msg = strconv.Quote(Clip(text)) + " is not a number"
 		}
 		return Number{}, c.refuse(msg)
 	}
