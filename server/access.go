@@ -98,6 +98,9 @@ var access = map[string]role{
 	"GET /recompute":                  curator,
 	"POST /recompute":                 curator,
 	"POST /recompute/:name":           curator,
+	"POST /contribute/:id/embargo":    contributor,
+	"GET /review/embargoes":           curator,
+	"POST /review/:id/publish":        curator,
 
 	"POST /releases":           curator,
 	"POST /releases/:name/doi": curator,

@@ -31,6 +31,7 @@ func (a *App) routesContribute(e *echo.Echo) {
 	e.POST("/contribute/:id", p.post)
 	e.POST("/contribute/:id/withdraw", p.withdraw)
 	e.POST("/contribute/:id/comment", p.comment)
+	p.routesPrivate(e)
 }
 
 // blank is an empty form; with ?system= for another measurement of a system,
@@ -44,6 +45,9 @@ func (p *contributions) blank(c echo.Context) error {
 		return err
 	}
 	u := p.user(c)
+	if id := catalogue.PrivateContribution(q.Get("measurement")); id != 0 {
+		return c.Redirect(http.StatusSeeOther, "/contribute/"+strconv.FormatInt(id, 10))
+	}
 	var v url.Values
 	switch {
 	case q.Get("measurement") != "":
@@ -60,7 +64,11 @@ func (p *contributions) blank(c echo.Context) error {
 		row := catalogue.NewRow()
 		row.Contributor = u.Credit
 		if slug := q.Get("system"); slug != "" {
-			if err := p.ofSystem(c.Request().Context(), slug, &row); err != nil {
+			ctx, err := p.store.AsSeenBy(c.Request().Context(), u.ID)
+			if err != nil {
+				return err
+			}
+			if err := p.ofSystem(ctx, slug, &row); err != nil {
 				return err
 			}
 		}
@@ -118,10 +126,18 @@ func (p *contributions) saved(c echo.Context) error {
 	if err != nil {
 		return err
 	}
+	audience, hidden, err := p.audience(c.Request().Context(), s.ID)
+	if err != nil {
+		return err
+	}
+	if hidden != nil && hidden.Embargo {
+		return p.embargoPage(c, http.StatusOK, s, hidden, views.Embargo{})
+	}
 	if s.State == "accepted" || s.State == "withdrawn" || s.Act != catalogue.ActEdit {
 		return render(c, http.StatusOK, views.SettledPage(p.page(c, s.Row.SystemName, "contribute"), reviewOf(s)))
 	}
 	r := recordOf(s)
+	typeAudience(r.typed, audience, hidden)
 	if s.State == "returned" {
 		if err := p.check(c.Request().Context(), r); err != nil {
 			return err
@@ -190,6 +206,9 @@ func (p *contributions) show(c echo.Context, status int, r *record, f views.Cont
 		f.Action += "/" + strconv.FormatInt(f.ID, 10)
 	}
 	p.fill(r, &f)
+	if err := p.seeing(c.Request().Context(), r, &f); err != nil {
+		return err
+	}
 	if err := p.changes(c.Request().Context(), r, &f); err != nil {
 		return err
 	}
@@ -251,9 +270,19 @@ func (p *contributions) mine(c echo.Context) ([]views.Submitted, error) {
 	if err != nil {
 		return nil, err
 	}
+	hidden, err := p.store.HiddenRowsBy(c.Request().Context(), p.user(c).ID)
+	if err != nil {
+		return nil, err
+	}
 	out := make([]views.Submitted, 0, len(all))
 	for i := range all {
-		out = append(out, submitted(&all[len(all)-1-i]))
+		one := submitted(&all[len(all)-1-i])
+		for j := range hidden {
+			if hidden[j].ID == one.ID {
+				one.Hidden = &hidden[j]
+			}
+		}
+		out = append(out, one)
 	}
 	return out, nil
 }
@@ -279,7 +308,7 @@ func (p *contributions) post(c echo.Context) error {
 			return err
 		}
 	}
-	action, err := oneOf(form, "action", "check", []string{"check", "measure", "fill", "save", "submit"})
+	action, err := oneOf(form, "action", "check", []string{"check", "measure", "fill", "save", "keep", "submit"})
 	if err != nil {
 		return err
 	}
@@ -294,7 +323,7 @@ func (p *contributions) post(c echo.Context) error {
 		report.Filled = r.fillFrom(line)
 		r = readRecord(r.typed)
 	}
-	if action == "save" || action == "submit" {
+	if action == "save" || action == "keep" || action == "submit" {
 		return p.keep(c, r, line, f, action)
 	}
 	if action == "check" {
@@ -318,8 +347,10 @@ func (p *contributions) keep(c echo.Context, r *record, line *formLine, f views.
 	if u.Waiting {
 		action = "save" // nothing typed is lost while a curator has not let the person in
 	}
-	refused := f.Line != nil && f.Line.Error != ""
-	if action == "submit" {
+	var audience catalogue.Audience
+	audience, r.seeing = audienceOf(r.typed)
+	refused := f.Line != nil && f.Line.Error != "" || len(r.seeing) > 0
+	if action != "save" {
 		r.need()
 		if err := p.check(ctx, r); err != nil {
 			return err
@@ -332,6 +363,7 @@ func (p *contributions) keep(c echo.Context, r *record, line *formLine, f views.
 		return p.show(c, http.StatusUnprocessableEntity, r, f)
 	}
 	s := r.submission(line)
+	s.Audience = audience
 	key := r.typed.Get("form_token")
 	if key != "" {
 		key = strconv.FormatInt(u.ID, 10) + " " + key
@@ -340,11 +372,8 @@ func (p *contributions) keep(c echo.Context, r *record, line *formLine, f views.
 		if s.ID = f.ID; s.ID == 0 {
 			s.ID = made
 		}
-		if action == "save" {
-			return p.store.SaveDraft(ctx, u.ID, s)
-		}
-		id, err := p.store.Submit(ctx, u.ID, s)
-		if message := r.typed.Get("message"); err == nil && strings.TrimSpace(message) != "" {
+		id, err := p.kept(ctx, u.ID, s, action)
+		if message := r.typed.Get("message"); err == nil && action == "submit" && strings.TrimSpace(message) != "" {
 			err = p.store.Comment(ctx, id, u.ID, message)
 		}
 		return id, err
@@ -352,13 +381,11 @@ func (p *contributions) keep(c echo.Context, r *record, line *formLine, f views.
 	if err != nil {
 		return p.refused(c, r, f, err)
 	}
+	said := keptNotices[action]
 	if asked != action {
-		p.notice(c, "Saved as a draft, not sent: a curator has to let you in first. Send it from here then.")
-	} else if action == "save" {
-		p.notice(c, "The draft is saved.")
-	} else {
-		p.notice(c, "Sent. A curator reads it before it joins the catalogue; you can still change it until then.")
+		said = "Saved as a draft, not sent: a curator has to let you in first. Send it from here then."
 	}
+	p.notice(c, said)
 	return c.Redirect(http.StatusSeeOther, "/contribute/"+strconv.FormatInt(id, 10))
 }
 
@@ -381,6 +408,8 @@ func (p *contributions) refused(c echo.Context, r *record, f views.ContributeFor
 		if r.errors[e.Field] == "" && len(found) == 0 {
 			r.errors[e.Field] = sentence(e.Message, e.Expected)
 		}
+	} else if name, ok := audienceFields[e.Field]; ok {
+		r.seeing = map[string]string{name: sentence(e.Message, e.Expected)}
 	} else {
 		f.Refusal = sentence(e.Message, e.Expected)
 	}

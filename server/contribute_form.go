@@ -17,6 +17,7 @@ type record struct {
 	unread     map[string]string // column -> text of cells that could not be read
 	errors     map[string]string // column -> sentence
 	shown      map[string]string // column -> conversion in words
+	seeing     map[string]string // field about who sees it -> sentence
 	findings   []catalogue.Finding
 	overrides  map[string]string // check -> reason
 	checkedAll bool              // missing fields and reasons count as errors

@@ -25,6 +25,8 @@ func (a *App) routesReview(e *echo.Echo) {
 	get(e, "/review", p.queue)
 	get(e, "/review/activity", p.activity)
 	get(e, "/review/batch/:id", p.batch)
+	get(e, "/review/embargoes", p.embargoes)
+	e.POST("/review/:id/publish", p.publish)
 	e.POST("/review/batch/:id", p.acceptBatch)
 	get(e, "/review/changes/:id", p.changeSet)
 	e.POST("/review/changes/:id", p.undo)
@@ -91,7 +93,11 @@ func (p *reviews) submission(c echo.Context) (*catalogue.Submission, error) {
 	if err != nil {
 		return nil, err
 	}
-	if s.State == "draft" {
+	audience, err := p.store.AudienceOf(c.Request().Context(), id)
+	if err != nil {
+		return nil, err
+	}
+	if s.State == "draft" || audience.Kind == catalogue.AudiencePrivate {
 		return nil, &catalogue.Error{Code: catalogue.NotFound, Message: "There is no such record to review: it is a draft, which only its author sees."}
 	}
 	return s, nil
@@ -109,12 +115,18 @@ func (p *reviews) one(c echo.Context) error {
 func (p *reviews) show(c echo.Context, status int, s *catalogue.Submission, v views.Review) error {
 	ctx := c.Request().Context()
 	full := reviewOf(s)
+	audience, err := p.store.AudienceOf(ctx, s.ID)
+	if err != nil {
+		return err
+	}
+	if s.State == "submitted" {
+		full.Audience = views.AudienceText(audience)
+	}
 	full.Comment, full.Errors, full.Conflict, full.ConflictNote, full.Refused = v.Comment, v.Errors, v.Conflict, v.ConflictNote, v.ConflictNote != ""
 	if s.State == "submitted" && len(s.Since) > 0 && s.Base != nil && !full.Refused {
 		full.ConflictNote = "The record was changed after this was written."
 		full.Conflict = threeWays(&catalogue.VersionConflict{Base: *s.Base, Current: *s.Current, Proposed: full.Row, Since: s.Since, Proposal: catalogue.Diff(s.Base, &full.Row)})
 	}
-	var err error
 	if full.Findings, err = p.findings(ctx, s); err != nil {
 		return err
 	}

@@ -77,6 +77,7 @@ type ContributeForm struct {
 	Messages           []catalogue.Message
 	Curator            bool // a curator edits before accepting
 	Checked            bool // the checks ran and found nothing to mend
+	Seeing             Seeing
 }
 
 // Submitted is one line of a person's list.
@@ -89,6 +90,7 @@ type Submitted struct {
 	At         time.Time
 	Changes    bool
 	Comment    string
+	Hidden     *catalogue.Hidden // its row, when only some people see it
 }
 
 var fieldLabels = map[string]string{

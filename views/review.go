@@ -118,6 +118,7 @@ type Review struct {
 	Seen              int64                   // revision of the record as shown
 	Became            string                  // the record an accepted one became
 	Edits             []catalogue.FieldChange // what the curator changed of the proposal
+	Audience          string                  // who is to see it, when not everybody at once
 	Next              int64                   // the next submission of the queue, 0 = none
 }
 
