@@ -70,6 +70,7 @@ func (a *App) router() *echo.Echo {
 	a.routesTakingAway(e)
 	a.routesStatus(e)
 	a.routesChanges(e)
+	a.routesExample(e)
 	a.routesSettings(e)
 	a.routes = map[string]bool{}
 	for _, r := range e.Routes() {

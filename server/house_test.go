@@ -78,6 +78,8 @@ func (h *house) readersPages() []housePage {
 		{"reader", "dictionary", "/dictionary", 0, ""},
 		{"reader", "sources", "/sources", 0, ""},
 		{"reader", "changes", "/changes", 0, ""},
+		{"reader", "example", "/example", 0, ""},
+		{"reader", "system-history", "/systems/orquathe-main-channel/history", 0, ""},
 		{"reader", "analyses", "/analyses", 0, ""},
 		{"reader", "analysis", analysis, 0, ""},
 		{"reader", "releases", "/releases", 0, ""},
@@ -85,11 +87,14 @@ func (h *house) readersPages() []housePage {
 		{"reader", "difference", "/releases/2031.1/difference/present", 0, ""},
 		{"reader", "recomputed", "/recompute/thirty-widths", 0, ""},
 		{"reader", "sign-in", "/sign-in?return=/contribute", 0, ""},
-		{"reader", "sign-in-wrong", "/sign-in", http.StatusUnauthorized, typed("main #name", "nobody")},
+		{"reader", "sign-in-wrong", "/sign-in", http.StatusUnprocessableEntity, typed("main #name", "nobody")},
 		{"reader", "error-missing", "/nothing-here", http.StatusNotFound, ""},
 		{"reader", "error-question", "/systems?lat_min=91", http.StatusBadRequest, ""},
 		{"reader", "error-forbidden", "/first-curator?token=spent", http.StatusForbidden, ""},
-		{"reader", "welcome", h.invitation(), 0, ""},
+		{"reader", "welcome", h.firstPassword(), 0, ""},
+		{"reader", "join", h.invitation(), 0, ""},
+		{"reader", "register", "/register", 0, ""},
+		{"reader", "measurement-withdrawn", "/measurements/" + withdrawnRecord, http.StatusGone, ""},
 	}
 }
 
@@ -107,8 +112,11 @@ func (h *house) ready(p housePage) {
 	h.t.Fatalf("%s is never done", p.path)
 }
 
-// invitation makes an account that has not chosen its password yet.
-func (h *house) invitation() string {
+// withdrawnRecord is a measurement of the demo that the house has withdrawn.
+const withdrawnRecord = "m000016"
+
+// firstPassword makes an account that has not chosen its password yet.
+func (h *house) firstPassword() string {
 	a := h.who["keeper"].post("/people", url.Values{"name": {"new"}, "credit": {"N. Ewcomer"}, "role": {"contributor"}}).is(http.StatusOK)
 	link, err := url.Parse(a.doc().Find("#link").Text())
 	if err != nil {
@@ -117,8 +125,33 @@ func (h *house) invitation() string {
 	return link.RequestURI()
 }
 
+// invitation opens the registration, has somebody wait for it, and invites
+// somebody else.
+func (h *house) invitation() string {
+	kit, comes := h.who["keeper"], h.visitor()
+	kit.post("/settings", url.Values{"registration": {"open"}, "why": {"the group grows"}}).is(http.StatusOK)
+	form := fillIn(comes.get("/register").is(http.StatusOK).form("main form"), map[string]string{"name": "fen", "credit": "F. Fenn", "about": "forty channels", "password": testPassword, "again": testPassword})
+	comes.post("/register", form).is(http.StatusOK)
+	a := kit.post("/people/invitations", url.Values{"invite_role": {"curator"}, "days": {"3"}, "note": {"for Dee"}}).is(http.StatusOK)
+	link, err := url.Parse(a.doc().Find("#invitation").Text())
+	if err != nil {
+		h.t.Fatal(err)
+	}
+	return link.RequestURI()
+}
+
+// withdraw takes a measurement out of the catalogue.
+func (h *house) withdraw(id string) {
+	ann := h.who["contributor"]
+	form := ann.get("/measurements/" + id + "/withdraw").is(http.StatusOK).form("form.record")
+	form.Set("why", "A survey artefact.")
+	sent := ann.post("/measurements/"+id+"/withdraw", form).is(http.StatusOK)
+	h.who["curator"].post(reviewOfPath(sent), url.Values{"action": {"accept"}, "comment": {"Agreed."}}).is(http.StatusOK)
+}
+
 func (h *house) contributorsPages() []housePage {
 	ann := h.who["contributor"]
+	h.withdraw(withdrawnRecord)
 	// A record that waits, another one kept as a draft, a file with something odd.
 	ann.post("/contribute", press(ann.newRecord(goodRecord()), "submit")).is(http.StatusOK)
 	draft := goodRecord()
@@ -133,6 +166,7 @@ func (h *house) contributorsPages() []housePage {
 		{"contributor", "contribute-draft", saved.url.Path, 0, ""},
 		{"contributor", "upload", "/contribute/upload", 0, ""},
 		{"contributor", "upload-refused", "/contribute/upload", http.StatusUnprocessableEntity, file},
+		{"contributor", "withdraw", "/measurements/m000001/withdraw", 0, ""},
 		{"contributor", "error-role", "/review", http.StatusForbidden, ""},
 	}
 }
@@ -145,14 +179,21 @@ func (h *house) curatorsPages() []housePage {
 	cy.finished("thirty-widths")
 	queue := cy.get("/review").is(http.StatusOK).doc()
 	record, there := queue.Find("table.data tbody th a[href^='/review/']").First().Attr("href")
-	if !there {
-		h.t.Fatal("nothing waits for the curator of the house")
+	batch, more := queue.Find("a[href^='/review/batch/']").First().Attr("href")
+	change, done := cy.get("/review/activity").doc().Find("a[href^='/review/changes/']").First().Attr("href")
+	if !there || !more || !done {
+		h.t.Fatalf("for the curator of the house: a record waits %v, a file waits %v, something changed %v", there, more, done)
 	}
 	return []housePage{
 		{"curator", "review", "/review", 0, ""},
 		{"curator", "review-activity", "/review/activity", 0, ""},
 		{"curator", "review-record", record, 0, ""},
 		{"curator", "review-edit", record + "/edit", 0, ""},
+		{"curator", "review-batch", batch, 0, ""},
+		{"curator", "review-change", change, 0, ""},
+		{"curator", "review-merge", "/review/merge?from=xanthuvel-channel&into=sarquembe-channel", 0, ""},
+		{"curator", "review-merge-rows", "/review/merge/measurements?keep=m000146&drop=m000147", 0, ""},
+		{"curator", "registrations", "/registrations", 0, ""},
 		{"curator", "recompute", "/recompute", 0, ""},
 		{"curator", "releases-freeze", "/releases", 0, ""},
 	}

@@ -22,7 +22,7 @@ var openToAll = []string{
 	"/releases", "/releases.csv", "/releases.json", "/releases/:name", "/releases/:name/difference", "/releases/:name/difference/:other",
 	"/figures/chart.svg", "/figures/chart.png", "/figures/chart.pdf", "/figures/meridian.png", "/figures/meridian.pdf",
 	"/figures/system.svg", "/figures/system.png", "/figures/system.pdf",
-	"/measure", "/methods", "/changes", "/static/*", "/favicon.ico", "/healthz", "/metrics",
+	"/measure", "/methods", "/changes", "/example", "/static/*", "/favicon.ico", "/healthz", "/metrics",
 }
 
 // everyMethod is what a client may try on an address.
