@@ -24,6 +24,10 @@ standard input. The settings are those of the page /measure, as -name value:
   measure -width_m 400 -window_widths 10 channel.geojson
   measure -epsg 32631 -z depth picks.csv
   measure -csv many.gpkg > rows.csv      one row a line, to complete and import
+  measure -csv -kind river -sinuosity_kind reach rivers.geojson > rows.csv
+
+Of the columns of such a row:
+` + measuredColumns + `
 
 Lines that cannot be measured are listed with the reason. Exit 0 when a line was
 measured, 1 when none was, 2 for a bad call.`
@@ -48,7 +52,15 @@ func runMeasure(args []string, in io.Reader, out, errOut io.Writer) int {
 	c := newCall("measure", "measure [-json | -csv] [-name value ...] FILE", measureHelp, in, out, errOut)
 	asJSON := c.flags.Bool("json", false, "print the document of /measure.json")
 	asCSV := c.flags.Bool("csv", false, "print one row a line in the columns of the measurement table")
-	q := url.Values{}
+	q, rows := url.Values{}, url.Values{}
+	c.flags.Func("kind", "with -csv: what the lines are, `submarine`, river or lacustrine (default submarine)", func(v string) error {
+		rows.Set("kind", v)
+		return nil
+	})
+	c.flags.Func("sinuosity_kind", "with -csv: which sinuosity the rows hold, `peak`, p90, mean or reach (default: the peak, or the reach of a line with one window)", func(v string) error {
+		rows.Set("sinuosity_kind", v)
+		return nil
+	})
 	for _, name := range measureParameters {
 		c.flags.Func(name, measureFlagHelp[name], func(v string) error {
 			q.Set(name, v)
@@ -63,6 +75,12 @@ func runMeasure(args []string, in io.Reader, out, errOut io.Writer) int {
 		return c.bad("expected one FILE, got %d", len(rest))
 	case *asJSON && *asCSV:
 		return c.bad("-json and -csv cannot both be asked for")
+	case len(rows) > 0 && !*asCSV:
+		return c.bad("-kind and -sinuosity_kind belong to -csv")
+	}
+	as, err := measuredAsOf(rows)
+	if err != nil {
+		return c.bad("%s", commandMessage(err))
 	}
 	settings, wrong := measureSettings(q)
 	if err := firstWrong(wrong); err != nil {
@@ -84,7 +102,7 @@ func runMeasure(args []string, in io.Reader, out, errOut io.Writer) int {
 		}
 		fmt.Fprintf(out, "%s\n", b)
 	case *asCSV:
-		if err := writeMeasuredRows(out, report); err != nil {
+		if err := writeMeasuredRows(out, report, as); err != nil {
 			return c.failed(err)
 		}
 		printRefused(errOut, report)

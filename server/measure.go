@@ -312,14 +312,21 @@ type measureProblem struct {
 }
 
 // answer measures for the data twins. A nil report means that the answer, a
-// problem document, has been written.
-func (m *measures) answer(c echo.Context) (*planform.Report, error) {
+// problem document, has been written. Parameters of the answer itself, not of
+// the measurement, go to own.
+func (m *measures) answer(c echo.Context, own url.Values, names ...string) (*planform.Report, error) {
 	s, err := m.read(c)
 	if err != nil {
 		return nil, err
 	}
 	s.settings.Del("show")
-	if err := allow(s.settings, measureParameters); err != nil {
+	for _, name := range names {
+		if v, ok := s.settings[name]; ok {
+			own[name] = v
+			s.settings.Del(name)
+		}
+	}
+	if err := allow(s.settings, measureParameters, names); err != nil {
 		return nil, err
 	}
 	settings, wrong := measureSettings(s.settings)
@@ -349,7 +356,7 @@ func (m *measures) answer(c echo.Context) (*planform.Report, error) {
 }
 
 func (m *measures) json(c echo.Context) error {
-	report, err := m.answer(c)
+	report, err := m.answer(c, nil)
 	if report == nil {
 		return err
 	}
@@ -359,12 +366,17 @@ func (m *measures) json(c echo.Context) error {
 // csv gives one row a line in the columns of the measurement table, ready to be
 // completed and imported.
 func (m *measures) csv(c echo.Context) error {
-	report, err := m.answer(c)
+	own := url.Values{}
+	report, err := m.answer(c, own, rowParameters...)
 	if report == nil {
 		return err
 	}
 	var b strings.Builder
-	if err := writeMeasuredRows(&b, report); err != nil {
+	as, err := measuredAsOf(own)
+	if err != nil {
+		return err
+	}
+	if err := writeMeasuredRows(&b, report, as); err != nil {
 		return err
 	}
 	c.Response().Header().Set(echo.HeaderContentDisposition, `attachment; filename="measured.csv"`)

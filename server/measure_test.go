@@ -369,6 +369,21 @@ func TestMeasureCommand(t *testing.T) {
 		t.Errorf("imported and exported:\n%s", back)
 	}
 
+	rivers := mustRun(t, "", "measure", "-csv", "-kind", "river", "-sinuosity_kind", "reach", "../catalogue/planform/testdata/rivers_wdb2.csv.gz")
+	table, err = csv.NewReader(strings.NewReader(rivers)).ReadAll()
+	if err != nil || len(table) != 107 {
+		t.Fatalf("%v: %d rows of rivers", err, len(table))
+	}
+	kind, what := slices.Index(table[0], "kind"), slices.Index(table[0], "sinuosity_kind")
+	for _, r := range table[1:] {
+		if r[kind] != "river" || r[what] != "reach" {
+			t.Fatalf("asked for reaches of rivers, got %s of %s", r[what], r[kind])
+		}
+	}
+	posted := v.request("POST", "/measure.csv?kind=river&sinuosity_kind=mean", "", strings.NewReader(sineKML(90))).is(http.StatusOK)
+	if !strings.Contains(posted.body, ",river,") || !strings.Contains(posted.body, ",mean,") {
+		t.Errorf("the rows of /measure.csv:\n%s", posted.body)
+	}
 	out = mustRun(t, "", "measure", "../catalogue/planform/testdata/rivers_wdb2.csv.gz")
 	if !strings.Contains(out, "Measured: 106 lines") || !strings.Contains(out, "Not measured (8)") || !strings.Contains(out, "106 lines: The line is too coarse for its bends") {
 		t.Errorf("rivers:\n%s", out)
@@ -386,7 +401,11 @@ func TestMeasureCommand(t *testing.T) {
 		{"", []string{"-smooth", "4", file}, exitBadCall, "odd"},
 		{"", []string{"-json", "-csv", file}, exitBadCall, "cannot both"},
 		{"", []string{"-nonsense", file}, exitBadCall, "nonsense"},
+		{"", []string{"-csv", "-kind", "canal", file}, exitBadCall, "lacustrine"},
+		{"", []string{"-csv", "-sinuosity_kind", "bend", file}, exitBadCall, "peak, p90, mean, reach"},
+		{"", []string{"-kind", "river", file}, exitBadCall, "belong to -csv"},
 		{"", []string{"-h"}, exitOK, "GeoPackage"},
+		{"", []string{"-h"}, exitOK, "medians over the bends"},
 	} {
 		code, out, errOut := runCommand(c.stdin, append([]string{"measure"}, c.args...)...)
 		if code != c.code || !strings.Contains(out+errOut, c.says) {

@@ -526,7 +526,7 @@ func measureSettings(p MeasurePage, m *planform.Measured) templ.Component {
 				return templ_7745c5c3_Err
 			}
 		}
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 46, "<div class=\"actions\"><button type=\"submit\" form=\"measure-form\" formaction=\"/measure.json\">All numbers as JSON</button> <button type=\"submit\" form=\"measure-form\" formaction=\"/measure.csv\">Rows to complete and import (CSV)</button></div>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 46, "<div class=\"actions\"><button type=\"submit\" form=\"measure-form\" formaction=\"/measure.json\">All numbers as JSON</button> <button type=\"submit\" form=\"measure-form\" formaction=\"/measure.csv\">Rows to complete and import (CSV)</button> <button type=\"submit\" form=\"measure-form\" formaction=\"/measure.csv?kind=river\">The same as rivers</button></div><p class=\"small measure\">A row holds the peak of the windows, or the sinuosity of the whole reach where the line holds one window only; its column <code>sinuosity_kind</code> says which. To have one kind throughout, ask <code>/measure.csv?sinuosity_kind=reach</code> (or <code>peak</code>, <code>p90</code>, <code>mean</code>).</p>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
@@ -538,7 +538,7 @@ func measureSettings(p MeasurePage, m *planform.Measured) templ.Component {
 			var templ_7745c5c3_Var30 string
 			templ_7745c5c3_Var30, templ_7745c5c3_Err = templruntime.NewAttributeExpression(p.SaveLine).Resolve(ctx)
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/measure_tables.templ`, Line: 120, Col: 61}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/measure_tables.templ`, Line: 125, Col: 61}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ_7745c5c3_Var30)
 			if templ_7745c5c3_Err != nil {
@@ -551,7 +551,7 @@ func measureSettings(p MeasurePage, m *planform.Measured) templ.Component {
 			var templ_7745c5c3_Var31 string
 			templ_7745c5c3_Var31, templ_7745c5c3_Err = templruntime.NewAttributeExpression(p.SaveSettings).Resolve(ctx)
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/measure_tables.templ`, Line: 121, Col: 74}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/measure_tables.templ`, Line: 126, Col: 74}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ_7745c5c3_Var31)
 			if templ_7745c5c3_Err != nil {
@@ -569,7 +569,7 @@ func measureSettings(p MeasurePage, m *planform.Measured) templ.Component {
 				var templ_7745c5c3_Var32 string
 				templ_7745c5c3_Var32, templ_7745c5c3_Err = templruntime.NewAttributeExpression(strconv.FormatFloat(*m.Width, 'g', -1, 64)).Resolve(ctx)
 				if templ_7745c5c3_Err != nil {
-					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/measure_tables.templ`, Line: 123, Col: 99}
+					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/measure_tables.templ`, Line: 128, Col: 99}
 				}
 				_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ_7745c5c3_Var32)
 				if templ_7745c5c3_Err != nil {

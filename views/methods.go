@@ -58,6 +58,13 @@ func planformSettings() []setting {
 		{"window_bends", strconv.Itoa(planform.DefaultWindowBends), "window in bends, where no width is known"},
 		{"min_bend_widths", strconv.Itoa(planform.DefaultMinBendWidths), "shorter bends are dropped"},
 		{"k", strconv.Itoa(planform.DefaultK), "windows of the standardised peak"},
+		{"spacing_m", "from the line", "spacing of the points the line is resampled to, metres; give one to read lines of different spacing alike"},
+		{"smooth", "11, or two channel widths", "points of the smoothing filter, odd; 1 is none"},
+		{"along", "given", "arcs along the given vertices, or the resampled points where a spacing is asked for"},
+		{"lines", "centrelines", "what several lines are: centrelines, banks (pairs, whose middle is measured), levels (pairs of an older and a younger course)"},
+		{"z", "from the file", "what the third coordinate is: depth, elevation or time; time gives no slope"},
+		{"direction", "down the slope", "as_given or reversed; without depths the order of the vertices is taken as down-channel"},
+		{"epsg", "4326", "what the coordinates are: WGS84 degrees, a UTM zone, or plane metres with no place"},
 	}
 }
 
@@ -117,22 +124,4 @@ var formSources = map[string]string{
 var predictorTexts = map[string]string{
 	"valley_slope": "S_v, m/m; rows with a slope of 0 or below are kept out", "abs_latitude": "|latitude|, degrees, at the time of deposition",
 	"sin_abs_latitude": "sin |latitude|, at the time of deposition", "coriolis": "|f| = 2 Ω(age) sin |latitude|, in 10⁻⁴ s⁻¹", "channel_width": "W, m",
-}
-
-// tendencyRow is one facies tendency with its source and grade.
-type tendencyRow struct{ condition, text, source, grade string }
-
-var tendencyRows = []tendencyRow{
-	{"submarine belts in general", "Vertical accretion rules; a belt is about 9 times as wide as thick, against 72 in rivers (297 belts).", "Geology 44:931 (2016)", "strong"},
-	{"submarine belts in general", "More than 3 channel depths of superelevation before avulsion, against 1 in rivers.", "Front. Earth Sci. 8:53 (2020)", "strong"},
-	{"sinuous, aggrading, leveed", "Bends grow, then stop; ribbon sand bodies.", "J. Sediment. Res. 70:434 (2000)", "moderate to strong"},
-	{"sinuous, aggrading, leveed", "Little down-valley sweep, few cut-offs.", "J. Sediment. Res. 70:434 (2000); many three-dimensional surveys show both", "contested"},
-	{"sinuous, confined, little aggradation", "Lateral accretion packages on inner bends, erosion at outer bends.", "Mar. Pet. Geol. 20:631 (2003)", "moderate"},
-	{"low sinuosity, steep", "Narrow; bypass and coarse lag; small levees.", "J. Sediment. Res. 77:433 (2007)", "moderate"},
-	{"mud-dominated point source", "Large, persistent leveed channels that tend to meander.", "J. Geol. Soc. 148:427 (1991)", "moderate to strong"},
-	{"coarser calibre", "Steeper, shorter-lived, switching channels.", "J. Geol. Soc. 148:427 (1991)", "moderate to strong"},
-	{"bends rule (|Ro_R| much above 1)", "Deposition alternates from bank to bank; overspill at outer bends.", "Geophys. Res. Lett. 37:L17603 (2010); J. Geol. Soc. 172:161 (2015), doi 10.1144/jgs2014-043", "experiments strong, field moderate"},
-	{"Coriolis rules (|Ro_R| < 1, Ro_W below about 5)", "The interface tilts to the same side in every bend; one levee is higher along the whole reach (right in the northern hemisphere, looking downstream).", "Geophys. Res. Lett. 37:L17603 (2010); Phil. Trans. R. Soc. A 371:20120366 (2013)", "levees strong, low sinuosity contested"},
-	{"very high latitude (one margin, 72 to 76° N)", "Near-vertical fill, little lateral migration, thick asymmetric levees, sinuosity at most 1.38 on about 0.3°.", "Front. Earth Sci. 10:976852 (2022)", "moderate; climate also plausible"},
-	{"any", "Which bank the sand of the channel floor lies on: no side is stated, since sources differ by layer.", "J. Geophys. Res. Oceans 115:C11016 (2010); Terra Nova 25:65 (2013)", "insufficient"},
 }

@@ -396,6 +396,15 @@ func (p RegressionPage) diagnosticCaption() string {
 	return s
 }
 
+// inventedCaption is the note a figure carries when rows behind it are
+// invented.
+func inventedCaption(n int) string {
+	if n == 0 {
+		return ""
+	}
+	return upperFirst(countText(n, "row is", "rows are")) + " invented."
+}
+
 // nextHref asks where the next system should be measured, on the same rows.
 func (p RegressionPage) nextHref() templ.SafeURL {
 	q := p.Filter.Values()

@@ -40,6 +40,14 @@ func lineOf(l SystemLine) string {
 	return " of " + l.Measurement
 }
 
+// inventedSystem is said under every picture of an invented system.
+func inventedSystem(p SystemPage) string {
+	if p.best().Invented {
+		return " Invented: a program drew this system."
+	}
+	return ""
+}
+
 func planCaption(l SystemLine) string {
 	m := l.Measured
 	return fmt.Sprintf("The stored line%s in local kilometres, %d vertices at a median spacing of %s m, %.1f km long over a chord of %.1f km; ring: upstream end%s. Sinuosity of the whole reach %s.",

@@ -3,6 +3,7 @@ package expectation
 import (
 	"fmt"
 	"math"
+	"strings"
 
 	"fathombend/stats"
 )
@@ -201,6 +202,18 @@ func statements(c *facies, t *Target) []statement {
 		{text: "Which bank the sand of the channel floor lies on: no side is stated, the sources differ by layer.", condition: "any",
 			source: "J. Geophys. Res. Oceans 115:C11016 (2010); Terra Nova 25:65 (2013)", grade: "insufficient", noLikelihood: "no side stated"},
 	}
+}
+
+// Facies lists every facies statement with its condition, source and grade, as
+// it stands before a target is known: likelihoods are empty.
+func Facies() []Tendency {
+	t, undecided := NewTarget(), math.NaN()
+	var out []Tendency
+	for _, s := range statements(&facies{sinuous: undecided, low: undecided, regime: &Regime{}}, &t) {
+		text, _, _ := strings.Cut(s.text, " No side is stated here:")
+		out = append(out, Tendency{Text: text, Condition: s.condition, Source: s.source, Grade: s.grade})
+	}
+	return out
 }
 
 // share is the weighted share of rows for which is holds, each deposit alike.
