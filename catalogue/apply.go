@@ -20,6 +20,7 @@ type applier struct {
 
 	sample, undoes int64 // sample check it was accepted with, change set it takes back; 0 = none
 
+	all   bool       // what is odd is looked for although something is impossible
 	agree *agreement // of the rows of one file about their systems, or nil
 	set   int64      // change set, made at the first change
 	stmts map[string]*sql.Stmt
@@ -131,8 +132,17 @@ func (a *applier) examine(ctx context.Context, p *Row) (examined, error) {
 	}
 	ex.findings = append(ex.findings, CheckRow(p, a.s.onLand)...)
 	if hardError(ex.findings) != nil {
+		if a.all {
+			ex.findings = append(append(ex.findings, besides(p, a.s.onLand, ex.findings)...), a.checkUnit(p)...)
+		}
 		return ex, nil
 	}
+	ex.findings = append(ex.findings, a.checkUnit(p)...)
+	cited, err := a.checkCitation(ctx, &ex, p)
+	if err != nil {
+		return ex, err
+	}
+	ex.findings = append(ex.findings, cited...)
 	if ex.current == nil {
 		for _, c := range systemChanges(ex.system, p) {
 			ex.findings = append(ex.findings, systemChangeFinding(c, ex.system, p))

@@ -3,8 +3,11 @@ package catalogue
 import (
 	"context"
 	"database/sql"
+	"errors"
 	"fmt"
 	"regexp"
+	"slices"
+	"strconv"
 )
 
 // CheckRow returns what is impossible (Hard) or odd in a row by itself. onLand
@@ -19,9 +22,19 @@ func CheckRow(r *Row, onLand func(lat, lon float64) bool) []Finding {
 	if len(out) > 0 {
 		return out
 	}
-	for _, check := range []func(*Row) []Finding{checkSlope, checkSinuosity, checkSize, checkPlanform, checkTime, checkProvenance, checkBasin} {
+	return softFindings(r, onLand)
+}
+
+// softFindings are what is odd in a row, whose cells may be missing.
+func softFindings(r *Row, onLand func(lat, lon float64) bool) []Finding {
+	var out []Finding
+	for _, check := range []func(*Row) []Finding{checkSlope, checkSinuosity, checkSize, checkPlanform, checkTime, checkProvenance} {
 		out = append(out, check(r)...)
 	}
+	if !r.LatitudeDeg.Valid || !r.LongitudeDeg.Valid {
+		return out
+	}
+	out = append(out, checkBasin(r)...)
 	if onLand != nil && r.Kind == "submarine" && r.Burial != "outcrop" && onLand(r.LatitudeDeg.V, r.LongitudeDeg.V) {
 		out = append(out, warn("latitude_deg", "on_land", fmt.Sprintf("the place %s, %s is on land: is a sign missing, or are latitude and longitude swapped?", shortNumber(r.LatitudeDeg.V), shortNumber(r.LongitudeDeg.V)),
 			"a place in water for a submarine channel that is not in outcrop"))
@@ -109,6 +122,9 @@ func checkSlope(r *Row) []Finding {
 func checkSinuosity(r *Row) []Finding {
 	var out []Finding
 	p := r.Sinuosity.V
+	if !r.Sinuosity.Valid {
+		return nil
+	}
 	if r.SinuosityKind == "reach" && p > 4 {
 		out = append(out, warn("sinuosity", "sinuosity_reach_high", "a reach sinuosity of "+shortNumber(p)+" is very high: is it a peak or one bend?", "at most about 4 for a whole reach"))
 	} else if p > 10 {
@@ -209,8 +225,69 @@ func (s *Store) Check(ctx context.Context, row Row) ([]Finding, error) {
 }
 
 func (s *Store) check(ctx context.Context, tx *sql.Tx, row Row) ([]Finding, error) {
-	ex, err := s.applier(tx, 0, "").examine(ctx, &row)
+	a := s.applier(tx, 0, "")
+	a.all = true
+	ex, err := a.examine(ctx, &row)
 	return ex.findings, err
+}
+
+// besides finds what is odd about a row beside what is impossible, so that a
+// person learns all of it at once.
+func besides(r *Row, onLand func(lat, lon float64) bool, hard []Finding) []Finding {
+	var out []Finding
+	for _, f := range softFindings(r, onLand) {
+		if !slices.ContainsFunc(hard, func(h Finding) bool { return h.Column == f.Column }) {
+			out = append(out, f)
+		}
+	}
+	return out
+}
+
+// checkUnit asks whether the unit is one of the chart, and the age within it.
+func (a *applier) checkUnit(r *Row) []Finding {
+	if r.Unit == "" || a.s.unit == nil {
+		return nil
+	}
+	top, base, problem := a.s.unit(r.Unit)
+	if problem != "" {
+		return []Finding{warn("unit", "unit_unknown", problem, "one unit of the chart, spelt as there")}
+	}
+	// Two per cent, for charts of other years.
+	if r.AgeMa.Valid && (r.AgeMa.V < 0.98*top || r.AgeMa.V > 1.02*base) {
+		return []Finding{warn("unit", "age_outside_unit", fmt.Sprintf("the age, %s Ma, is not within %s", shortNumber(r.AgeMa.V), r.Unit), fmt.Sprintf("%s to %s Ma for this unit", shortNumber(top), shortNumber(base)))}
+	}
+	return nil
+}
+
+// checkCitation asks for one wording of a source: a DOI that is cited with
+// other words counts as two sources.
+func (a *applier) checkCitation(ctx context.Context, ex *examined, r *Row) ([]Finding, error) {
+	if r.SourceDOI == "" || ex.current != nil && ex.current.Source == r.Source && ex.current.SourceDOI == r.SourceDOI {
+		return nil, nil
+	}
+	st, err := a.prepared(ctx, `SELECT c.citation FROM sources c WHERE c.doi = ? COLLATE NOCASE ORDER BY c.citation = ? DESC, (SELECT count(*) FROM measurements m WHERE m.source_id = c.id) DESC, c.id LIMIT 1`)
+	if err != nil {
+		return nil, err
+	}
+	var known string
+	err = st.QueryRowContext(ctx, r.SourceDOI, r.Source).Scan(&known)
+	if errors.Is(err, sql.ErrNoRows) || err == nil && known == r.Source {
+		return nil, nil
+	}
+	return []Finding{warn("source", "doi_cited_otherwise", "the catalogue has this DOI already, cited as "+strconv.Quote(Clip(known))+": cited in other words it counts as another source", "the same words")}, err
+}
+
+// CitationOf returns how the catalogue cites a DOI, "" when it does not, with
+// the measurements that rest on it.
+func (s *Store) CitationOf(ctx context.Context, doi string) (citation string, measurements int, err error) {
+	if doi == "" {
+		return "", 0, nil
+	}
+	err = s.r.QueryRowContext(ctx, `SELECT c.citation, (SELECT count(*) FROM measurements m WHERE m.source_id = c.id) AS n FROM sources c WHERE c.doi = ? COLLATE NOCASE ORDER BY n DESC, c.id LIMIT 1`, doi).Scan(&citation, &measurements)
+	if errors.Is(err, sql.ErrNoRows) {
+		return "", 0, nil
+	}
+	return citation, measurements, fault("citation", err)
 }
 
 func systemChangeFinding(c *Column, system, row *Row) Finding {

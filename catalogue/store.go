@@ -26,6 +26,7 @@ type Store struct {
 	w      *sql.DB // one connection, immediate transactions; nil when read only
 	r      *sql.DB // a pool of read-only connections
 	onLand func(lat, lon float64) bool
+	unit   func(name string) (top, base float64, problem string)
 	// immutable is added to the address of connections when the file lies where
 	// nothing can be written.
 	immutable string
@@ -41,6 +42,10 @@ type Options struct {
 	// OnLand says whether a point lies on land, for the check of that name; nil
 	// leaves the check out.
 	OnLand func(lat, lon float64) bool
+	// Unit looks a chronostratigraphic unit up: its youngest and oldest age, Ma,
+	// or a sentence that says it is none and names the nearest; nil leaves the
+	// check out.
+	Unit func(name string) (top, base float64, problem string)
 	// Throwaway gives up durability for speed: for a temporary copy that is
 	// deleted at the end, such as the demo.
 	Throwaway bool
@@ -50,7 +55,7 @@ type Options struct {
 // it as needed. A file made by a newer version, or by another program, is
 // refused.
 func Open(ctx context.Context, path string, o Options) (*Store, error) {
-	s := &Store{path: path, onLand: o.OnLand, hashes: make(chan struct{}, hashesAtOnce), now: time.Now}
+	s := &Store{path: path, onLand: o.OnLand, unit: o.Unit, hashes: make(chan struct{}, hashesAtOnce), now: time.Now}
 	if err := s.open(ctx, o); err != nil {
 		_ = s.Close()
 		return nil, openError(path, err)

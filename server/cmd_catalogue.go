@@ -12,6 +12,7 @@ import (
 	"fathombend/catalogue"
 	"fathombend/catalogue/land"
 	"fathombend/seed"
+	"fathombend/stats/earth"
 )
 
 // openCatalogue opens the catalogue in the file at path, or, when path is "",
@@ -39,7 +40,26 @@ func openCatalogue(ctx context.Context, path string, readOnly bool) (s *catalogu
 
 // openOptions are those of every catalogue this program opens.
 func openOptions(readOnly bool) catalogue.Options {
-	return catalogue.Options{ReadOnly: readOnly, OnLand: land.Contains}
+	return catalogue.Options{ReadOnly: readOnly, OnLand: land.Contains, Unit: unitAges}
+}
+
+// unitAges looks a chronostratigraphic unit up in the chart.
+func unitAges(name string) (top, base float64, problem string) {
+	u, err := earth.UnitNamed(name)
+	if err != nil {
+		_, sentence := inputOf(err)
+		return 0, 0, sentence
+	}
+	return u.TopMa, u.BaseMa, ""
+}
+
+// inputOf is the parameter and the sentence of an error about input.
+func inputOf(err error) (parameter, sentence string) {
+	var in interface{ Input() (string, string) }
+	if errors.As(err, &in) {
+		return in.Input()
+	}
+	return "", err.Error()
 }
 
 // openDemo fills the demo drawn from law into a temporary folder of its own.
