@@ -274,7 +274,7 @@ func (a *applier) checkCitation(ctx context.Context, ex *examined, r *Row) ([]Fi
 	if errors.Is(err, sql.ErrNoRows) || err == nil && known == r.Source {
 		return nil, nil
 	}
-	return []Finding{warn("source", "doi_cited_otherwise", "the catalogue has this DOI already, cited as "+strconv.Quote(Clip(known))+": cited in other words it counts as another source", "the same words")}, err
+	return []Finding{warn("source", "doi_cited_otherwise", "the catalogue has this DOI already, cited as "+strconv.Quote(Clip(known))+": cited in other words it counts as another source", "the same words: "+known)}, err
 }
 
 // CitationOf returns how the catalogue cites a DOI, "" when it does not, with

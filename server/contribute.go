@@ -238,7 +238,10 @@ func (a *App) fill(r *record, f *views.ContributeForm) {
 		f.SystemName = r.row.SystemName
 	}
 	f.Centreline, f.Message = r.typed.Get("centreline"), r.typed.Get("message")
-	f.CentrelineSettings = r.typed.Get("centreline_settings")
+	f.CentrelineSettings, f.Reference = r.typed.Get("centreline_settings"), r.typed.Get("reference")
+	if f.Source != nil && f.Source.Error != "" {
+		f.Errors = append(f.Errors, views.FormError{Field: "reference", Label: "BibTeX or RIS", Message: f.Source.Error})
+	}
 	if f.Line != nil && f.Line.Error != "" {
 		f.Errors = append(f.Errors, views.FormError{Field: "centreline", Label: "Centreline", Message: f.Line.Error})
 	}
@@ -308,7 +311,7 @@ func (p *contributions) post(c echo.Context) error {
 			return err
 		}
 	}
-	action, err := oneOf(form, "action", "check", []string{"check", "measure", "fill", "save", "keep", "submit"})
+	action, err := oneOf(form, "action", "check", []string{"check", "measure", "fill", "reference", "save", "keep", "submit"})
 	if err != nil {
 		return err
 	}
@@ -318,6 +321,13 @@ func (p *contributions) post(c echo.Context) error {
 	if before != nil {
 		f = p.formState(before)
 		f.Line = report
+	}
+	f.Tried = action
+	if action == "reference" {
+		if f.Source, err = p.fillSource(c.Request().Context(), r); err != nil {
+			return err
+		}
+		r = readRecord(r.typed)
 	}
 	if action == "fill" && line != nil {
 		report.Filled = r.fillFrom(line)

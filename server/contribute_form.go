@@ -4,8 +4,10 @@ import (
 	"net/url"
 	"slices"
 	"strings"
+	"sync"
 
 	"fathombend/catalogue"
+	"fathombend/stats/earth"
 	"fathombend/views"
 )
 
@@ -203,8 +205,19 @@ func (r *record) fields(names []string) []views.FormField {
 	return out
 }
 
+// unitNames are those of the chronostratigraphic chart.
+var unitNames = sync.OnceValue(func() (out []string) {
+	for _, u := range earth.Units() {
+		out = append(out, u.Name)
+	}
+	return out
+})
+
 func (r *record) field(c catalogue.Column) views.FormField {
 	f := views.FormField{Column: c, Value: r.typed.Get(c.Name), Unit: r.typed.Get(c.Name + ".unit"), Error: r.errors[c.Name], Shown: r.shown[c.Name]}
+	if c.Name == "unit" {
+		f.Suggestions = unitNames()
+	}
 	for _, u := range c.CellUnits() {
 		f.Units = append(f.Units, views.UnitChoice{Column: u.Name, Text: u.Unit})
 	}

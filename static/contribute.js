@@ -45,9 +45,34 @@
     }
   }
 
+  // A pasted entry fills the source in place; the button does the same by
+  // sending the form.
+  async function fillSource() {
+    const body = new FormData(form);
+    body.delete("centreline_file");
+    body.set("action", "reference");
+    let page;
+    try {
+      const answer = await fetch(address, { method: "POST", body, redirect: "error" });
+      if (!answer.ok) return;
+      page = new DOMParser().parseFromString(await answer.text(), "text/html");
+    } catch { return; }
+    const now = document.getElementById("reference-result"), then = page.getElementById("reference-result");
+    if (!now || !then) return;
+    const read = !then.querySelector(".error");
+    for (const name of read ? ["source", "source_doi"] : []) {
+      document.getElementById(name).value = page.getElementById(name).value;
+      touched.add(name);
+    }
+    now.replaceChildren(...then.childNodes);
+    if (read) later();
+  }
+  const reference = document.getElementById("reference");
+  if (reference) reference.addEventListener("paste", () => setTimeout(fillSource, 0));
+
   form.addEventListener("input", () => { dirty = true; });
   form.addEventListener("change", (e) => {
-    if (!e.target.name || e.target.name === "message" || e.target.type === "file") return;
+    if (!e.target.name || e.target.name === "message" || e.target.name === "reference" || e.target.type === "file") return;
     touched.add(e.target.name.replace(/\.unit$/, ""));
     later();
   });

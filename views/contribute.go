@@ -17,6 +17,8 @@ type FormField struct {
 	Error    string
 	Warnings []FormWarning
 	Shown    string // a conversion that was made, in words
+
+	Suggestions []string // names that a text may take
 }
 
 // UnitChoice is a unit a field can be typed in. Column is the name of the
@@ -48,6 +50,35 @@ type LineReport struct {
 	Filled []string // columns that took their value from the line
 }
 
+// ReferenceReport is what a pasted BibTeX or RIS entry filled in.
+type ReferenceReport struct {
+	Error         string
+	Filled        []string // columns
+	Before        string   // the source that was typed before, when it was another
+	Known         bool     // the DOI is in the catalogue in other words, which were taken
+	Measurements  int      // that rest on it
+	NoDOI, BadDOI bool     // the entry has none, or one that cannot be read
+}
+
+// troubles is the heading over what is to be mended: what became of the record
+// depends on whether it was saved before.
+func (f ContributeForm) troubles() string {
+	n := countOf(len(f.Errors), "thing to mend", "things to mend")
+	switch {
+	case f.Warned == len(f.Errors) && f.Warned == 1:
+		return "1 value looks odd: mend it, or say why it is right"
+	case f.Warned == len(f.Errors):
+		return countOf(f.Warned, "value looks odd", "values look odd") + ": mend them, or say why they are right"
+	case f.Tried == "check" || f.Tried == "measure" || f.Tried == "fill" || f.Tried == "reference":
+		return countOf(len(f.Errors), "thing to mend", "things to mend")
+	case f.ID != 0 && f.State == "draft":
+		return "Not sent: " + n + ". The draft still holds what you saved last"
+	case f.ID != 0:
+		return "Not sent: " + n + ". What you sent before stands"
+	}
+	return "Nothing was stored: " + n
+}
+
 // LineFact is one measured quantity of a line and the column it can fill.
 type LineFact struct{ Label, Value, Column string }
 
@@ -75,8 +106,11 @@ type ContributeForm struct {
 	Changes            []catalogue.FieldChange
 	Comment            string // the curator's, when it was returned
 	Messages           []catalogue.Message
-	Curator            bool // a curator edits before accepting
-	Checked            bool // the checks ran and found nothing to mend
+	Reference          string           // a pasted BibTeX or RIS entry
+	Source             *ReferenceReport // what was read of it
+	Tried              string           // the button pressed: check, save, submit ...
+	Curator            bool             // a curator edits before accepting
+	Checked            bool             // the checks ran and found nothing to mend
 	Seeing             Seeing
 }
 
