@@ -47,6 +47,9 @@ func TestWithdrawalIsProposedAcceptedAndTakenBack(t *testing.T) {
 	if again, err := s.ProposeWithdrawal(ctx, ada.ID, id, "", "once more"); again != p || err != nil {
 		t.Errorf("asked twice: %d and %d, %v", p, again, err)
 	}
+	if _, err := s.Submit(ctx, ada.ID, Submission{ID: p, Row: edit(rows[0], "sinuosity", "9")}); CodeOf(err) != Conflict {
+		t.Errorf("a withdrawal turned into an edit by a forged form: %v", err)
+	}
 	sub, err := s.Submission(ctx, p)
 	if err != nil || sub.Act != ActWithdraw || sub.State != "submitted" || len(sub.Messages) != 1 || len(sub.Changes) != 0 {
 		t.Fatalf("%+v %v", sub, err)

@@ -29,6 +29,9 @@ func (s *Store) proposeAct(ctx context.Context, by int64, act, measurement, inst
 		if err := maySend(ctx, tx, by); err != nil {
 			return err
 		}
+		if err := maySend(ctx, tx, by); err != nil {
+			return err
+		}
 		row, revision, err := actsOn(ctx, tx, act, measurement, instead)
 		if err != nil {
 			return err

@@ -150,8 +150,8 @@ func keptFor(ctx context.Context, tx *sql.Tx, by int64, sub *Submission) (int64,
 		return by, nil
 	}
 	var owner int64
-	var state string
-	err := tx.QueryRowContext(ctx, `SELECT coalesce(account_id, 0), state, coalesce(batch_id, 0) FROM submissions WHERE id = ?`, sub.ID).Scan(&owner, &state, &sub.Batch)
+	var state, act string
+	err := tx.QueryRowContext(ctx, `SELECT coalesce(account_id, 0), state, coalesce(batch_id, 0), act FROM submissions WHERE id = ?`, sub.ID).Scan(&owner, &state, &sub.Batch, &act)
 	switch {
 	case errors.Is(err, sql.ErrNoRows):
 		return 0, &Error{Code: NotFound, Message: "there is no such contribution"}
@@ -161,6 +161,8 @@ func keptFor(ctx context.Context, tx *sql.Tx, by int64, sub *Submission) (int64,
 		return 0, &Error{Code: Forbidden, Message: "this contribution belongs to someone else"}
 	case state == "accepted" || state == "withdrawn":
 		return 0, &Error{Code: Conflict, Message: "this contribution is already " + state + "; start a new one"}
+	case act != ActEdit:
+		return 0, &Error{Code: Conflict, Message: "this is a proposal to " + map[string]string{ActWithdraw: "withdraw a record", ActRestore: "put a record back"}[act] + ", which has no values to change; take it back, or start a new one"}
 	}
 	return owner, nil
 }
