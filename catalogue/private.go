@@ -204,6 +204,15 @@ func (s *Store) HiddenRow(ctx context.Context, id int64) (*Hidden, error) {
 	return &rows[0], nil
 }
 
+// HiddenRecord returns the row itself, nil when the contribution has none.
+func (s *Store) HiddenRecord(ctx context.Context, id int64) (*Row, error) {
+	h, _, err := hiddenRow(ctx, s.r, id)
+	if err != nil || h == nil {
+		return nil, fault("hidden row", err)
+	}
+	return &h.row, nil
+}
+
 // HiddenRowsBy lists the private rows and those under embargo of an account.
 func (s *Store) HiddenRowsBy(ctx context.Context, owner int64) ([]Hidden, error) {
 	return s.hiddenRows(ctx, " WHERE h.account_id = ? ORDER BY h.id", owner)

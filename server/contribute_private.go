@@ -138,6 +138,11 @@ func (p *contributions) embargoPage(c echo.Context, status int, s *catalogue.Sub
 	if e.Typed == nil {
 		e.Typed = &views.EmbargoTyped{Until: h.Until, People: strings.Join(h.People, ", ")}
 	}
+	record, err := p.store.HiddenRecord(c.Request().Context(), h.ID)
+	if err != nil {
+		return err
+	}
+	s.Accepted = record // not what stands for it
 	return render(c, status, views.EmbargoPage(p.page(c, s.Row.SystemName, "contribute"), reviewOf(s), e))
 }
 

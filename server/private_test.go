@@ -337,6 +337,7 @@ func TestEmbargoedPlaceDoesNotLeak(t *testing.T) {
 	id := olive.submitted(fields)
 	cora.get("/review/"+id).says("stays under embargo until it is published", "rounded to 1 degree")
 	cora.post("/review/"+id, url.Values{"action": {"accept"}, "comment": {"numbatnotes seen"}}).is(http.StatusOK)
+	olive.get("/contribute/"+id).says("Meanwhile others see it as m000025", "33.45678", "numbatreach")
 	for who, v := range map[string]*visitor{"a reader": reader, "another contributor": stray, "a curator": cora} {
 		for _, p := range append(openAddresses(t, "numbat-channel", "numbat-channel.json", "numbat-channel.geojson"), "/features/collections/measurements/items/m000025", "/contribute?measurement=m000025",
 			"/systems.csv?lat_min=33.4&lat_max=33.5", "/systems.csv?sort=water_depth_m", "/chart?zoom=20&at=33.4,-55.5") {

@@ -84,6 +84,7 @@ type LineFact struct{ Label, Value, Column string }
 
 // ContributeForm is the form for one measurement.
 type ContributeForm struct {
+	Page         Page   // its frame, for the addresses of scripts
 	Action       string // where it posts to
 	Name         string // of its system, as typed
 	ID           int64  // 0 = not saved yet
