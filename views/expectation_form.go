@@ -46,7 +46,7 @@ func dayChoices(chosen string) []choice {
 	for _, h := range earth.Histories() {
 		t := upperFirst(h.Title)
 		if !math.IsInf(h.ToMa, 0) {
-			t += ", to " + numberText(h.ToMa, 4) + " Ma"
+			t += ", to " + tidyText(h.ToMa, 4) + " Ma"
 		}
 		out = append(out, choice{h.Name, t, h.Name == chosen})
 	}

@@ -113,7 +113,26 @@ func (p ExpectationPage) dayText() string {
 	if d.High > d.Low {
 		s += " [" + fixedText(d.Low, 2) + ", " + fixedText(d.High, 2) + "]"
 	}
-	return s + ", " + strings.ReplaceAll(d.History, "_", " ")
+	s += ", " + strings.ReplaceAll(d.History, "_", " ")
+	for _, c := range p.Result.RotationChoices {
+		if c.SolarTide != "" && p.usesRotation(c) {
+			_, tide, _ := strings.Cut(c.Title, ", ")
+			s += " (" + tide + ")"
+		}
+	}
+	return s
+}
+
+// usesRotation says whether the answer uses this history.
+func (p ExpectationPage) usesRotation(c expectation.RotationChoice) bool {
+	day, tide := p.Target.Day, p.Target.SolarTide
+	if day == "" {
+		day = "tidal_history"
+	}
+	if tide == "" {
+		tide = "middle"
+	}
+	return c.History == day && (c.SolarTide == "" || c.SolarTide == tide)
 }
 
 // coriolisText is |f| in 1e-4 s-1 with its limits.

@@ -38,6 +38,8 @@ func (f *Fits) frameOf(t *Target, p *place, d *draws) *Result {
 	}
 	res.EquivalentSentence = equivalentSentence(p, res)
 	res.RotationEffect = rotationEffect(p, res)
+	res.RotationChoices = rotationChoices(p)
+	res.RotationSpread = rotationSpread(res.RotationChoices)
 	return res
 }
 

@@ -84,6 +84,10 @@ type Result struct {
 	// RotationEffect compares what the faster spin does with the error of the
 	// palaeolatitude, in a sentence.
 	RotationEffect string `json:"rotation_effect"`
+	// RotationChoices are the other histories at this age; RotationSpread says
+	// how far the answer hangs on the choice.
+	RotationChoices []RotationChoice `json:"rotation_choices,omitempty"`
+	RotationSpread  string           `json:"rotation_spread,omitempty"`
 	// ClimateState at the age, "" where the table has none.
 	ClimateState string      `json:"climate_state"`
 	Dimensions   []Dimension `json:"dimensions"`
