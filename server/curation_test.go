@@ -252,3 +252,17 @@ func TestReviewPageAfterAcceptingWithEdits(t *testing.T) {
 	}
 	ann.get(sent.url.Path).is(http.StatusOK).says("1 field was edited by the curator", "As you sent it", "The record as accepted", "p. 9")
 }
+
+// The page of a system says what is odd about its record, with the reason it
+// was accepted with.
+func TestSystemPageShowsKnownDoubts(t *testing.T) {
+	s, ann, cy := newContribution(t)
+	slug, _ := accepted(t, s, ann, cy, goodRecord())
+	s.visitor().get("/systems/"+slug).is(http.StatusOK).says("Known doubts", "nothing odd")
+	slug, id := accepted(t, s, ann, cy, with(goodRecord(), "system_name", "Odd Channel", "latitude_deg", "-28", "valley_slope", "0.2", "override.valley_slope_range", "A canyon wall, surveyed twice.",
+		"vertex_spacing_m", "10", "centreline", "LINESTRING(-12 -28,-12.01 -28.02,-12.03 -28.02,-12.04 -28.04,-12.06 -28.04,-12.07 -28.06)"))
+	a := s.visitor().get("/systems/"+slug).is(http.StatusOK).says("A canyon wall, surveyed twice.", "Credit of ann", "vertices of its stored line are", "No reason is recorded")
+	if n := a.doc().Find("#doubts li").Length(); n != 3 || a.doc().Find("#doubts a[href='#"+id+"']").Length() != n {
+		t.Errorf("%d doubts:\n%s", n, a.doc().Find("#doubts").Text())
+	}
+}

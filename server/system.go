@@ -68,6 +68,9 @@ func (a *App) systemPage(c echo.Context, d *catalogue.Detail, f catalogue.Filter
 	if p.Lines, err = a.systemLines(ctx, d); err != nil {
 		return err
 	}
+	if p.Doubts, err = a.doubts(ctx, d, p.Lines, f.Release); err != nil {
+		return err
+	}
 	if err := a.systemFit(ctx, f, &p); err != nil {
 		return err
 	}

@@ -17,6 +17,7 @@ type SystemPage struct {
 	Detail *catalogue.Detail
 	Item   MeridianItem
 	Lines  []SystemLine
+	Doubts []Doubt
 
 	Land       [][][2]float64 // rings of longitude and latitude, degrees, for the locator
 	LandCredit string
