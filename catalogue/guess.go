@@ -192,6 +192,14 @@ func GuessColumns(header []string) []Guess {
 	return out
 }
 
+// ColumnOf is the column that a name is read as, "" if there is none.
+func ColumnOf(name string) string {
+	if c := planCell(name).column; c != nil {
+		return c.Name
+	}
+	return ""
+}
+
 // Readable lists the names a column of a file can be read as, in the order of
 // the table: each column with its other units.
 func Readable() []CellUnit {

@@ -71,13 +71,14 @@ func (r *Reading) decoded(in io.Reader) io.Reader {
 	return br
 }
 
-// Shapes of numbers with commas and points.
+// Shapes of numbers with commas and points. No group of thousands begins with a
+// nought: 0,004 has a decimal comma.
 var (
 	oneComma   = regexp.MustCompile(`^[+-]?\d+,\d+$`)
-	threeAfter = regexp.MustCompile(`^[+-]?\d{1,3},\d{3}$`)
-	pointThree = regexp.MustCompile(`^[+-]?\d{1,3}(\.\d{3})+$`)
-	commas     = regexp.MustCompile(`^[+-]?\d{1,3}(,\d{3})+(\.\d+)?$`)
-	points     = regexp.MustCompile(`^[+-]?\d{1,3}(\.\d{3})+(,\d+)?$`)
+	threeAfter = regexp.MustCompile(`^[+-]?[1-9]\d{0,2},\d{3}$`)
+	pointThree = regexp.MustCompile(`^[+-]?[1-9]\d{0,2}(\.\d{3})+$`)
+	commas     = regexp.MustCompile(`^[+-]?[1-9]\d{0,2}(,\d{3})+(\.\d+)?$`)
+	points     = regexp.MustCompile(`^[+-]?[1-9]\d{0,2}(\.\d{3})+(,\d+)?$`)
 	decimals   = regexp.MustCompile(`(\d),(\d)`)
 )
 

@@ -326,7 +326,7 @@ func (s *Store) SendUpload(ctx context.Context, id, by int64, partial bool) (bat
 		}
 		switch {
 		case u.Report.Problems > 0 && !partial:
-			return &Error{Code: Conflict, Message: strconv.Itoa(u.Report.Refused) + " lines are refused", Expected: "the good rows only, or a mended file"}
+			return &Error{Code: Conflict, Message: "some lines of the file are refused (" + strconv.Itoa(u.Report.Refused) + ")", Expected: "the good rows only, or a mended file"}
 		case u.Report.Good() == 0:
 			return &Error{Code: Conflict, Message: "no row of the file can be sent", Expected: "a mended file"}
 		}

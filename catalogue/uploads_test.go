@@ -107,6 +107,7 @@ func TestLookAtFiles(t *testing.T) {
 		"UTF-16":              {"\xff\xfea\x00,\x00b\x00\n\x001\x00,\x002\x00\n\x00", "utf-16", ",", DecimalPoint, 1, ""},
 		"groups":              {"width;age\n1.200,5;3\n", "utf-8", ";", DecimalCommaGroups, 1, ""},
 		"groups with points":  {"width;age\n1,200.5;3\n", "utf-8", ";", DecimalPointGroups, 1, ""},
+		"a nought in front":   {"slope;age\n0,004;3\n", "utf-8", ";", DecimalComma, 1, ""},
 		"two readings":        {"width;age\n1,200;3\n", "utf-8", ";", "", 1, ""},
 		"two readings, one":   {"width;age\n1,200;3,5\n", "utf-8", ";", "", 1, ""},
 		"both hands":          {"width;age\n1,25;3.5\n", "utf-8", ";", "", 1, ""},

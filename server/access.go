@@ -102,6 +102,11 @@ var access = map[string]role{
 	"GET /review/embargoes":           curator,
 	"POST /review/:id/publish":        curator,
 
+	"GET /contribute/upload/:id":               contributor,
+	"POST /contribute/upload/:id":              contributor,
+	"GET /contribute/upload/:id/progress.json": contributor,
+	"GET /contribute/upload/:id/remarks.csv":   contributor,
+
 	"POST /releases":           curator,
 	"POST /releases/:name/doi": curator,
 

@@ -23,6 +23,7 @@ type App struct {
 	fits       *cache
 	jobs       jobs // long fits on their way
 	recomputes *recomputer
+	uploads    *uploader
 	metrics    *metrics
 	answers    *answers // finished, for signed-out readers
 	backups    *backups // nil = none scheduled
@@ -42,6 +43,7 @@ func newApp(store *catalogue.Store, log *slog.Logger, readOnly bool) *App {
 	a := &App{store: store, log: log, readOnly: readOnly, fits: newCache(256), began: time.Now(), answers: newAnswers()}
 	a.metrics = newMetrics(a)
 	a.recomputes = newRecomputer(store, log)
+	a.uploads = newUploader(store, log)
 	a.sessions = newSessions(store, log, readOnly)
 	return a
 }

@@ -27,7 +27,8 @@ func (cfg serveConfig) secured(l net.Listener) (net.Listener, error) {
 const sweepEvery = time.Hour
 
 // inBackground starts what runs beside the requests: scheduled backups, the
-// sweep of ended sessions, and recomputations left unfinished. done is closed when all of it has stopped.
+// sweep of ended sessions, and recomputations and checks of files left
+// unfinished. done is closed when all of it has stopped.
 func (a *App) inBackground(cfg serveConfig) (done <-chan struct{}, stop func(), err error) {
 	ctx, stop := context.WithCancel(context.Background())
 	var running sync.WaitGroup
@@ -40,9 +41,11 @@ func (a *App) inBackground(cfg serveConfig) (done <-chan struct{}, stop func(), 
 	}
 	if !cfg.ReadOnly {
 		a.recomputes.resume()
+		a.uploads.resume()
 		running.Go(func() {
 			<-ctx.Done()
 			a.recomputes.halt()
+			a.uploads.halt()
 		})
 		running.Go(func() { a.sweep(ctx) })
 	}
@@ -62,6 +65,9 @@ func (a *App) sweep(ctx context.Context) {
 		case <-ctx.Done():
 			return
 		case <-tick.C:
+		}
+		if err := a.store.SweepUploads(ctx); err != nil && ctx.Err() == nil {
+			a.log.Warn("files left behind could not be swept", "err", err)
 		}
 		if err := a.store.CleanSessions(ctx); err != nil && ctx.Err() == nil {
 			a.log.Warn("ended sessions could not be swept", "err", err)

@@ -19,14 +19,14 @@ import (
 type contributions struct {
 	*App
 	forms *formBook
+	sent  *throttle // files sent, by account
 }
 
 func (a *App) routesContribute(e *echo.Echo) {
 	p := &contributions{App: a, forms: newFormBook()}
 	get(e, "/contribute", p.blank)
 	e.POST("/contribute", p.post)
-	get(e, "/contribute/upload", p.uploadPage)
-	e.POST("/contribute/upload", p.upload)
+	p.routesUpload(e)
 	get(e, "/contribute/:id", p.saved)
 	e.POST("/contribute/:id", p.post)
 	e.POST("/contribute/:id/withdraw", p.withdraw)

@@ -1,14 +1,13 @@
 package main
 
 import (
-	"bytes"
 	"fmt"
-	"mime/multipart"
 	"net/http"
 	"net/url"
 	"strings"
 	"sync"
 	"testing"
+	"time"
 
 	"github.com/PuerkitoBio/goquery"
 )
@@ -358,25 +357,44 @@ func TestAnotherMeasurementOfASystem(t *testing.T) {
 	}
 }
 
-// upload posts a file to the upload page.
-func (v *visitor) upload(content []byte, fields map[string]string) *answer {
+// upload posts a file to the upload page and checks it as it is guessed; what
+// set says of its reading goes before. The answer is the result of the check,
+// or the page that asks for more.
+func (v *visitor) upload(content []byte, set map[string]string) *answer {
 	v.t.Helper()
-	var b bytes.Buffer
-	w := multipart.NewWriter(&b)
-	for k, val := range fields {
-		if err := w.WriteField(k, val); err != nil {
-			v.t.Fatal(err)
+	a := v.sendFile("/contribute/upload", "table.csv", content, map[string]string{"why": set["why"]})
+	if a.status != http.StatusOK || a.url.Path == "/contribute/upload" {
+		return a
+	}
+	form := a.form("form.matching")
+	if form.Get("licence") == "" {
+		form.Set("licence", "CC0 1.0")
+	}
+	for name, value := range set {
+		form.Set(name, value)
+	}
+	form.Set("action", "check")
+	return v.checked(v.post(a.url.Path, form))
+}
+
+// checked waits for the end of a check.
+func (v *visitor) checked(a *answer) *answer {
+	v.t.Helper()
+	for range 1000 {
+		if a.doc().Find("[data-upload]").Length() == 0 {
+			return a
 		}
+		time.Sleep(20 * time.Millisecond)
+		a = v.get(a.url.Path)
 	}
-	f, err := w.CreateFormFile("file", "table.csv")
-	if err != nil {
-		v.t.Fatal(err)
-	}
-	if _, err := f.Write(content); err != nil {
-		v.t.Fatal(err)
-	}
-	w.Close()
-	return v.request("POST", "/contribute/upload", w.FormDataContentType(), &b)
+	v.t.Fatal("the check does not end")
+	return nil
+}
+
+// press presses a button of the page of a file.
+func (v *visitor) act(a *answer, action string) *answer {
+	v.t.Helper()
+	return v.post(a.url.Path, url.Values{"action": {action}})
 }
 
 const csvHead = "system_name,latitude_deg,longitude_deg,sinuosity,sinuosity_kind,measured_line,source,valley_slope\n"
@@ -384,8 +402,11 @@ const csvHead = "system_name,latitude_deg,longitude_deg,sinuosity,sinuosity_kind
 func TestUpload(t *testing.T) {
 	s, ann, cy := newContribution(t)
 	good := csvHead + "Loom Channel,-30,-20,1.4,peak,thalweg,Invented 2031,0.004\nWeft Channel,-31,-21,1.5,peak,thalweg,Invented 2031,0.003\n"
-	ann.upload([]byte(good), map[string]string{"why": "table 2"}).is(http.StatusOK).says("2 new", "waits for a curator")
-	ann.upload([]byte(good), nil).is(http.StatusOK).says("2 identical and skipped")
+	first := ann.upload([]byte(good), map[string]string{"why": "table 2"}).is(http.StatusOK).says("2 new", "Every row can be sent", "Nothing is sent yet")
+	cy.get("/review").is(http.StatusOK).says("Nothing waits")
+	ann.act(first, "send").is(http.StatusOK).says("2 rows wait for a curator")
+	ann.act(first, "send").is(http.StatusConflict)
+	ann.upload([]byte(good), nil).is(http.StatusOK).says("2 identical and skipped", "waits already")
 	q := cy.get("/review").is(http.StatusOK).says("2 records wait", "A file from Credit of ann")
 	batch := q.doc().Find("a[href^='/review/batch/']").AttrOr("href", "")
 	sample := cy.get(batch).is(http.StatusOK).says("table 2", "The sample is the whole", "Loom Channel", "Weft Channel")
@@ -403,7 +424,7 @@ func TestUpload(t *testing.T) {
 	download := mustRun(t, "", "export", "-catalogue", s.file)
 	ann.upload([]byte(download), nil).is(http.StatusOK).says("0 new, 0 changed, 2 identical")
 	changed := strings.Replace(download, ",1.4,", ",1.45,", 1)
-	ann.upload([]byte(changed), nil).is(http.StatusOK).says("0 new, 1 changed, 1 identical")
+	ann.act(ann.upload([]byte(changed), nil).is(http.StatusOK).says("0 new, 1 changed, 1 identical"), "send").is(http.StatusOK)
 	cy.get("/review").is(http.StatusOK).says("1 field of")
 }
 
@@ -414,35 +435,41 @@ func TestBadUploads(t *testing.T) {
 		file string
 		says []string
 	}{
-		"nothing":         {"", []string{"No file was sent, or it is empty"}},
-		"header only":     {csvHead, []string{"no rows"}},
-		"wrong header":    {"a,b,c\n1,2,3\n", []string{"lacks required columns", "system_name"}},
-		"repeated header": {strings.TrimSpace(csvHead) + ",sinuosity\n" + strings.TrimSpace(row) + ",2\n", []string{"twice"}},
-		"semicolons":      {strings.ReplaceAll(csvHead+row, ",", ";"), []string{"semicolons", "commas between cells"}},
-		"decimal comma":   {csvHead + `Loom,-30,-20,"1,4",peak,thalweg,Invented 2031,0.004` + "\n", []string{"decimal comma"}},
-		"latin-1":         {csvHead + "L\xf6om,-30,-20,1.4,peak,thalweg,Invented 2031,0.004\n", []string{"UTF-8"}},
-		"sinuosity 0.9":   {csvHead + strings.Replace(row, "1.4", "0.9", 1), []string{"below 1", "0.9"}},
-		"latitude 91":     {csvHead + strings.Replace(row, "-30", "91", 1), []string{"latitude_deg", "91", "-90 to 90"}},
-		"a 5 MB field":    {csvHead + strings.Replace(row, "Loom Channel", strings.Repeat("x", 5<<20), 1), []string{"characters long"}},
-		"cells missing":   {csvHead + "Loom Channel,-30\n", []string{"2 cells"}},
-		"an open quote":   {csvHead + `"Loom Channel,-30,-20` + "\n", []string{"quote"}},
-		"a workbook":      {"PK\x03\x04 and so on", []string{"spreadsheet workbook"}},
-		"UTF-16":          {"\xff\xfes\x00y\x00", []string{"UTF-16"}},
-		"bytes":           {string([]byte{0, 1, 2, 3, 255, 254}), []string{"Expected"}},
+		"nothing":       {"", []string{"No file was sent, or it is empty"}},
+		"wrong header":  {"a,b,c\n1,2,3\n", []string{"lacks required columns", "system_name"}},
+		"sinuosity 0.9": {csvHead + strings.Replace(row, "1.4", "0.9", 1), []string{"below 1", "0.9"}},
+		"latitude 91":   {csvHead + strings.Replace(row, "-30", "91", 1), []string{"latitude_deg", "91", "-90 to 90"}},
+		"a 5 MB field":  {csvHead + strings.Replace(row, "Loom Channel", strings.Repeat("x", 5<<20), 1), []string{"characters long"}},
+		"cells missing": {csvHead + "Loom Channel,-30\n", []string{"2 cells"}},
+		"an open quote": {csvHead + `"Loom Channel,-30,-20` + "\n", []string{"quote"}},
+		"a workbook":    {"PK\x03\x04 and so on", []string{"spreadsheet workbook"}},
+		"latin-1":       {csvHead + "L\xf6om,-30,-20,1.4,peak,thalweg,Invented 2031,0.004\n", []string{"not UTF-8", "Löom"}},
+		"two readings":  {csvHead + `Loom,-30,-20,"1,400",peak,thalweg,Invented 2031,0.004` + "\n", []string{"two ways", "1,400"}},
 	} {
 		a := ann.upload([]byte(c.file), map[string]string{"why": "typed reason"})
-		if name == "header only" {
-			a.is(http.StatusOK).says(c.says...)
-			continue
-		}
 		if a.status != http.StatusUnprocessableEntity {
 			t.Errorf("%s: status %d, want 422", name, a.status)
 		}
 		a.says(c.says...)
-		if a.form("form.narrow").Get("why") != "typed reason" {
+		if why := a.doc().Find("[name=why]"); why.Length() == 1 && why.AttrOr("value", "") != "typed reason" {
 			t.Errorf("%s: what was typed is lost", name)
 		}
+		if strings.HasPrefix(a.url.Path, "/contribute/upload/") {
+			ann.act(a, "drop").is(http.StatusOK).says("nothing of it is kept")
+			ann.get(a.url.Path).is(http.StatusNotFound)
+		}
 	}
+	ann.upload([]byte(csvHead), nil).is(http.StatusOK).says("no rows")
+	// Other signs are read as they are.
+	semicolons := strings.ReplaceAll(strings.ReplaceAll(csvHead+row, ",", ";"), ".", ",")
+	for _, file := range []string{semicolons, strings.ReplaceAll(csvHead+row, ",", "\t"), "\ufeff" + csvHead + row} {
+		ann.upload([]byte(file), nil).is(http.StatusOK).says("1 new", "Every row can be sent")
+	}
+	repeated := ann.upload([]byte(strings.TrimSpace(csvHead)+",sinuosity\n"+strings.TrimSpace(row)+",2\n"), nil).is(http.StatusOK).says("1 new")
+	form := ann.act(repeated, "rematch").is(http.StatusOK).says("more than once: sinuosity").form("form.matching")
+	form.Set("column.8", "sinuosity")
+	form.Set("action", "check")
+	ann.post(repeated.url.Path, form).is(http.StatusUnprocessableEntity).says("Column 4 of the file is read as sinuosity already")
 	if rows := s.csv(); len(rows) != 1 {
 		t.Errorf("something was stored: %v", rows)
 	}
@@ -452,9 +479,22 @@ func TestBadUploads(t *testing.T) {
 	// Odd values are stored, with their warnings.
 	odd := csvHead + strings.Replace(row, "0.004", "3", 1) + strings.Replace(strings.Replace(row, "0.004", "-0.01", 1), "Loom", "Weft", 1)
 	ann.upload([]byte(odd), nil).is(http.StatusOK).says("2 new", "is it degrees?", "does not fall downstream")
-	// Only the good rows.
+	// Only the good rows, or none.
 	half := csvHead + strings.Replace(row, "Loom", "Reed", 1) + strings.Replace(row, "1.4", "0.9", 1)
-	ann.upload([]byte(half), map[string]string{"partial": "yes"}).is(http.StatusOK).says("1 new", "1 refused", "below 1")
+	a := ann.upload([]byte(half), nil).is(http.StatusOK).says("1 new", "1 refused", "below 1", "Send nothing and drop the file")
+	refusals := ann.get(a.url.Path + "/remarks.csv?kind=problem").is(http.StatusOK)
+	if got := strings.Split(strings.TrimSpace(refusals.body), "\n"); len(got) != 2 || !strings.HasPrefix(got[1], "refused,3,sinuosity,0.9,") {
+		t.Errorf("the refusals as CSV:\n%s", refusals.body)
+	}
+	ann.get(a.url.Path + "/remarks.csv?kind=all").is(http.StatusBadRequest)
+	ann.act(a, "send").is(http.StatusConflict).says("are refused (1)")
+	ann.act(a, "send_good").is(http.StatusOK).says("1 row waits for a curator", "below 1")
+	s.person("bo", "contributor")
+	bo := s.as("bo")
+	for _, path := range []string{a.url.Path, a.url.Path + "/remarks.csv", a.url.Path + "/progress.json", "/contribute/upload/99", "/contribute/upload/x"} {
+		bo.get(path).is(http.StatusNotFound)
+	}
+	bo.act(a, "drop").is(http.StatusNotFound)
 }
 
 func TestBigNotesAndForgedForms(t *testing.T) {

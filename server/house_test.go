@@ -157,15 +157,21 @@ func (h *house) contributorsPages() []housePage {
 	draft := goodRecord()
 	draft["system_name"] = "Sedge Hollow Channel"
 	saved := ann.post("/contribute", press(ann.newRecord(draft), "save")).is(http.StatusOK)
-	ann.upload([]byte(csvHead+"Loom Channel,-30,-20,1.4,peak,thalweg,Invented 2031,0.004\nWeft Channel,-31,-21,1.5,peak,thalweg,Invented 2031,3\n"), map[string]string{"why": "table 2"}).is(http.StatusOK)
-	file := `(() => { const d = new DataTransfer(); d.items.add(new File([` + "`" + csvHead + "Reed Channel,-30,-20,0.9,peak,thalweg,Invented 2031,0.004\\nRush Channel,91,-20,1.4,peak,thalweg,Invented 2031,0.004\\n`" + `], "table.csv")); document.querySelector("main input[type=file]").files = d.files; document.querySelector("main input[type=file]").form.requestSubmit() })()`
+	good := csvHead + "Loom Channel,-30,-20,1.4,peak,thalweg,Invented 2031,0.004\nWeft Channel,-31,-21,1.5,peak,thalweg,Invented 2031,3\n"
+	ann.act(ann.upload([]byte(good), map[string]string{"why": "table 2"}).is(http.StatusOK), "send").is(http.StatusOK)
+	// A file to be matched, whose signs a person has to say; one checked, one none of whose rows can be sent.
+	matching := ann.sendFile("/contribute/upload", "other.csv", []byte("Channel;Lat;Lon;Sinuosity;Width\nL\xf6om;-30;-20;1,4;1,200\n"), nil).is(http.StatusOK).url.Path
+	half := csvHead + "Reed Channel,-30,-20,1.4,peak,thalweg,Invented 2031,3\nRush Channel,91,-20,1.4,peak,thalweg,Invented 2031,0.004\n"
+	checked := ann.upload([]byte(half), nil).is(http.StatusOK).url.Path
 	return []housePage{
 		{"contributor", "account", "/account", 0, ""},
 		{"contributor", "contribute", "/contribute", 0, ""},
 		{"contributor", "contribute-wrong", "/contribute", http.StatusUnprocessableEntity, typed("#latitude_deg", "91")},
 		{"contributor", "contribute-draft", saved.url.Path, 0, ""},
 		{"contributor", "upload", "/contribute/upload", 0, ""},
-		{"contributor", "upload-refused", "/contribute/upload", http.StatusUnprocessableEntity, file},
+		{"contributor", "upload-matching", matching, 0, ""},
+		{"contributor", "upload-incomplete", matching, http.StatusUnprocessableEntity, typed("#why", "table 2")},
+		{"contributor", "upload-checked", checked, 0, ""},
 		{"contributor", "withdraw", "/measurements/m000001/withdraw", 0, ""},
 		{"contributor", "error-role", "/review", http.StatusForbidden, ""},
 	}

@@ -225,21 +225,3 @@ func (f FormField) describedBy() string {
 	ids = append(ids, f.Column.Name+"-hint")
 	return strings.Join(ids, " ")
 }
-
-// Upload is the state of the page for a CSV file.
-type Upload struct {
-	Why     string
-	Partial bool
-	File    string
-	Errors  map[string]string
-	Report  *UploadReport
-}
-
-// UploadReport is what an import did.
-type UploadReport struct {
-	Stored                           bool
-	New, Changed, Identical, Refused int
-	Unknown                          []string
-	Problems, Warnings, Conversions  []catalogue.RowProblem
-	More                             []string
-}

@@ -22,6 +22,7 @@ type Page struct {
 	ReadOnly      bool
 	RequestID     string
 	Pending       int    // submissions waiting, for curators
+	Refresh       int    // seconds after which a page without scripts loads itself again; 0 = never
 	Joining       int    // people waiting to be let in, for curators
 	JSON          string // addresses of the data twins, "" = none
 	CSV           string
