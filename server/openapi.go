@@ -42,6 +42,8 @@ func filterParameter(name string) object {
 		return boxParameter()
 	case "release":
 		return apiParameter(name, "Name of a release; without it, the catalogue as it is.", object{"type": "string", "maxLength": 64})
+	case "private":
+		return apiParameter(name, "no leaves out the private rows of who is signed in; others see none.", object{"type": "string", "enum": []string{"yes", "no"}})
 	case "sort":
 		return apiParameter(name, "A column, with - before it for descending.", object{"type": "string"})
 	case "page":

@@ -43,6 +43,7 @@ func apiSchemas() object {
 		row[c.Name] = p
 	}
 	row["invented"] = object{"type": "boolean", "description": "No survey made it: drawn for a demonstration."}
+	row["place_rounded"] = object{"type": "boolean", "description": "True where the place is rounded to 1 degree: the exact one is under embargo. Absent elsewhere."}
 	row["updated"] = object{"type": "string", "format": "date-time", "description": "When the record was accepted or last changed."}
 	link := form(object{"href": text, "rel": text, "type": text, "title": text}, "href", "rel")
 	links := list(ref("Link"))
