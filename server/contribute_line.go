@@ -163,7 +163,7 @@ func (l *formLine) sinuosities() []float64 {
 
 // lineReport says what a line measures.
 func lineReport(m *planform.Measured) *views.LineReport {
-	r := &views.LineReport{Notes: m.Warnings}
+	r := &views.LineReport{Notes: m.Warnings, Measured: m}
 	add := func(label string, v float64, unit string) {
 		if isFinite(v) {
 			r.Facts = append(r.Facts, views.LineFact{Label: label, Value: strings.TrimSpace(rounded(v) + " " + unit)})

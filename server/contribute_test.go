@@ -182,6 +182,9 @@ func TestCheckAndFillWithALine(t *testing.T) {
 	typed["sinuosity_kind"] = "reach"
 	typed["centreline"] = line.String()
 	a := ann.post("/contribute", press(ann.newRecord(typed), "fill")).is(http.StatusOK).says("Measured from this line", "Sinuosity of the reach")
+	if n := a.doc().Find("#measured figure svg").Length(); n < 2 {
+		t.Errorf("%d figures of the line, want its plan and its profile", n)
+	}
 	form := a.form("form.record")
 	if form.Get("sinuosity") == "" || form.Get("latitude_deg") == "" || form.Get("reach_length_m") == "" || form.Get("extraction") != "centreline" {
 		t.Fatalf("not filled: sinuosity %q, latitude %q, length %q, extraction %q", form.Get("sinuosity"), form.Get("latitude_deg"), form.Get("reach_length_m"), form.Get("extraction"))
@@ -201,7 +204,7 @@ func TestCheckAndFillWithALine(t *testing.T) {
 		sent = ann.post("/contribute", press(form, "submit"))
 	}
 	sent.is(http.StatusOK).says("Sent")
-	cy.get("/review/"+strings.TrimPrefix(sent.url.Path, "/contribute/")).is(http.StatusOK).says("Its centreline", "Channel length")
+	cy.get("/review/"+strings.TrimPrefix(sent.url.Path, "/contribute/")).is(http.StatusOK).says("Its centreline", "Channel length", "Plan view of")
 
 	bad := ann.newRecord(goodRecord())
 	bad.Set("centreline", "LINESTRING (1 1")

@@ -6,6 +6,7 @@ import (
 	"time"
 
 	"fathombend/catalogue"
+	"fathombend/catalogue/planform"
 )
 
 // FormField is one column of the measurement table as a field of a form.
@@ -48,6 +49,8 @@ type LineReport struct {
 	Facts  []LineFact
 	Notes  []string
 	Filled []string // columns that took their value from the line
+
+	Measured *planform.Measured // nil when it could not be measured
 }
 
 // ReferenceReport is what a pasted BibTeX or RIS entry filled in.
