@@ -89,23 +89,21 @@ func (a *App) chartAnswer(ctx context.Context, f catalogue.Filter) (*chartAnswer
 		return nil, err
 	}
 	v, err := a.fits.do(ctx, fmt.Sprintf("chart|%d|%s", rev, f.Values().Encode()), func(ctx context.Context) (any, error) {
-		rows, err := a.store.Rows(ctx, f)
-		if err != nil {
-			return nil, err
-		}
 		out := &chartAnswer{}
-		for _, r := range bestOfSystems(rows) {
+		f.Sort = ""
+		err := a.store.EachSystem(ctx, f, func(r catalogue.Row) error {
 			if !r.LatitudeDeg.Valid || !r.LongitudeDeg.Valid {
 				out.none++
-				continue
+				return nil
 			}
 			out.rows = append(out.rows, r)
 			out.items = append(out.items, views.ChartItem{
 				MeridianItem: meridianItem(r), Lat: r.LatitudeDeg.V, Lon: catalogue.NormalLongitude(r.LongitudeDeg.V),
 				Line: len(r.WindowSinuosities) > 0, Invented: r.Invented, Private: r.Private, Coarse: r.Coarse,
 			})
-		}
-		return out, nil
+			return nil
+		})
+		return out, err
 	})
 	if err != nil {
 		return nil, err

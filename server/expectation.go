@@ -63,16 +63,16 @@ func (a *App) expectationFits(ctx context.Context, f catalogue.Filter, response,
 	}
 	key := fmt.Sprintf("expectation|%d|%s|%s|%s", rev, f.Values().Encode(), response, line)
 	v, err := a.fits.do(ctx, key, func(ctx context.Context) (any, error) {
-		rows, err := a.store.Rows(ctx, f)
-		if err != nil {
-			return nil, err
-		}
 		chosen, err := a.settingsFor(ctx, f.Release)
 		if err != nil {
 			return nil, err
 		}
+		rows, err := a.statsRowsOf(ctx, f, chosen.Climate)
+		if err != nil {
+			return nil, err
+		}
 		defer a.metrics.fitted("expectation", time.Now())
-		return expectation.Fit(ctx, statsRows(rows, chosen.Climate), expectation.Options{
+		return expectation.Fit(ctx, rows, expectation.Options{
 			Response: response, MeasuredLine: line, Cluster: "parent_deposit", Seed: fitSeed, ClassLimits: chosen.ClassLimits, Climate: chosen.Climate,
 		})
 	})

@@ -118,15 +118,15 @@ func (a *App) deepTime(c echo.Context) (url.Values, catalogue.Filter, *expectati
 	}
 	key := fmt.Sprintf("deep time|%d|%s|%s|%s", rev, fit.Values().Encode(), t.Response, t.MeasuredLine)
 	v, err := a.fits.do(ctx, key, func(ctx context.Context) (any, error) {
-		rows, err := a.store.Rows(ctx, fit)
-		if err != nil {
-			return nil, err
-		}
 		chosen, err := a.settingsFor(ctx, fit.Release)
 		if err != nil {
 			return nil, err
 		}
-		return expectation.DeepTime(ctx, statsRows(rows, chosen.Climate), expectation.Options{
+		rows, err := a.statsRowsOf(ctx, fit, chosen.Climate)
+		if err != nil {
+			return nil, err
+		}
+		return expectation.DeepTime(ctx, rows, expectation.Options{
 			Response: t.Response, MeasuredLine: t.MeasuredLine, Cluster: "parent_deposit", Seed: fitSeed, ClassLimits: chosen.ClassLimits, Climate: chosen.Climate,
 		})
 	})

@@ -124,13 +124,15 @@ func (a *App) warm(ctx context.Context) {
 
 func (a *App) computeMeridian(ctx context.Context, f catalogue.Filter) (*views.MeridianPage, error) {
 	m := &views.MeridianPage{}
-	rows, err := a.store.Rows(ctx, f)
+	err := a.store.EachSystem(ctx, f, func(r catalogue.Row) error {
+		m.Items = append(m.Items, meridianItem(r))
+		return nil
+	})
 	if err != nil {
 		return nil, err
 	}
-	for _, r := range bestOfSystems(rows) {
-		m.Items = append(m.Items, meridianItem(r))
-	}
+	m.Passing = len(m.Items)
+	m.Items = thinnedItems(m.Items, views.MeridianDrawn)
 	m.Layouts = views.NewMeridianLayouts(m.Items)
 	if _, m.Total, err = a.store.Systems(ctx, catalogue.Filter{PerPage: 1, Release: f.Release}); err != nil {
 		return nil, err
@@ -178,10 +180,11 @@ func (a *App) meridianExpected(ctx context.Context, f catalogue.Filter, m *views
 		t := expectation.NewTarget()
 		t.Palaeolatitude, t.PalaeolatitudeSE, t.Age, t.AgeSE = lat, 0, 0, 0
 		e := views.MeridianExpected{AbsLatitude: lat}
-		r, err := fits.Expect(ctx, t)
+		r, err := fits.ExpectCombined(ctx, t)
 		if err != nil {
 			return err
 		}
+		m.ExpectedRows, m.ExpectedFrom = r.Rows, r.Clusters
 		m.Response = r.Response + " sinuosity"
 		if r.Response == "any" {
 			m.Response = "sinuosity (any kind)"
@@ -241,24 +244,6 @@ func nearSystems(items []views.MeridianItem, lat float64) bool {
 	return slices.ContainsFunc(items, func(i views.MeridianItem) bool {
 		return i.Kind == "submarine" && math.Abs(math.Abs(i.Latitude)-lat) <= 7.5
 	})
-}
-
-// bestOfSystems picks the row that stands for each system: the best-graded,
-// then the newest, as catalogue.System.Best does.
-func bestOfSystems(rows []catalogue.Row) []catalogue.Row {
-	rank := map[string]int{"remeasured": 0, "surveyed": 1, "traced": 2, "quoted": 3}
-	place := map[string]int{}
-	var out []catalogue.Row
-	for _, r := range rows {
-		k, seen := place[r.System]
-		if !seen {
-			place[r.System] = len(out)
-			out = append(out, r)
-		} else if rank[r.Grade] <= rank[out[k].Grade] { // rows come oldest first
-			out[k] = r
-		}
-	}
-	return out
 }
 
 // presentMa: rows older than this sit at their palaeolatitude, as in the fits.

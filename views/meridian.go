@@ -16,7 +16,8 @@ type MeridianPage struct {
 	Page
 	Filter   catalogue.Filter
 	Facets   []catalogue.Facet
-	Items    []MeridianItem // every system under the filter
+	Items    []MeridianItem // the systems under the filter, of very many a share of each latitude
+	Passing  int            // systems under the filter
 	Layouts  *MeridianLayouts
 	Total    int    // systems in the catalogue
 	Folded   bool   // latitudes folded onto |latitude|
@@ -24,6 +25,9 @@ type MeridianPage struct {
 	Headline string // the answer, or why there is none
 	Rows     int    // measurements behind the headline
 	Clusters int
+	// What the expectations were fitted on.
+	ExpectedRows, ExpectedFrom int
+
 	Expected []MeridianExpected // at 0, 15 ... 75 degrees
 	Response string             // which sinuosity is expected, in words
 
@@ -43,6 +47,10 @@ func (m MeridianPage) analysisHref() templ.SafeURL {
 	q.Set("scale", "raw")
 	return templ.SafeURL("/regression?" + q.Encode())
 }
+
+// MeridianDrawn is about how many systems are drawn: more ribbons than that are
+// neither told apart nor quick to load.
+const MeridianDrawn = 1200
 
 // MeridianSpin is the expectation at the rotation rate of one age.
 type MeridianSpin struct {

@@ -41,12 +41,15 @@ func hasRiver(m MeridianPage) bool {
 // meridianCaption could go to print.
 func meridianCaption(m MeridianPage) string {
 	s := fmt.Sprintf("%s of %s in the catalogue, each as a sine-generated curve of its own sinuosity over one fixed length: 1.05 is nearly straight, 2.1 crosses at right angles, 3 folds back. ",
-		plural(len(m.Items), "system", "systems"), strconv.Itoa(m.Total))
+		plural(m.Passing, "system", "systems"), strconv.Itoa(m.Total))
+	if len(m.Items) < m.Passing {
+		s += fmt.Sprintf("%d of them are drawn: the same share of every five degrees of latitude, the best-graded first. The answer above rests on all of them. ", len(m.Items))
+	}
 	s += "A sinuosity past 5 is drawn at 5 with a double tick. "
 	if len(m.Expected) > 0 {
 		s += "Expected: " + m.Response + " of one new submarine system, median and the limits that hold 80 % of new systems"
-		if m.Rows > 0 {
-			s += fmt.Sprintf(", from %s", plural(m.Rows, "measurement", "measurements"))
+		if m.ExpectedRows > 0 {
+			s += fmt.Sprintf(", from %s in %s", plural(m.ExpectedRows, "measurement", "measurements"), plural(m.ExpectedFrom, "deposit", "deposits"))
 		}
 		s += "; drawn only where there are systems to expect from. "
 	}

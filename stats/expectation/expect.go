@@ -29,6 +29,9 @@ type Fits struct {
 	sized    [4]sizes            // rows with a width, a depth, a slope, a radius and width
 	inner    map[float64]float64 // shares of the plain mixture at the usual quantiles
 	memory   memory
+
+	filtered        sync.Once
+	dimensionsOfAll []Dimension // of the filtered rows
 }
 
 // Options of Fit.

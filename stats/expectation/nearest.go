@@ -157,6 +157,14 @@ func (f *Fits) nearest(t *Target) []Nearest {
 // dimensions are quantiles of size over the nearest systems, or over all the
 // chosen rows where there are none; each deposit counts alike.
 func (f *Fits) dimensions(near []Nearest) []Dimension {
+	if len(near) == 0 {
+		f.filtered.Do(func() { f.dimensionsOfAll = f.dimensionsOf(nil) })
+		return slices.Clone(f.dimensionsOfAll)
+	}
+	return f.dimensionsOf(near)
+}
+
+func (f *Fits) dimensionsOf(near []Nearest) []Dimension {
 	from, use := "filtered", map[string]bool{}
 	for _, n := range near {
 		from, use[n.Slug] = "nearest", true
