@@ -103,7 +103,7 @@ func TestGradeIsChosenAndReviewedByItsCriteria(t *testing.T) {
 	_, ann, cy := newContribution(t)
 	ann.get("/contribute").is(http.StatusOK).says("finer than a quarter wavelength", "the method unknown")
 	sent := ann.post("/contribute", press(ann.newRecord(with(goodRecord(), "grade", "surveyed", "survey", "multibeam")), "submit")).is(http.StatusOK)
-	a := cy.get(reviewOfPath(sent)).is(http.StatusOK).says("Grade: surveyed", "with the method stated", "seen by multibeam")
+	a := cy.get(reviewOfPath(sent)).is(http.StatusOK).says("Grade: surveyed", "with the method stated", "Survey: multibeam")
 	if a.doc().Find(".criteria .tag").Length() != 1 {
 		t.Error("the grade of the record is not marked")
 	}

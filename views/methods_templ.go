@@ -312,20 +312,28 @@ func methodsPlanform(p MethodsPage) templ.Component {
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 15, " . All ribbons have three waves over one length.</p><h3>Grades</h3><p>Remeasured: by this program from a centreline whose vertex spacing is finer than a quarter wavelength. Surveyed: by the source from a survey with the method stated. Traced: from a figure. Quoted: method unknown. Never changed silently.</p><h3>Checks</h3><p>Refused: sinuosity under 1, |latitude| over 90, longitude outside −180 to 360, width or depth not above 0, negative age. Stored with a warning, and to be overridden with a reason: a slope of 0 or below, or outside 0.0001 to 0.1 (is it degrees or per mille?); a reach sinuosity over 4; width/depth outside 5 to 150 (10 to 100 in Shumaker et al., Geosphere 14:2171, 2018); radius/width under 1 or over 20; wavelength/width outside 3 to 40; sinuosity and the ratio of both slopes more than 20 % apart; a point on land; a place far from the other records of its basin; a buried age without a palaeolatitude; a near duplicate; coarse vertices. River scaling is used for such checks only: λ about 10 to 14 W, R about 2 to 3 W (Leopold &amp; Wolman 1960; Langbein &amp; Leopold 1966).</p><h3>Classes</h3><p>No published boundary between straight and sinuous submarine channels is settled. The limits ")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 15, " . All ribbons have three waves over one length.</p><h3>Grades</h3>")
+		if templ_7745c5c3_Err != nil {
+			return templ_7745c5c3_Err
+		}
+		templ_7745c5c3_Err = gradeCriteria("").Render(ctx, templ_7745c5c3_Buffer)
+		if templ_7745c5c3_Err != nil {
+			return templ_7745c5c3_Err
+		}
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 16, "<p>Chosen by the contributor, reviewed by a curator, never changed silently.</p><h3>Curation</h3><p>Nothing joins, changes or leaves the catalogue but by a curator, and each change keeps its person, time and reason. A file is accepted whole once a sample of it is read: n of its N rows, drawn without replacement with a seed that is kept. When none of the n is wrong, the largest number d that may still be is that with C(N − d, n)/C(N, n) ≥ 0.05 (hypergeometric, 95 %). Of two edits of one record written from the same state, each field is chosen. A withdrawn record answers 410 and its id is never given again; a merged system answers 308 with the one it is part of. Releases are untouched by either.</p><p>A record is held against its stored line: its sinuosity is doubtful more than 2 % outside what the line gives with half and double the window and the smoothing (the sinuosity of the reach: more than 5 % off), its vertex spacing when one is more than a quarter larger than the other.</p><h3>Checks</h3><p>Refused: sinuosity under 1, |latitude| over 90, longitude outside −180 to 360, width or depth not above 0, negative age. Stored with a warning, and to be overridden with a reason: a slope of 0 or below, or outside 0.0001 to 0.1 (is it degrees or per mille?); a reach sinuosity over 4; width/depth outside 5 to 150 (10 to 100 in Shumaker et al., Geosphere 14:2171, 2018); radius/width under 1 or over 20; wavelength/width outside 3 to 40; sinuosity and the ratio of both slopes more than 20 % apart; a point on land; a place far from the other records of its basin; a buried age without a palaeolatitude; a near duplicate; coarse vertices. River scaling is used for such checks only: λ about 10 to 14 W, R about 2 to 3 W (Leopold &amp; Wolman 1960; Langbein &amp; Leopold 1966).</p><h3>Classes</h3><p>No published boundary between straight and sinuous submarine channels is settled. The limits ")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
 		var templ_7745c5c3_Var13 string
 		templ_7745c5c3_Var13, templ_7745c5c3_Err = templ.JoinStringErrs(classList(p.Classes))
 		if templ_7745c5c3_Err != nil {
-			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 135, Col: 118}
+			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 144, Col: 118}
 		}
 		_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var13))
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 16, " are a convention of this program, which the keepers of a catalogue can set. In rivers 1.5 is used for meandering (Leopold &amp; Wolman, USGS Prof. Pap. 282-B, 1957).</p></section>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 17, " are a convention of this program, which the keepers of a catalogue can set. In rivers 1.5 is used for meandering (Leopold &amp; Wolman, USGS Prof. Pap. 282-B, 1957).</p></section>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
@@ -350,101 +358,88 @@ func methodsTable() templ.Component {
 		}
 		ctx = templ.InitializeContext(ctx)
 		ctx = templ.ClearChildren(ctx)
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 17, "<section><h2 id=\"table\">The measurement table</h2><p>One row a measurement, the same columns in and out: RFC 4180, a header row, UTF-8. Required columns are marked. Text that a spreadsheet would run as a formula carries a neutralising apostrophe on the way out, taken off on the way in; numbers are never touched and come back to the last digit. Also accepted in, converted and the conversion shown: <code>valley_slope_deg</code>, <code>valley_slope_permille</code>, <code>valley_slope_ratio</code> (1 : n), lengths in <code>_km</code>, <code>age_ka</code>, latitudes in degrees and minutes.</p>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 18, "<section><h2 id=\"table\">The measurement table</h2><p>One row a measurement, the same columns in and out: RFC 4180, a header row, UTF-8. Required columns are marked. Text that a spreadsheet would run as a formula carries a neutralising apostrophe on the way out, taken off on the way in; numbers are never touched and come back to the last digit. Also accepted in, converted and the conversion shown: <code>valley_slope_deg</code>, <code>valley_slope_permille</code>, <code>valley_slope_ratio</code> (1 : n), lengths in <code>_km</code>, <code>age_ka</code>, latitudes in degrees and minutes.</p>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
 		for _, g := range columnGroups() {
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 18, "<details><summary>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 19, "<details><summary>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 			var templ_7745c5c3_Var15 string
 			templ_7745c5c3_Var15, templ_7745c5c3_Err = templ.JoinStringErrs(strings.ToUpper(g.name[:1]) + g.name[1:])
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 151, Col: 55}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 160, Col: 55}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var15))
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 19, " (")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 20, " (")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 			var templ_7745c5c3_Var16 string
 			templ_7745c5c3_Var16, templ_7745c5c3_Err = templ.JoinStringErrs(strconv.Itoa(len(g.columns)))
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 151, Col: 89}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 160, Col: 89}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var16))
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 20, " columns)</summary><div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 21, " columns)</summary><div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 			var templ_7745c5c3_Var17 string
 			templ_7745c5c3_Var17, templ_7745c5c3_Err = templruntime.NewAttributeExpression("Columns: " + g.name).Resolve(ctx)
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 152, Col: 84}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 161, Col: 84}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ_7745c5c3_Var17)
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 21, "\"><table class=\"data\"><thead><tr><th scope=\"col\">Column</th><th scope=\"col\">Unit</th><th scope=\"col\">Holds</th><th scope=\"col\">What it is</th></tr></thead> <tbody>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 22, "\"><table class=\"data\"><thead><tr><th scope=\"col\">Column</th><th scope=\"col\">Unit</th><th scope=\"col\">Holds</th><th scope=\"col\">What it is</th></tr></thead> <tbody>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 			for _, c := range g.columns {
-				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 22, "<tr><th scope=\"row\"><code>")
+				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 23, "<tr><th scope=\"row\"><code>")
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}
 				var templ_7745c5c3_Var18 string
 				templ_7745c5c3_Var18, templ_7745c5c3_Err = templ.JoinStringErrs(c.Name)
 				if templ_7745c5c3_Err != nil {
-					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 159, Col: 24}
+					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 168, Col: 24}
 				}
 				_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var18))
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}
-				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 23, "</code> ")
+				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 24, "</code> ")
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}
 				if c.Required {
-					templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 24, "<span class=\"tag\">required</span>")
+					templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 25, "<span class=\"tag\">required</span>")
 					if templ_7745c5c3_Err != nil {
 						return templ_7745c5c3_Err
 					}
 				}
-				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 25, "</th><td>")
+				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 26, "</th><td>")
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}
 				var templ_7745c5c3_Var19 string
 				templ_7745c5c3_Var19, templ_7745c5c3_Err = templ.JoinStringErrs(c.Unit)
 				if templ_7745c5c3_Err != nil {
-					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 164, Col: 21}
+					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 173, Col: 21}
 				}
 				_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var19))
-				if templ_7745c5c3_Err != nil {
-					return templ_7745c5c3_Err
-				}
-				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 26, "</td><td>")
-				if templ_7745c5c3_Err != nil {
-					return templ_7745c5c3_Err
-				}
-				var templ_7745c5c3_Var20 string
-				templ_7745c5c3_Var20, templ_7745c5c3_Err = templ.JoinStringErrs(holdsText(c))
-				if templ_7745c5c3_Err != nil {
-					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 165, Col: 27}
-				}
-				_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var20))
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}
@@ -452,26 +447,39 @@ func methodsTable() templ.Component {
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}
+				var templ_7745c5c3_Var20 string
+				templ_7745c5c3_Var20, templ_7745c5c3_Err = templ.JoinStringErrs(holdsText(c))
+				if templ_7745c5c3_Err != nil {
+					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 174, Col: 27}
+				}
+				_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var20))
+				if templ_7745c5c3_Err != nil {
+					return templ_7745c5c3_Err
+				}
+				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 28, "</td><td>")
+				if templ_7745c5c3_Err != nil {
+					return templ_7745c5c3_Err
+				}
 				var templ_7745c5c3_Var21 string
 				templ_7745c5c3_Var21, templ_7745c5c3_Err = templ.JoinStringErrs(c.Help)
 				if templ_7745c5c3_Err != nil {
-					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 166, Col: 21}
+					return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 175, Col: 21}
 				}
 				_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var21))
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}
-				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 28, "</td></tr>")
+				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 29, "</td></tr>")
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}
 			}
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 29, "</tbody></table></div></details>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 30, "</tbody></table></div></details>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 		}
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 30, "</section>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 31, "</section>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
@@ -503,7 +511,7 @@ func methodsKept() templ.Component {
 		}
 		ctx = templ.InitializeContext(ctx)
 		ctx = templ.ClearChildren(ctx)
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 31, "<section><h2 id=\"private\">What not everybody sees</h2><p>A private row is seen by its owner and the people the owner names: in the tables, on the chart and in the fits of those people, marked <code>private</code>, with an id that begins with <code>private-</code>, and counted beside the rows of every fit (<code>private_rows</code>). Nobody reviews it, and nothing that others see rests on it: no count, no fit, no figure, no release, no frozen analysis. With <code>private=no</code> in the address its people see what everybody sees.</p><p>A row under embargo is reviewed and accepted, and seen by others from its day on, at 0 h UTC, or when it is said to be published. Where its owner allows, others meanwhile see it with latitude, longitude, palaeolatitude and catchment latitude rounded to 1 degree, without the ends of the reach, its name, its depth, its line and its notes; filters, order and distances use the rounded place. Such a row is marked in its notes and takes part in fits at its rounded latitude: an error of at most half a degree, 0.87 % of the largest Coriolis parameter.</p></section><section><h2 id=\"kept\">What stays the same</h2><p>A recomputation measures every stored centreline again with one set of settings and keeps the results beside the stored values, which it does not touch; a regression takes them as its response when it names the recomputation. It holds the lines that were stored when it began, and says which could not be measured and why.</p><p>A frozen analysis keeps its rows, its settings and its seed under a name. It is run again on those rows each time it is opened, whatever has become of the catalogue, and a SHA-256 of all its numbers says whether they are those of the day it was frozen. Should a later version of the program compute another digit, the page says so and names both versions.</p><p>A release freezes the whole catalogue under a number: its table never changes, carries a SHA-256 of its CSV and a citation, and every page shows it with <code>release=NAME</code> in the address. Between releases the catalogue moves by accepted changes only, each a revision with who, when and why; figures and files name the revision they were made at.</p></section>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 32, "<section><h2 id=\"private\">What not everybody sees</h2><p>A private row is seen by its owner and the people the owner names: in the tables, on the chart and in the fits of those people, marked <code>private</code>, with an id that begins with <code>private-</code>, and counted beside the rows of every fit (<code>private_rows</code>). Nobody reviews it, and nothing that others see rests on it: no count, no fit, no figure, no release, no frozen analysis. With <code>private=no</code> in the address its people see what everybody sees.</p><p>A row under embargo is reviewed and accepted, and seen by others from its day on, at 0 h UTC, or when it is said to be published. Where its owner allows, others meanwhile see it with latitude, longitude, palaeolatitude and catchment latitude rounded to 1 degree, without the ends of the reach, its name, its depth, its line and its notes; filters, order and distances use the rounded place. Such a row is marked in its notes and takes part in fits at its rounded latitude: an error of at most half a degree, 0.87 % of the largest Coriolis parameter.</p></section><section><h2 id=\"kept\">What stays the same</h2><p>A recomputation measures every stored centreline again with one set of settings and keeps the results beside the stored values, which it does not touch; a regression takes them as its response when it names the recomputation. It holds the lines that were stored when it began, and says which could not be measured and why.</p><p>A frozen analysis keeps its rows, its settings and its seed under a name. It is run again on those rows each time it is opened, whatever has become of the catalogue, and a SHA-256 of all its numbers says whether they are those of the day it was frozen. Should a later version of the program compute another digit, the page says so and names both versions.</p><p>A release freezes the whole catalogue under a number: its table never changes, carries a SHA-256 of its CSV and a citation, and every page shows it with <code>release=NAME</code> in the address. Between releases the catalogue moves by accepted changes only, each a revision with who, when and why; figures and files name the revision they were made at.</p></section>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
@@ -528,33 +536,33 @@ func methodsAddresses(p MethodsPage) templ.Component {
 		}
 		ctx = templ.InitializeContext(ctx)
 		ctx = templ.ClearChildren(ctx)
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 32, "<section><h2 id=\"addresses\">Addresses and files</h2><p>Every page is also data at its own address with a suffix: <code>/systems.csv</code>, <code>/systems.json</code>, <code>/systems.geojson</code>, <code>/systems/dimensions.csv</code>, <code>/systems/NAME.json</code>, <code>/regression.json</code>, <code>/regression.csv</code> (every row considered, kept or why not), <code>/expectation.json</code>. Every state of a page is in its address, seed and all; JSON holds full doubles, finite or null, and no time of day, so that equal questions give equal bytes. The CSV and the GeoJSON hold all rows of a filter; HTML and JSON are paged by <code>page</code> and <code>per_page</code>, at most ")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 33, "<section><h2 id=\"addresses\">Addresses and files</h2><p>Every page is also data at its own address with a suffix: <code>/systems.csv</code>, <code>/systems.json</code>, <code>/systems.geojson</code>, <code>/systems/dimensions.csv</code>, <code>/systems/NAME.json</code>, <code>/regression.json</code>, <code>/regression.csv</code> (every row considered, kept or why not), <code>/expectation.json</code>. Every state of a page is in its address, seed and all; JSON holds full doubles, finite or null, and no time of day, so that equal questions give equal bytes. The CSV and the GeoJSON hold all rows of a filter; HTML and JSON are paged by <code>page</code> and <code>per_page</code>, at most ")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
 		var templ_7745c5c3_Var24 string
 		templ_7745c5c3_Var24, templ_7745c5c3_Err = templ.JoinStringErrs(strconv.Itoa(catalogue.MaxPerPage))
 		if templ_7745c5c3_Err != nil {
-			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 218, Col: 170}
+			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 227, Col: 170}
 		}
 		_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var24))
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 33, ".</p><p>Filter parameters, on every page that shows or uses systems: <code>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 34, ".</p><p>Filter parameters, on every page that shows or uses systems: <code>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
 		var templ_7745c5c3_Var25 string
 		templ_7745c5c3_Var25, templ_7745c5c3_Err = templ.JoinStringErrs(strings.Join(p.Filters, " "))
 		if templ_7745c5c3_Err != nil {
-			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 220, Col: 102}
+			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 229, Col: 102}
 		}
 		_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var25))
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 34, "</code>. Repeated values of one are joined by “or”, different ones by “and”. Fits take <code>kind=submarine</code> unless told otherwise.</p><p>Targets of an expectation are confidential: the page also takes POST with the same names in the body, query strings are never logged, and no address is passed to other sites.</p></section>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 35, "</code>. Repeated values of one are joined by “or”, different ones by “and”. Fits take <code>kind=submarine</code> unless told otherwise.</p><p>Targets of an expectation are confidential: the page also takes POST with the same names in the body, query strings are never logged, and no address is passed to other sites.</p></section>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
@@ -579,56 +587,56 @@ func methodsCredits(p MethodsPage) templ.Component {
 		}
 		ctx = templ.InitializeContext(ctx)
 		ctx = templ.ClearChildren(ctx)
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 35, "<section><h2 id=\"tables\">Built-in tables and credits</h2><dl class=\"credits\">")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 36, "<section><h2 id=\"tables\">Built-in tables and credits</h2><dl class=\"credits\">")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
 		for _, c := range p.Credits {
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 36, "<dt><code>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 37, "<dt><code>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 			var templ_7745c5c3_Var27 string
 			templ_7745c5c3_Var27, templ_7745c5c3_Err = templ.JoinStringErrs(c.Table)
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 232, Col: 23}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 241, Col: 23}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var27))
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 37, "</code></dt><dd>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 38, "</code></dt><dd>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 			var templ_7745c5c3_Var28 string
 			templ_7745c5c3_Var28, templ_7745c5c3_Err = templ.JoinStringErrs(strings.Join(c.Lines, " "))
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 233, Col: 36}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 242, Col: 36}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var28))
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 38, "</dd>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 39, "</dd>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 		}
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 39, "<dt>Land</dt><dd>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 40, "<dt>Land</dt><dd>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
 		var templ_7745c5c3_Var29 string
 		templ_7745c5c3_Var29, templ_7745c5c3_Err = templ.JoinStringErrs(p.LandCredit)
 		if templ_7745c5c3_Err != nil {
-			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 236, Col: 21}
+			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 245, Col: 21}
 		}
 		_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var29))
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 40, "</dd><dt>Typefaces</dt><dd>Source Serif 4 and Atkinson Hyperlegible Next, both under the SIL Open Font License 1.1: <a href=\"/static/fonts/source-serif-4-OFL.txt\">licence</a>, <a href=\"/static/fonts/atkinson-hyperlegible-next-OFL.txt\">licence</a>.</dd></dl></section>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 41, "</dd><dt>Typefaces</dt><dd>Source Serif 4 and Atkinson Hyperlegible Next, both under the SIL Open Font License 1.1: <a href=\"/static/fonts/source-serif-4-OFL.txt\">licence</a>, <a href=\"/static/fonts/atkinson-hyperlegible-next-OFL.txt\">licence</a>.</dd></dl></section>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
@@ -653,92 +661,92 @@ func formsTable() templ.Component {
 		}
 		ctx = templ.InitializeContext(ctx)
 		ctx = templ.ClearChildren(ctx)
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 41, "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Forms of regression\"><table class=\"data\"><caption>Forms, each of sinuosity P on one predictor x</caption> <thead><tr><th scope=\"col\">Form</th><th scope=\"col\">Equation</th><th scope=\"col\">Source</th></tr></thead> <tbody>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 42, "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Forms of regression\"><table class=\"data\"><caption>Forms, each of sinuosity P on one predictor x</caption> <thead><tr><th scope=\"col\">Form</th><th scope=\"col\">Equation</th><th scope=\"col\">Source</th></tr></thead> <tbody>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
 		for _, f := range stats.Forms {
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 42, "<tr><th scope=\"row\"><code>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 43, "<tr><th scope=\"row\"><code>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 			var templ_7745c5c3_Var31 string
 			templ_7745c5c3_Var31, templ_7745c5c3_Err = templ.JoinStringErrs(f)
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 250, Col: 34}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 259, Col: 34}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var31))
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 43, "</code></th><td>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 44, "</code></th><td>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 			var templ_7745c5c3_Var32 string
 			templ_7745c5c3_Var32, templ_7745c5c3_Err = templ.JoinStringErrs(formEquations[f])
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 250, Col: 70}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 259, Col: 70}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var32))
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 44, "</td><td>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 45, "</td><td>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 			var templ_7745c5c3_Var33 string
 			templ_7745c5c3_Var33, templ_7745c5c3_Err = templ.JoinStringErrs(orDash(formSources[f]))
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 250, Col: 105}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 259, Col: 105}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var33))
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 45, "</td></tr>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 46, "</td></tr>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 		}
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 46, "</tbody></table></div><div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Predictors\"><table class=\"data\"><caption>Predictors</caption> <thead><tr><th scope=\"col\">Name</th><th scope=\"col\">What it is</th></tr></thead> <tbody>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 47, "</tbody></table></div><div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Predictors\"><table class=\"data\"><caption>Predictors</caption> <thead><tr><th scope=\"col\">Name</th><th scope=\"col\">What it is</th></tr></thead> <tbody>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
 		for _, f := range stats.Predictors {
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 47, "<tr><th scope=\"row\"><code>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 48, "<tr><th scope=\"row\"><code>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 			var templ_7745c5c3_Var34 string
 			templ_7745c5c3_Var34, templ_7745c5c3_Err = templ.JoinStringErrs(f)
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 261, Col: 34}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 270, Col: 34}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var34))
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 48, "</code></th><td>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 49, "</code></th><td>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 			var templ_7745c5c3_Var35 string
 			templ_7745c5c3_Var35, templ_7745c5c3_Err = templ.JoinStringErrs(orDash(predictorTexts[f]))
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 261, Col: 79}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 270, Col: 79}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var35))
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 49, "</td></tr>")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 50, "</td></tr>")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}
 		}
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 50, "</tbody></table></div>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 51, "</tbody></table></div>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
