@@ -13,7 +13,7 @@ import (
 // column as data-label, and the table the class "stacks". The headings are so
 // written once, in the head. Tables of one or two columns fit a phone as they
 // are; a table whose head has several rows or joined cells stays a table that
-// is moved sideways.
+// is moved sideways, and so does a matrix (class grid), which is read both ways.
 func StackTables(page []byte) []byte {
 	open, shut := []byte(`<table class="data`), []byte("</table>")
 	if !bytes.Contains(page, open) {
@@ -38,7 +38,7 @@ func StackTables(page []byte) []byte {
 // stackTable is one table, from its start tag to before its end tag.
 func stackTable(table []byte) []byte {
 	heads, ok := columnHeads(table)
-	if !ok || len(heads) < 3 {
+	if end := bytes.IndexByte(table, '>'); !ok || len(heads) < 3 || end > 0 && bytes.Contains(table[:end], []byte(" grid")) {
 		return table
 	}
 	var out bytes.Buffer

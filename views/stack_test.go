@@ -15,6 +15,7 @@ func TestStackTables(t *testing.T) {
 		<tr><td>f</td><td class="n">` + unknownMark + `</td><td></td></tr><tr><td colspan="2">x</td><td class="n">3</td></tr></tbody></table><p>after</p>
 		<table class="data"><thead><tr><th>A</th><th>B</th></tr></thead><tbody><tr><td>1</td><td>2</td></tr></tbody></table>
 		<table class="data"><thead><tr><th colspan="2">A</th><th>B</th></tr></thead><tbody><tr><td>1</td></tr></tbody></table>
+		<table class="data compact grid"><thead><tr><th>A</th><th>B</th><th>C</th></tr></thead><tbody><tr><td>1</td></tr></tbody></table>
 		<table class="data"><tbody><tr><td>1</td></tr></tbody></table>`
 	got := string(StackTables([]byte(page)))
 	d, err := goquery.NewDocumentFromReader(strings.NewReader(got))
