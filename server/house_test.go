@@ -154,6 +154,10 @@ func (h *house) contributorsPages() []housePage {
 	h.withdraw(withdrawnRecord)
 	// A record that waits, another one kept as a draft, a file with something odd.
 	ann.post("/contribute", press(ann.newRecord(goodRecord()), "submit")).is(http.StatusOK)
+	kept := goodRecord()
+	kept["system_name"], kept["embargo"], kept["embargo_until"] = "Osier Reach Channel", "date", "2900-01-31"
+	sent := ann.post("/contribute", press(ann.newRecord(kept), "submit")).is(http.StatusOK)
+	h.who["curator"].post(reviewOfPath(sent), url.Values{"action": {"accept"}, "comment": {""}}).is(http.StatusOK)
 	draft := goodRecord()
 	draft["system_name"] = "Sedge Hollow Channel"
 	saved := ann.post("/contribute", press(ann.newRecord(draft), "save")).is(http.StatusOK)
@@ -192,6 +196,7 @@ func (h *house) curatorsPages() []housePage {
 	}
 	return []housePage{
 		{"curator", "review", "/review", 0, ""},
+		{"curator", "review-embargoes", "/review/embargoes", 0, ""},
 		{"curator", "review-activity", "/review/activity", 0, ""},
 		{"curator", "review-record", record, 0, ""},
 		{"curator", "review-edit", record + "/edit", 0, ""},
