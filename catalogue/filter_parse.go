@@ -191,7 +191,11 @@ func (f *Filter) parseRange(name, v string) error {
 			} else if r.lo > -largest {
 				expected += ", " + shortNumber(r.lo) + " or more"
 			}
-			return badParameter(name, strconv.Quote(Clip(v))+" is not allowed", expected+", with a point as decimal sign")
+			why := strconv.Quote(Clip(v)) + " is not allowed"
+			if hint := NumberHint(v, ""); err != nil && hint != "" {
+				why = hint
+			}
+			return badParameter(name, why, expected+", with a point as decimal sign")
 		}
 		*into = Num(x)
 		return nil

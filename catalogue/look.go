@@ -72,6 +72,25 @@ func lookAt(ctx context.Context, open func() io.Reader, given Reading) (*Look, e
 	return l, l.table(ctx, r.decoded(open()), r)
 }
 
+// LookAt takes a first look at a file: as it seems to be where given leaves it
+// open. The file stands anywhere afterwards.
+func LookAt(ctx context.Context, f io.ReadSeeker, given Reading) (*Look, error) {
+	if err := given.check(); err != nil {
+		return nil, err
+	}
+	var back error
+	look, err := lookAt(ctx, func() io.Reader {
+		if _, err := f.Seek(0, io.SeekStart); err != nil {
+			back = err
+		}
+		return f
+	}, given)
+	if err = errors.Join(err, back); err != nil {
+		return nil, &Error{Code: Invalid, Message: "the file could not be read", Cause: err}
+	}
+	return look, nil
+}
+
 // scanBytes returns the first bytes and whether all of them are UTF-8.
 func scanBytes(ctx context.Context, in io.Reader) (start []byte, valid bool, err error) {
 	buf := make([]byte, 64<<10)

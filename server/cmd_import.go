@@ -17,15 +17,27 @@ stored, and every refused row is printed with its line, column, value and what
 was expected. Warnings and converted units are printed and do not stop it.
 Rows that carry a known measurement id propose a change to that measurement;
 identical rows are skipped and counted. Without -publish the rows wait for a
-curator. FILE.csv may be - for standard input.`
+curator. FILE.csv may be - for standard input.
+
+With -match the file may have other headers, separators and number signs: they
+are guessed as the page for files guesses them, and printed. What the guess
+leaves open is asked for: -encoding, -numbers; -as 'HEADER=COLUMN' says what one
+column is read as (nothing after = leaves it out), in the unit of COLUMN, as
+valley_slope_deg or channel_width_km. -partial takes the good rows although
+others are refused.`
 
 func runImport(args []string, in io.Reader, out, errOut io.Writer) int {
-	c := newCall("import", "import -catalogue FILE [-publish] FILE.csv", importHelp, in, out, errOut)
+	c := newCall("import", "import -catalogue FILE [-publish] [-partial] [-match] FILE.csv", importHelp, in, out, errOut)
 	c.withCatalogue()
 	publish := c.flags.Bool("publish", false, "accept the rows without review")
+	partial := c.flags.Bool("partial", false, "take the good rows although others are refused")
+	m := matchFlags(c)
 	files, code, done := c.parseMixed(args)
 	if done {
 		return code
+	}
+	if msg := m.badCall(); msg != "" {
+		return c.bad("%s", msg)
 	}
 	if len(files) != 1 {
 		return c.bad("name one CSV file to import, not %d", len(files))
@@ -40,12 +52,24 @@ func runImport(args []string, in io.Reader, out, errOut io.Writer) int {
 		r, name = f, files[0]
 	}
 	ctx := context.Background()
+	reading := catalogue.Reading{}
+	if *m.match {
+		again, cleanup, err := seekable(r)
+		if err != nil {
+			return c.failed(err)
+		}
+		defer cleanup()
+		if reading, err = m.read(ctx, out, again); err != nil {
+			return c.failed(err)
+		}
+		r = again
+	}
 	s, cleanup, code := c.open(ctx)
 	if s == nil {
 		return code
 	}
 	defer cleanup()
-	report, err := s.Import(ctx, r, catalogue.ImportOptions{Publish: *publish, Why: "imported on the command line"})
+	report, err := s.Import(ctx, r, catalogue.ImportOptions{Publish: *publish, Partial: *partial, Reading: reading, Why: "imported on the command line"})
 	if report == nil {
 		return c.failed(err)
 	}

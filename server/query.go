@@ -78,6 +78,9 @@ func number(q url.Values, name string, def, lo, hi float64) (float64, error) {
 		return def, nil
 	}
 	x, err := strconv.ParseFloat(v, 64)
+	if hint := catalogue.NumberHint(v, ""); err != nil && hint != "" && !strings.Contains(hint, "decimal comma") {
+		return 0, &badInput{name, hint + ". Expected a number from " + short(lo) + " to " + short(hi)}
+	}
 	if dotted := strings.Replace(v, ",", ".", 1); err != nil && strings.Count(v, ",") == 1 && isNumber(dotted) {
 		return 0, &badInput{name, strconv.Quote(clip(v)) + " has a comma as decimal sign. Expected " + dotted + ", with a point"}
 	}
