@@ -2,6 +2,8 @@ package catalogue
 
 import (
 	"context"
+	"crypto/sha256"
+	"encoding/hex"
 	"regexp"
 	"strconv"
 	"strings"
@@ -15,6 +17,9 @@ type SourceUse struct {
 	Measurements int
 	Systems      int
 	Invented     bool // every measurement from it is invented
+	// Slopes and Sizes count the measurements whose slope, or width and depth,
+	// come from it although their sinuosity comes from another source.
+	Slopes, Sizes int
 }
 
 // SourceUses lists the sources of the measurements under the filter, by
@@ -42,7 +47,11 @@ func (s *Store) SourceUses(ctx context.Context, f Filter) ([]SourceUse, error) {
 		}
 		out = append(out, u)
 	}
-	return out, fault("sources", rows.Err())
+	if err := rows.Err(); err != nil {
+		return nil, fault("sources", err)
+	}
+	out, err = valueSources(ctx, q, w, out)
+	return out, fault("sources", err)
 }
 
 // Reference is a citation taken apart as far as it can be read; Text is always
@@ -124,6 +133,10 @@ func CiteKey(s Source) string {
 		if plain := strings.ReplaceAll(Slug(family), "-", ""); plain != "" {
 			name = plain[:min(len(plain), 30)]
 		}
+	}
+	if s.ID == 0 { // of a single value: it has no number
+		sum := sha256.Sum256([]byte(s.Citation + "\n" + s.DOI))
+		return name + r.Year + "-v" + hex.EncodeToString(sum[:4])
 	}
 	return name + r.Year + "-" + strconv.FormatInt(s.ID, 10)
 }

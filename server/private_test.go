@@ -475,3 +475,24 @@ func TestWhoSeesItIsChecked(t *testing.T) {
 	}
 	s.visitor().get("/systems?q=draft").says("No system passes this filter")
 }
+
+// The source of a slope alone is shown with its DOI on the page of its system,
+// in the list of sources and in its files.
+func TestSourceOfASingleValueIsShown(t *testing.T) {
+	s := newSite(t)
+	rows := "system_name,latitude_deg,longitude_deg,sinuosity,sinuosity_kind,measured_line,source,valley_slope,slope_source\n" +
+		"Heron Channel,10,20,1.5,peak,thalweg,Invented Soundings 1:1 (2030),0.003,\"Invented Slopes 2:2 (2031), doi 10.5555/second\"\n"
+	mustRun(t, rows, "import", "-catalogue", s.file, "-publish", "-")
+	v := s.visitor()
+	page := v.get("/systems/heron-channel").is(http.StatusOK)
+	page.says("Slope of m000001: Invented Slopes 2:2 (2031)")
+	if page.doc().Find(`a[href="https://doi.org/10.5555/second"]`).Length() != 1 {
+		t.Error("the DOI of the slope's source is no link")
+	}
+	v.get("/sources").says("Invented Slopes 2:2 (2031)", "10.5555/second")
+	for path, want := range map[string]string{"/sources.csv": "Invented Slopes 2:2 (2031),10.5555/second,0,0,no,1,0", "/sources.json": `"slopes":1`, "/sources.bib": "10.5555/second", "/sources.ris": "10.5555/second"} {
+		if a := v.get(path).is(http.StatusOK); !strings.Contains(a.body, want) {
+			t.Errorf("%s does not hold %q:\n%s", path, want, a.body)
+		}
+	}
+}

@@ -53,6 +53,8 @@ func sourceTableColumns() []catalogue.Column {
 		countColumn("measurements", "Measurements whose sinuosity comes from it."),
 		countColumn("systems", "Systems these belong to."),
 		textColumn("invented", "yes where every measurement from it is invented for the demo."),
+		countColumn("slopes", "Measurements of which only the slope comes from it: their slope_source."),
+		countColumn("sizes", "Measurements of which only width and depth come from it: their size_source."),
 	}
 }
 
@@ -68,7 +70,7 @@ func writeSourceTable(w io.Writer, uses []catalogue.SourceUse) error {
 		if u.Invented {
 			invented = "yes"
 		}
-		_ = out.Write([]string{catalogue.CiteKey(u.Source), catalogue.Neutralise(u.Citation), catalogue.Neutralise(u.DOI), itoa(u.Measurements), itoa(u.Systems), invented})
+		_ = out.Write([]string{catalogue.CiteKey(u.Source), catalogue.Neutralise(u.Citation), catalogue.Neutralise(u.DOI), itoa(u.Measurements), itoa(u.Systems), invented, itoa(u.Slopes), itoa(u.Sizes)})
 	}
 	out.Flush()
 	return out.Error()
@@ -132,6 +134,8 @@ type sourceUseJSON struct {
 	Measurements int      `json:"measurements"`
 	Systems      int      `json:"systems"`
 	Invented     bool     `json:"invented"`
+	Slopes       int      `json:"slopes"`
+	Sizes        int      `json:"sizes"`
 }
 
 func (a *App) sourcesJSON(c echo.Context) error {
@@ -148,7 +152,7 @@ func (a *App) sourcesJSON(c echo.Context) error {
 	}{[]sourceUseJSON{}}
 	for _, u := range uses {
 		r := catalogue.ReadCitation(u.Citation, u.DOI)
-		out.Sources = append(out.Sources, sourceUseJSON{catalogue.CiteKey(u.Source), u.Citation, u.DOI, append([]string{}, r.Authors...), r.Year, r.Title, r.Journal, u.Measurements, u.Systems, u.Invented})
+		out.Sources = append(out.Sources, sourceUseJSON{catalogue.CiteKey(u.Source), u.Citation, u.DOI, append([]string{}, r.Authors...), r.Year, r.Title, r.Journal, u.Measurements, u.Systems, u.Invented, u.Slopes, u.Sizes})
 	}
 	return writeJSON(c, http.StatusOK, out)
 }

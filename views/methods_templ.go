@@ -511,7 +511,7 @@ func methodsKept() templ.Component {
 		}
 		ctx = templ.InitializeContext(ctx)
 		ctx = templ.ClearChildren(ctx)
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 32, "<section><h2 id=\"private\">What not everybody sees</h2><p>A private row is seen by its owner and the people the owner names: in the tables, on the chart and in the fits of those people, marked <code>private</code>, with an id that begins with <code>private-</code>, and counted beside the rows of every fit (<code>private_rows</code>). Nobody reviews it, and nothing that others see rests on it: no count, no fit, no figure, no release, no frozen analysis. With <code>private=no</code> in the address its people see what everybody sees.</p><p>A row under embargo is reviewed and accepted, and seen by others from its day on, at 0 h UTC, or when it is said to be published. Where its owner allows, others meanwhile see it with latitude, longitude, palaeolatitude and catchment latitude rounded to 1 degree, without the ends of the reach, its name, its depth, its line and its notes; filters, order and distances use the rounded place. Such a row is marked in its notes and takes part in fits at its rounded latitude: an error of at most half a degree, 0.87 % of the largest Coriolis parameter.</p></section><section><h2 id=\"kept\">What stays the same</h2><p>A recomputation measures every stored centreline again with one set of settings and keeps the results beside the stored values, which it does not touch; a regression takes them as its response when it names the recomputation. It holds the lines that were stored when it began, and says which could not be measured and why.</p><p>A frozen analysis keeps its rows, its settings and its seed under a name. It is run again on those rows each time it is opened, whatever has become of the catalogue, and a SHA-256 of all its numbers says whether they are those of the day it was frozen. Should a later version of the program compute another digit, the page says so and names both versions.</p><p>A release freezes the whole catalogue under a number: its table never changes, carries a SHA-256 of its CSV and a citation, and every page shows it with <code>release=NAME</code> in the address. Between releases the catalogue moves by accepted changes only, each a revision with who, when and why; figures and files name the revision they were made at.</p></section>")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 32, "<section><h2 id=\"value-sources\">Where single values come from</h2><p>The source of a measurement is that of its sinuosity. A slope, or a width and depth, taken from another paper names it in <code>slope_source</code> or <code>size_source</code>, with the DOI at the end: the page of the system lists it beside the value, and the list of <a href=\"/sources\">sources</a> with its BibTeX and RIS files counts it, together with the source of that DOI or wording where there is one. Clustering by source goes by the source of the sinuosity alone.</p></section><section><h2 id=\"private\">What not everybody sees</h2><p>A private row is seen by its owner and the people the owner names: in the tables, on the chart and in the fits of those people, marked <code>private</code>, with an id that begins with <code>private-</code>, and counted beside the rows of every fit (<code>private_rows</code>). Nobody reviews it, and nothing that others see rests on it: no count, no fit, no figure, no release, no frozen analysis. With <code>private=no</code> in the address its people see what everybody sees.</p><p>A row under embargo is reviewed and accepted, and seen by others from its day on, at 0 h UTC, or when it is said to be published. Where its owner allows, others meanwhile see it with latitude, longitude, palaeolatitude and catchment latitude rounded to 1 degree, without the ends of the reach, its name, its depth, its line and its notes; filters, order and distances use the rounded place. Such a row is marked in its notes and takes part in fits at its rounded latitude: an error of at most half a degree, 0.87 % of the largest Coriolis parameter.</p></section><section><h2 id=\"kept\">What stays the same</h2><p>A recomputation measures every stored centreline again with one set of settings and keeps the results beside the stored values, which it does not touch; a regression takes them as its response when it names the recomputation. It holds the lines that were stored when it began, and says which could not be measured and why.</p><p>A frozen analysis keeps its rows, its settings and its seed under a name. It is run again on those rows each time it is opened, whatever has become of the catalogue, and a SHA-256 of all its numbers says whether they are those of the day it was frozen. Should a later version of the program compute another digit, the page says so and names both versions.</p><p>A release freezes the whole catalogue under a number: its table never changes, carries a SHA-256 of its CSV and a citation, and every page shows it with <code>release=NAME</code> in the address. Between releases the catalogue moves by accepted changes only, each a revision with who, when and why; figures and files name the revision they were made at.</p></section>")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
@@ -543,7 +543,7 @@ func methodsAddresses(p MethodsPage) templ.Component {
 		var templ_7745c5c3_Var24 string
 		templ_7745c5c3_Var24, templ_7745c5c3_Err = templ.JoinStringErrs(strconv.Itoa(catalogue.MaxPerPage))
 		if templ_7745c5c3_Err != nil {
-			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 227, Col: 170}
+			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 234, Col: 170}
 		}
 		_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var24))
 		if templ_7745c5c3_Err != nil {
@@ -556,7 +556,7 @@ func methodsAddresses(p MethodsPage) templ.Component {
 		var templ_7745c5c3_Var25 string
 		templ_7745c5c3_Var25, templ_7745c5c3_Err = templ.JoinStringErrs(strings.Join(p.Filters, " "))
 		if templ_7745c5c3_Err != nil {
-			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 229, Col: 102}
+			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 236, Col: 102}
 		}
 		_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var25))
 		if templ_7745c5c3_Err != nil {
@@ -599,7 +599,7 @@ func methodsCredits(p MethodsPage) templ.Component {
 			var templ_7745c5c3_Var27 string
 			templ_7745c5c3_Var27, templ_7745c5c3_Err = templ.JoinStringErrs(c.Table)
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 241, Col: 23}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 248, Col: 23}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var27))
 			if templ_7745c5c3_Err != nil {
@@ -612,7 +612,7 @@ func methodsCredits(p MethodsPage) templ.Component {
 			var templ_7745c5c3_Var28 string
 			templ_7745c5c3_Var28, templ_7745c5c3_Err = templ.JoinStringErrs(strings.Join(c.Lines, " "))
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 242, Col: 36}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 249, Col: 36}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var28))
 			if templ_7745c5c3_Err != nil {
@@ -630,7 +630,7 @@ func methodsCredits(p MethodsPage) templ.Component {
 		var templ_7745c5c3_Var29 string
 		templ_7745c5c3_Var29, templ_7745c5c3_Err = templ.JoinStringErrs(p.LandCredit)
 		if templ_7745c5c3_Err != nil {
-			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 245, Col: 21}
+			return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 252, Col: 21}
 		}
 		_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var29))
 		if templ_7745c5c3_Err != nil {
@@ -673,7 +673,7 @@ func formsTable() templ.Component {
 			var templ_7745c5c3_Var31 string
 			templ_7745c5c3_Var31, templ_7745c5c3_Err = templ.JoinStringErrs(f)
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 259, Col: 34}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 266, Col: 34}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var31))
 			if templ_7745c5c3_Err != nil {
@@ -686,7 +686,7 @@ func formsTable() templ.Component {
 			var templ_7745c5c3_Var32 string
 			templ_7745c5c3_Var32, templ_7745c5c3_Err = templ.JoinStringErrs(formEquations[f])
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 259, Col: 70}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 266, Col: 70}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var32))
 			if templ_7745c5c3_Err != nil {
@@ -699,7 +699,7 @@ func formsTable() templ.Component {
 			var templ_7745c5c3_Var33 string
 			templ_7745c5c3_Var33, templ_7745c5c3_Err = templ.JoinStringErrs(orDash(formSources[f]))
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 259, Col: 105}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 266, Col: 105}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var33))
 			if templ_7745c5c3_Err != nil {
@@ -722,7 +722,7 @@ func formsTable() templ.Component {
 			var templ_7745c5c3_Var34 string
 			templ_7745c5c3_Var34, templ_7745c5c3_Err = templ.JoinStringErrs(f)
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 270, Col: 34}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 277, Col: 34}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var34))
 			if templ_7745c5c3_Err != nil {
@@ -735,7 +735,7 @@ func formsTable() templ.Component {
 			var templ_7745c5c3_Var35 string
 			templ_7745c5c3_Var35, templ_7745c5c3_Err = templ.JoinStringErrs(orDash(predictorTexts[f]))
 			if templ_7745c5c3_Err != nil {
-				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 270, Col: 79}
+				return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/methods.templ`, Line: 277, Col: 79}
 			}
 			_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ.EscapeString(templ_7745c5c3_Var35))
 			if templ_7745c5c3_Err != nil {
