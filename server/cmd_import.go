@@ -135,6 +135,10 @@ func problemLine(p catalogue.RowProblem) string {
 	}
 	s += p.Message
 	if p.Expected != "" {
+		s = strings.TrimSuffix(s, ".")
+		if !strings.HasSuffix(s, "?") {
+			s += "."
+		}
 		s += " Expected: " + p.Expected
 	}
 	return s

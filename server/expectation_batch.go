@@ -349,8 +349,15 @@ func rowError(err error) string {
 	if p.Status >= http.StatusInternalServerError {
 		return "could not be answered; the fault is in the program, not in the row"
 	}
-	if p.Field != "" {
-		return p.Field + ": " + p.Detail
+	text := p.whole
+	if text == "" {
+		text = p.Detail
+		if p.Expected != "" {
+			text = strings.TrimSuffix(text, ".") + ". Expected: " + p.Expected
+		}
 	}
-	return p.Detail
+	if p.Field != "" {
+		return p.Field + ": " + text
+	}
+	return text
 }

@@ -330,7 +330,7 @@ func TestExpectationBatch(t *testing.T) {
 	if len(rows) != 5 {
 		t.Fatalf("%d rows, want 5:\n%s", len(rows), a.body)
 	}
-	for i, want := range []struct{ name, err string }{{"A", ""}, {"B", "palaeolatitude"}, {"C", ""}, {"D", "cells"}, {"E", ""}} {
+	for i, want := range []struct{ name, err string }{{"A", ""}, {"B", "Expected"}, {"C", ""}, {"D", "cells"}, {"E", ""}} {
 		r := rows[i]
 		if r["name"] != want.name || (want.err == "") != (r["error"] == "") || !strings.Contains(r["error"], want.err) {
 			t.Errorf("row %d: name %q, error %q; want %q, %q", i+1, r["name"], r["error"], want.name, want.err)
