@@ -210,7 +210,11 @@ func (l *layout) set(r *Row, plan cellPlan, text string, converted func(string))
 	if angle && !plainNumber.MatchString(text) && text != "" && !looksDecimalComma(text) {
 		v, err := parseAngle(text, latitude)
 		if err != nil {
-			return unreadable(c, text, err, c.Expected()+", or degrees and minutes as 12 34.5 S")
+			like := "12 34.5 W"
+			if latitude {
+				like = "12 34.5 S"
+			}
+			return unreadable(c, text, err, c.Expected()+", or degrees and minutes as "+like)
 		}
 		if e := c.Set(r, shortNumber(v)); e != nil {
 			return e

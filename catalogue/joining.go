@@ -158,6 +158,9 @@ func (s *Store) RegistrationsOpen(ctx context.Context) (bool, error) {
 	return v == RegistrationOpen, fault("registration", err)
 }
 
+// registeredName is what the name of who registers may be.
+const registeredName = "1 to 50 characters without spaces"
+
 // Register makes an account that waits to be let in. Four digits are added to
 // the name, whether it is taken or not: which names exist cannot be found out
 // by trying them.
@@ -172,9 +175,12 @@ func (s *Store) Register(ctx context.Context, name, credit, about, password stri
 	case about == "" || utf8.RuneCountInString(about) > 2000 || !utf8.ValidString(about):
 		return nil, &Error{Code: Invalid, Field: "about", Message: "who you are is missing or longer than 2,000 characters", Expected: "a few words that a curator can check, as your group and what you will contribute"}
 	case utf8.RuneCountInString(name) > 50:
-		return nil, &Error{Code: Invalid, Field: "name", Message: "the name is longer than 50 characters", Expected: "1 to 50 characters without spaces"}
+		return nil, &Error{Code: Invalid, Field: "name", Message: "the name is longer than 50 characters", Expected: registeredName}
 	}
 	hash, err := s.newAccount(ctx, &name, &credit, "contributor", password)
+	if e := (*Error)(nil); errors.As(err, &e) && e.Field == "name" {
+		e.Expected = registeredName // shorter than of other accounts: digits follow
+	}
 	if err != nil {
 		return nil, err
 	}

@@ -32,11 +32,11 @@ type MergeView struct {
 func (s *Store) MergeView(ctx context.Context, from, into string) (*MergeView, error) {
 	v := &MergeView{}
 	var err error
-	if v.From, err = s.System(ctx, from); err != nil {
-		return nil, namedField("from", from, err)
+	if v.From, err = s.systemCalled(ctx, "from", from); err != nil {
+		return nil, err
 	}
-	if v.Into, err = s.System(ctx, into); err != nil {
-		return nil, namedField("into", into, err)
+	if v.Into, err = s.systemCalled(ctx, "into", into); err != nil {
+		return nil, err
 	}
 	if v.From.Slug == v.Into.Slug {
 		return nil, &Error{Code: Invalid, Field: "into", Message: "both are the same system", Expected: "two different systems"}
@@ -59,11 +59,40 @@ func (s *Store) MergeView(ctx context.Context, from, into string) (*MergeView, e
 	return v, nil
 }
 
-func namedField(field, slug string, err error) error {
-	if CodeOf(err) == NotFound {
-		return &Error{Code: Invalid, Field: field, Message: "there is no system " + strconv.Quote(Clip(slug)), Expected: "the short name of a system, as in its address /systems/..."}
+// systemCalled finds a system by its short name or, where one alone has it, by
+// its name.
+func (s *Store) systemCalled(ctx context.Context, field, text string) (*Detail, error) {
+	d, err := s.System(ctx, text)
+	if CodeOf(err) != NotFound {
+		return d, err
 	}
-	return err
+	found, err := s.slugsCalled(ctx, text)
+	switch {
+	case err != nil:
+		return nil, fault("system", err)
+	case len(found) == 1:
+		return s.System(ctx, found[0])
+	case len(found) > 1:
+		return nil, &Error{Code: Invalid, Field: field, Message: "several systems are called " + strconv.Quote(Clip(text)), Expected: "the address of one of them, ending in " + strings.Join(found, " or ")}
+	}
+	return nil, &Error{Code: Invalid, Field: field, Message: "there is no system " + strconv.Quote(Clip(text)), Expected: "the name of a system, or the address of its page"}
+}
+
+// slugsCalled are the short names of the first few systems with a name.
+func (s *Store) slugsCalled(ctx context.Context, name string) (out []string, err error) {
+	rows, err := s.r.QueryContext(ctx, `SELECT slug FROM systems WHERE system_name = ? AND id IN (SELECT system_id FROM measurements) ORDER BY slug LIMIT 5`, CleanText(name))
+	if err != nil {
+		return nil, err
+	}
+	defer rows.Close()
+	for rows.Next() {
+		var slug string
+		if err := rows.Scan(&slug); err != nil {
+			return nil, err
+		}
+		out = append(out, slug)
+	}
+	return out, rows.Err()
 }
 
 // joinedNames are the other names of a system after another became part of it.

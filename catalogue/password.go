@@ -33,7 +33,9 @@ const (
 	MaxPassword = 512
 )
 
-func checkPassword(p string) error {
+// CheckPassword says whether a text can be a password; if not, an Invalid
+// Error of the field password.
+func CheckPassword(p string) error {
 	n := utf8.RuneCountInString(p)
 	if n < MinPassword || len(p) > MaxPassword || !utf8.ValidString(p) {
 		return &Error{Code: Invalid, Field: "password", Message: "the password is too short or too long", Expected: fmt.Sprintf("%d characters or more, at most %d bytes", MinPassword, MaxPassword)}
@@ -53,7 +55,7 @@ func (s *Store) slot(ctx context.Context) (release func(), err error) {
 
 // hashPassword returns the PHC form, $argon2id$v=19$m=..,t=..,p=..$salt$hash.
 func (s *Store) hashPassword(ctx context.Context, password string) (string, error) {
-	if err := checkPassword(password); err != nil {
+	if err := CheckPassword(password); err != nil {
 		return "", err
 	}
 	release, err := s.slot(ctx)

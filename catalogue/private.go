@@ -5,6 +5,7 @@ import (
 	"database/sql"
 	"errors"
 	"math"
+	"slices"
 	"strconv"
 	"strings"
 	"time"
@@ -140,6 +141,24 @@ func (s *Store) checkAudience(ctx context.Context, q querier, owner int64, sub *
 	}
 	_, err := peopleOf(ctx, q, sub.Audience.People, owner)
 	return err
+}
+
+// AudienceFaults is everything for which a contribution of owner could not be
+// sent to be seen by a: the Errors that Submit would give one at a time. change
+// says that it changes what everyone sees.
+func (s *Store) AudienceFaults(ctx context.Context, owner int64, a Audience, change bool) ([]*Error, error) {
+	_, people := peopleOf(ctx, s.r, a.People, owner)
+	var out []*Error
+	for _, err := range []error{a.check(s.today(), change), people} {
+		var e *Error
+		if err != nil && !errors.As(err, &e) {
+			return nil, fault("audience", err)
+		}
+		if e != nil && !slices.ContainsFunc(out, func(x *Error) bool { return x.Field == e.Field }) {
+			out = append(out, e)
+		}
+	}
+	return out, nil
 }
 
 func (s *Store) today() string { return s.now().UTC().Format(time.DateOnly) }

@@ -91,7 +91,15 @@ func (a *App) signInCarrying(c echo.Context) error {
 		v.Message = "Your session has ended. Sign in again, then choose the file once more: nothing of it was stored."
 		v.Carried, v.CarriedTo = nil, ""
 	}
-	return render(c, http.StatusUnauthorized, views.SignInPage(a.page(c, "Sign in", ""), v))
+	return a.showSignIn(c, http.StatusUnauthorized, v)
+}
+
+// showSignIn shows the sign-in page, with the way to an account that is open.
+func (a *App) showSignIn(c echo.Context, status int, v views.SignIn) (err error) {
+	if v.Register, err = a.store.RegistrationsOpen(c.Request().Context()); err != nil {
+		return err
+	}
+	return render(c, status, views.SignInPage(a.page(c, "Sign in", ""), v))
 }
 
 // formOf reads the fields of a posted form, urlencoded or multipart.
@@ -112,7 +120,7 @@ func formOf(c echo.Context) (url.Values, error) {
 	return r.PostForm, nil
 }
 
-func (p *accounts) signInPage(c echo.Context) (err error) {
+func (p *accounts) signInPage(c echo.Context) error {
 	back := localPath(c.QueryParam("return"))
 	if p.user(c) != nil {
 		return c.Redirect(http.StatusSeeOther, back)
@@ -122,13 +130,10 @@ func (p *accounts) signInPage(c echo.Context) (err error) {
 	}
 	c.Response().Header().Set("Cache-Control", "no-store")
 	v := views.SignIn{Return: back}
-	if v.Register, err = p.store.RegistrationsOpen(c.Request().Context()); err != nil {
-		return err
-	}
 	if strings.HasPrefix(back, "/contribute") || strings.HasPrefix(back, "/review") {
 		v.Message = "Sign in to go on to that page."
 	}
-	return render(c, http.StatusOK, views.SignInPage(p.page(c, "Sign in", ""), v))
+	return p.showSignIn(c, http.StatusOK, v)
 }
 
 func (p *accounts) signIn(c echo.Context) error {
@@ -149,7 +154,7 @@ func (p *accounts) signIn(c echo.Context) error {
 		minutes := int(wait.Minutes()) + 1
 		c.Response().Header().Set("Retry-After", strconv.Itoa(int(wait.Seconds())+1))
 		v.Errors = map[string]string{"password": "Too many attempts failed. Wait " + strconv.Itoa(minutes) + " minutes and try again, or ask a keeper for a new password link."}
-		return render(c, http.StatusTooManyRequests, views.SignInPage(p.page(c, "Sign in", ""), v))
+		return p.showSignIn(c, http.StatusTooManyRequests, v)
 	}
 	u, err := p.store.Authenticate(c.Request().Context(), v.Name, form.Get("password"))
 	if err != nil {
@@ -161,7 +166,7 @@ func (p *accounts) signIn(c echo.Context) error {
 		// One sentence for a wrong name and for a wrong password: the page must
 		// not tell which names exist.
 		v.Errors = map[string]string{"password": "That name and password do not belong together. Check both; the password is case-sensitive."}
-		return render(c, http.StatusUnprocessableEntity, views.SignInPage(p.page(c, "Sign in", ""), v))
+		return p.showSignIn(c, http.StatusUnprocessableEntity, v)
 	}
 	p.byName.clear(key)
 	if err := p.enter(c, u); err != nil {

@@ -61,8 +61,7 @@ func (p *accounts) firstCurator(c echo.Context) error {
 		return err
 	}
 	v := views.OneTime{Token: form.Get("token"), First: true, Name: strings.TrimSpace(form.Get("name")), Credit: strings.TrimSpace(form.Get("credit"))}
-	if form.Get("password") != form.Get("again") {
-		v.Errors = map[string]string{"again": "The two passwords differ; type both again."}
+	if v.Errors = passwordsDiffer(form); v.Errors != nil {
 		return p.oneTime(c, http.StatusUnprocessableEntity, v)
 	}
 	u, err := p.store.UseFirstRunToken(c.Request().Context(), v.Token, v.Name, v.Credit, "keeper", form.Get("password"))
@@ -77,6 +76,20 @@ func (p *accounts) firstCurator(c echo.Context) error {
 	}
 	p.notice(c, "Your account is made and you are signed in. Add other people under People.")
 	return c.Redirect(http.StatusSeeOther, "/account")
+}
+
+// passwordsDiffer says by field that a new password and its repetition differ,
+// and at once whether it could be one at all; nil when they are the same.
+func passwordsDiffer(form url.Values) map[string]string {
+	if form.Get("password") == form.Get("again") {
+		return nil
+	}
+	errs := fieldErrors(catalogue.CheckPassword(form.Get("password")))
+	if errs == nil {
+		errs = map[string]string{}
+	}
+	errs["again"] = "The two passwords differ; type both again."
+	return errs
 }
 
 // fieldErrors are the errors to show beside a field, nil when err is of
@@ -95,7 +108,7 @@ func sentence(message, expected string) string {
 		return ""
 	}
 	s := strings.ToUpper(message[:1]) + message[1:]
-	if !strings.HasSuffix(s, ".") {
+	if !strings.HasSuffix(s, ".") && !strings.HasSuffix(s, "?") {
 		s += "."
 	}
 	if expected != "" {
@@ -125,8 +138,7 @@ func (p *accounts) welcome(c echo.Context) error {
 		return err
 	}
 	v := views.OneTime{Token: token, Name: u.Name}
-	if form.Get("password") != form.Get("again") {
-		v.Errors = map[string]string{"again": "The two passwords differ; type both again."}
+	if v.Errors = passwordsDiffer(form); v.Errors != nil {
 		return p.oneTime(c, http.StatusUnprocessableEntity, v)
 	}
 	u, err = p.store.UsePasswordToken(ctx, token, form.Get("password"))
@@ -200,8 +212,8 @@ func (p *accounts) changePassword(c echo.Context) error {
 		c.Response().Header().Set("Retry-After", strconv.Itoa(int(wait.Seconds())+1))
 		return refuse(http.StatusTooManyRequests, "current", "Too many attempts failed. Wait a quarter of an hour and try again.")
 	}
-	if form.Get("password") != form.Get("again") {
-		return refuse(http.StatusUnprocessableEntity, "again", "The two passwords differ; type both again.")
+	if errs := passwordsDiffer(form); errs != nil {
+		return p.showAccount(c, http.StatusUnprocessableEntity, nil, errs)
 	}
 	if _, err := p.store.Authenticate(ctx, u.Name, form.Get("current")); err != nil {
 		if isFault(err) {

@@ -300,11 +300,14 @@ func (p *contributions) post(c echo.Context) error {
 	}
 	if action == "check" {
 		r.need()
+		if _, err := p.whoSees(c.Request().Context(), p.user(c).ID, r, action); err != nil {
+			return err
+		}
 	}
 	if err := p.check(c.Request().Context(), r); err != nil {
 		return err
 	}
-	f.Checked = action == "check" && len(r.errors) == 0 && r.unanswered() == 0 && (report == nil || report.Error == "")
+	f.Checked = action == "check" && len(r.errors)+len(r.seeing) == 0 && r.unanswered() == 0 && (report == nil || report.Error == "")
 	return p.show(c, http.StatusOK, r, f)
 }
 
@@ -319,8 +322,10 @@ func (p *contributions) keep(c echo.Context, r *record, line *formLine, f views.
 	if u.Waiting {
 		action = "save" // nothing typed is lost while a curator has not let the person in
 	}
-	var audience catalogue.Audience
-	audience, r.seeing = audienceOf(r.typed)
+	audience, err := p.whoSees(ctx, u.ID, r, action)
+	if err != nil {
+		return err
+	}
 	refused := f.Line != nil && f.Line.Error != "" || len(r.seeing) > 0
 	if action != "save" {
 		r.need()

@@ -244,7 +244,11 @@ func (r *record) summary() (out []views.FormError, warned int) {
 			}
 			for _, w := range f.Warnings {
 				if w.ReasonError != "" {
-					out = append(out, views.FormError{Field: "override." + w.Key, Label: label, Message: w.Message})
+					message := w.Message
+					if w.Expected != "" {
+						message = sentence(w.Message, w.Expected)
+					}
+					out = append(out, views.FormError{Field: "override." + w.Key, Label: label, Message: message})
 					warned++
 				}
 			}

@@ -55,6 +55,27 @@ func audienceOf(form url.Values) (a catalogue.Audience, refused map[string]strin
 	return a, refused
 }
 
+// whoSees reads who is to see the row. All for which it could not be sent so is
+// found together with what else is wrong; a draft may wait with it, and a
+// private row needs only its people.
+func (p *contributions) whoSees(ctx context.Context, owner int64, r *record, action string) (a catalogue.Audience, err error) {
+	a, r.seeing = audienceOf(r.typed)
+	sent := a
+	switch action {
+	case "save":
+		return a, nil
+	case "keep":
+		sent = catalogue.Audience{Kind: catalogue.AudiencePrivate, People: a.People}
+	}
+	faults, err := p.store.AudienceFaults(ctx, owner, sent, r.row.Measurement != "")
+	for _, e := range faults {
+		if name, ok := audienceFields[e.Field]; ok && r.seeing[name] == "" {
+			r.seeing[name] = sentence(e.Message, e.Expected)
+		}
+	}
+	return a, err
+}
+
 // audienceFields are the names of the fields of an Error about an audience.
 var audienceFields = map[string]string{"audience": formEmbargo, "until": formUntil, "people": formPeople}
 

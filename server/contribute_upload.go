@@ -273,11 +273,7 @@ func (p *contributions) match(c echo.Context, u *catalogue.Upload, form url.Valu
 			return err
 		}
 		typed := typedReading(again)
-		for _, name := range []string{"encoding", "separator", "licence"} {
-			if form.Get(name) != "" {
-				typed.Set(name, form.Get(name))
-			}
-		}
+		keepTyped(typed, form, u.Look.Header, again.Look.Header)
 		return p.showUpload(c, http.StatusOK, again, typed, nil)
 	}
 	if len(wrong) > 0 {
@@ -296,6 +292,23 @@ func (p *contributions) match(c echo.Context, u *catalogue.Upload, form url.Valu
 	p.uploads.run(u.ID)
 	p.awaitShort(c, u.ID, by)
 	return c.Redirect(http.StatusSeeOther, uploadAddress(u.ID))
+}
+
+// keepTyped puts into a matching what was typed before the file was looked at
+// again. Columns keep theirs as long as there are as many: other signs between
+// cells may cut the file into others, which are guessed anew.
+func keepTyped(typed, form url.Values, before, now []string) {
+	for _, name := range []string{"encoding", "separator", "numbers", "licence"} {
+		if form.Get(name) != "" {
+			typed.Set(name, form.Get(name))
+		}
+	}
+	if len(before) != len(now) {
+		return
+	}
+	for i := range now {
+		typed.Set(views.ColumnField(i), form.Get(views.ColumnField(i)))
+	}
 }
 
 // awaitShort waits as long as nobody looks at nothing: a small file is checked

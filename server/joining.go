@@ -115,8 +115,6 @@ func joiningOf(form url.Values) views.Joining {
 	return views.Joining{Token: form.Get("token"), Name: strings.TrimSpace(form.Get("name")), Credit: strings.TrimSpace(form.Get("credit")), About: strings.TrimSpace(form.Get("about"))}
 }
 
-const passwordsDiffer = "The two passwords differ; type both again."
-
 func (p *joinings) join(c echo.Context) error {
 	form, err := formOf(c)
 	if err != nil {
@@ -128,8 +126,7 @@ func (p *joinings) join(c echo.Context) error {
 		return err
 	}
 	v.Role, v.By = i.Role, i.By
-	if form.Get("password") != form.Get("again") {
-		v.Errors = map[string]string{"again": passwordsDiffer}
+	if v.Errors = passwordsDiffer(form); v.Errors != nil {
 		return p.showJoin(c, http.StatusUnprocessableEntity, v)
 	}
 	u, err := p.store.UseInvitation(c.Request().Context(), v.Token, v.Name, v.Credit, form.Get("password"))
@@ -183,8 +180,7 @@ func (p *joinings) register(c echo.Context) error {
 		v.Errors = map[string]string{"name": "Too many accounts were made from your address or in all. Wait " + strconv.Itoa(int(wait.Minutes())+1) + " minutes and send the form again."}
 		return p.showJoin(c, http.StatusTooManyRequests, v)
 	}
-	if form.Get("password") != form.Get("again") {
-		v.Errors = map[string]string{"again": passwordsDiffer}
+	if v.Errors = passwordsDiffer(form); v.Errors != nil {
 		return p.showJoin(c, http.StatusUnprocessableEntity, v)
 	}
 	u, err := p.store.Register(c.Request().Context(), v.Name, v.Credit, v.About, form.Get("password"))

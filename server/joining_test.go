@@ -66,6 +66,10 @@ func TestRegistration(t *testing.T) {
 	if v.get("/sign-in").doc().Find("main a[href='/register']").Length() != 1 {
 		t.Error("the sign-in page does not lead to registration")
 	}
+	wrong := v.post("/sign-in", url.Values{"name": {"nobody"}, "password": {"wrong"}}).is(http.StatusUnprocessableEntity)
+	if wrong.doc().Find("main a[href='/register']").Length() != 1 {
+		t.Error("a wrong password takes the way to registration away")
+	}
 	form := v.get("/register").is(http.StatusOK).form("main form")
 	form.Set("name", "cy") // taken: nothing may tell
 	form.Set("credit", "A. Marlow")
@@ -75,7 +79,11 @@ func TestRegistration(t *testing.T) {
 	if kept := v.post("/register", form).is(http.StatusUnprocessableEntity).says("differ").form("main form"); kept.Get("about") != form.Get("about") {
 		t.Errorf("typed values lost: %v", kept)
 	}
+	form.Set("password", "abc")
+	v.post("/register", form).is(http.StatusUnprocessableEntity).says("differ", "8 characters or more")
+	form.Set("password", testPassword)
 	form.Set("again", testPassword)
+	v.post("/register", withValues(form, url.Values{"name": {"two words"}})).is(http.StatusUnprocessableEntity).says("1 to 50 characters without spaces")
 	a := v.post("/register", form).is(http.StatusOK).says("Your name to sign in with is cy-", "has not let you in yet")
 	v.get("/review").is(http.StatusForbidden)
 

@@ -139,7 +139,7 @@ func (a *App) handleError(err error, c echo.Context) {
 		c.Response().Header().Set(echo.HeaderRetryAfter, "60")
 	}
 	if p.Status >= 500 {
-		a.log.Error("request failed", "path", loggedPath(c), "request_id", requestID(c), "err", err)
+		a.log.Log(c.Request().Context(), failureLevel(c.Request()), "request failed", "path", loggedPath(c), "request_id", requestID(c), "err", err)
 	}
 	if wantsData(c) {
 		c.Response().Header().Set(echo.HeaderContentType, "application/problem+json")

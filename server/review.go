@@ -80,8 +80,16 @@ func (p *reviews) queued(ctx context.Context, s *catalogue.Submission) (views.Qu
 	q := views.Queued{ID: s.ID, Act: s.Act, Said: s.Said, LastSaid: s.LastSaid, Conflict: len(s.Since) > 0, SystemName: s.Row.SystemName, Sinuosity: num(s.Row.Sinuosity), By: s.By.Credit, At: s.At, Odd: len(findings), Source: s.Row.Source}
 	if s.Current != nil {
 		q.Measured, q.Changes = s.Current.Measurement, len(s.Changes)
+	} else if q.Gone = recordGone(s); q.Gone {
+		q.Measured = s.Row.Measurement
 	}
 	return q, nil
+}
+
+// recordGone says that what a waiting submission changes, or withdraws, was
+// withdrawn meanwhile: no accepting can succeed.
+func recordGone(s *catalogue.Submission) bool {
+	return s.State == "submitted" && s.Act != catalogue.ActRestore && s.Row.Measurement != "" && s.Current == nil
 }
 
 func (p *reviews) submission(c echo.Context) (*catalogue.Submission, error) {
@@ -189,6 +197,8 @@ func reviewOf(s *catalogue.Submission) views.Review {
 	}
 	if s.Current != nil {
 		v.Measurement = s.Current.Measurement
+	} else if v.Gone = recordGone(s); v.Gone {
+		v.Measurement = s.Row.Measurement
 	}
 	if s.Centreline != "" {
 		v.Line = storedLine(s)

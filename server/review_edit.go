@@ -21,6 +21,9 @@ func (p *reviews) edit(c echo.Context) error {
 	if s.State != "submitted" {
 		return &catalogue.Error{Code: catalogue.Conflict, Message: "This record is " + s.State + " by now; there is nothing to edit before accepting."}
 	}
+	if recordGone(s) {
+		return &catalogue.Error{Code: catalogue.Conflict, Message: s.Row.Measurement + " was withdrawn since this change of it was sent. Return the change with a comment, or put the record back first, from its page."}
+	}
 	r := recordOf(s)
 	r.typed.Set("base_revision", strconv.FormatInt(s.CurrentRevision, 10))
 	if err := p.check(c.Request().Context(), r); err != nil {

@@ -56,7 +56,9 @@ func (p *reviews) mergeView(c echo.Context, from, into string) (views.MergePage,
 		v.Errors[e.Field] = sentence(e.Message, e.Expected)
 		return v, nil
 	}
-	v.View = m
+	if v.View = m; m != nil {
+		v.From, v.Into = m.From.Slug, m.Into.Slug // a name was typed, perhaps
+	}
 	return v, err
 }
 

@@ -3,6 +3,7 @@ package main
 import (
 	"bytes"
 	"context"
+	"errors"
 	"log/slog"
 	"net/http"
 	"reflect"
@@ -79,6 +80,15 @@ func withoutWritten(data []byte) ([]byte, error) {
 	return scs.GobCodec{}.Encode(deadline, values)
 }
 
+// failureLevel is how loud a failed request is logged: one whose asker has left
+// was cut short, and nothing is wrong here.
+func failureLevel(r *http.Request) slog.Level {
+	if errors.Is(r.Context().Err(), context.Canceled) {
+		return slog.LevelDebug
+	}
+	return slog.LevelError
+}
+
 // sessionFailed answers when a session could not be read or written. It stands
 // outside the router, so the page has no more than its frame.
 func sessionFailed(log *slog.Logger) func(http.ResponseWriter, *http.Request, error) {
@@ -88,7 +98,7 @@ func sessionFailed(log *slog.Logger) func(http.ResponseWriter, *http.Request, er
 			id = newRequestID()
 			w.Header().Set(echo.HeaderXRequestID, id)
 		}
-		log.Error("session store failed", "request_id", id, "err", err)
+		log.Log(r.Context(), failureLevel(r), "session store failed", "request_id", id, "err", err)
 		p := problemOf(err)
 		hint := ""
 		if p.Expected != "" {

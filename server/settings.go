@@ -138,7 +138,17 @@ func (a *App) keepSettings(c echo.Context, s settings, form url.Values) error {
 	if err != nil {
 		return err
 	}
-	a.notice(c, changedSettings(n))
+	said := changedSettings(n)
+	if s.Licence == "CC0-1.0" {
+		rows, err := a.store.Summary(c.Request().Context(), catalogue.Filter{})
+		if err != nil {
+			return err
+		}
+		if rows.Licence != s.Licence {
+			said += " Not every row is CC0 yet: freezing a release under CC0 is refused until each is."
+		}
+	}
+	a.notice(c, said)
 	return c.Redirect(http.StatusSeeOther, "/settings")
 }
 
@@ -205,7 +215,17 @@ func (a *App) importSettings(c echo.Context) error {
 	if err != nil {
 		return err
 	}
-	a.notice(c, changedSettings(n))
+	said := changedSettings(n)
+	if s.Licence == "CC0-1.0" {
+		rows, err := a.store.Summary(c.Request().Context(), catalogue.Filter{})
+		if err != nil {
+			return err
+		}
+		if rows.Licence != s.Licence {
+			said += " Not every row is CC0 yet: freezing a release under CC0 is refused until each is."
+		}
+	}
+	a.notice(c, said)
 	return c.Redirect(http.StatusSeeOther, "/settings")
 }
 

@@ -61,6 +61,9 @@ const highLatitude = 50.0
 // sentence is what the map answers.
 func (p ChartPage) sentence() string {
 	if len(p.Items) == 0 {
+		if len(activeFilters(p.Page, p.Filter)) == 0 {
+			return "No channel stands on the map yet."
+		}
 		return "No system passes this filter."
 	}
 	high, sloped := 0, 0

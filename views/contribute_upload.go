@@ -76,3 +76,22 @@ func uploadCounts(r catalogue.UploadReport) string {
 	}
 	return s
 }
+
+// left is what is wrong with a matching, in the order of its form.
+func (p UploadMatch) left() (out []FormError) {
+	fields := []struct{ name, label string }{{"", ""}, {"encoding", "Characters"}, {"separator", "Between cells"}, {"numbers", "Numbers"}, {"licence", "Licence"}}
+	for i, c := range p.Columns {
+		label := "Column " + strconv.Itoa(i+1)
+		if c.Header != "" {
+			label += ", " + c.Header
+		}
+		fields = append(fields, struct{ name, label string }{c.Field, label})
+	}
+	fields = append(fields, struct{ name, label string }{"why", "What the file is"})
+	for _, f := range fields {
+		if e := p.Errors[f.name]; e != "" {
+			out = append(out, FormError{Field: f.name, Label: f.label, Message: e})
+		}
+	}
+	return out
+}

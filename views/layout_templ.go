@@ -256,7 +256,7 @@ func privateNote(p Page) templ.Component {
 		ctx = templ.InitializeContext(ctx)
 		ctx = templ.ClearChildren(ctx)
 		if p.SeesPrivate && p.Release == "" {
-			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 18, "<p class=\"banner private\" role=\"note\"><strong>Your view.</strong> Private rows that you see and others do not are part of this page and marked private. <a href=\"")
+			templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 18, "<p class=\"banner private\" role=\"note\"><strong>Your view.</strong> Private rows, which you see and others do not, are part of this page and marked private. <a href=\"")
 			if templ_7745c5c3_Err != nil {
 				return templ_7745c5c3_Err
 			}

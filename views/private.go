@@ -144,7 +144,7 @@ func AudienceText(a catalogue.Audience) string {
 	}
 	s := "Accepted, it stays under embargo " + untilText(catalogue.Hidden{Until: a.Until}) + "; "
 	if a.Coarse {
-		return s + "meanwhile others see it with its place rounded to 1 degree, without the ends of the reach, its name, its depth, its line and its notes."
+		return s + "meanwhile others see it with its place rounded to 1 degree, the name of the system, its source and the sinuosity as they are, and without the name and the ends of the reach, the water depth, the line and the notes."
 	}
 	return s + "meanwhile others do not see it."
 }

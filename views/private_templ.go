@@ -289,7 +289,7 @@ func whoSees(s Seeing) templ.Component {
 				return templ_7745c5c3_Err
 			}
 		}
-		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 25, " aria-describedby=\"coarse-hint\"> Under the embargo, show others the row with its place rounded to 1 degree</label><p class=\"hint\" id=\"coarse-hint\">They see the numbers, the source and a place on the grid of whole degrees; not the ends of the reach, its name, its depth, its line or the notes.</p></div><div class=\"field wide\"><label for=\"people\">")
+		templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 25, " aria-describedby=\"coarse-hint\"> Under the embargo, show others the row with its place rounded to 1 degree</label><p class=\"hint\" id=\"coarse-hint\">They see the name of the system, its source, the sinuosity and the other numbers, with a place on the grid of whole degrees; not the name of the reach, its ends, the water depth, the line or the notes.</p></div><div class=\"field wide\"><label for=\"people\">")
 		if templ_7745c5c3_Err != nil {
 			return templ_7745c5c3_Err
 		}
@@ -699,7 +699,7 @@ func EmbargoesPage(p Page, list []catalogue.Hidden) templ.Component {
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}
-				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 56, " Each becomes part of the catalogue on its day.</p><div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Rows under embargo\"><table class=\"data\"><thead><tr><th scope=\"col\">Record</th><th scope=\"col\">From</th><th scope=\"col\">Until</th><th scope=\"col\">Meanwhile others see</th><th scope=\"col\">Beside its owner it is seen by</th><td class=\"head\"><span class=\"visually-hidden\">Publish</span></td></tr></thead> <tbody>")
+				templ_7745c5c3_Err = templruntime.WriteString(templ_7745c5c3_Buffer, 56, " Everyone sees each as it is from its day on. One with its place rounded stands so in the catalogue already, and in every release frozen meanwhile.</p><div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Rows under embargo\"><table class=\"data\"><thead><tr><th scope=\"col\">Record</th><th scope=\"col\">From</th><th scope=\"col\">Until</th><th scope=\"col\">Meanwhile others see</th><th scope=\"col\">Beside its owner it is seen by</th><td class=\"head\"><span class=\"visually-hidden\">Publish</span></td></tr></thead> <tbody>")
 				if templ_7745c5c3_Err != nil {
 					return templ_7745c5c3_Err
 				}

@@ -20,6 +20,7 @@ type Queued struct {
 	Odd        int    // warnings
 	Act        string // edit, withdraw or restore
 	Conflict   bool   // its record changed since it was written
+	Gone       bool   // its record was withdrawn since
 	Said       int    // messages about it
 	LastSaid   string // and who wrote the last
 	Source     string
@@ -120,6 +121,13 @@ type Review struct {
 	Edits             []catalogue.FieldChange // what the curator changed of the proposal
 	Audience          string                  // who is to see it, when not everybody at once
 	Next              int64                   // the next submission of the queue, 0 = none
+	Gone              bool                    // its record was withdrawn since it was sent: it can only be returned
+}
+
+// settles says that both versions are lined up for a choice field by field:
+// the one way then to accept it.
+func (r Review) settles() bool {
+	return r.State == "submitted" && r.Act == catalogue.ActEdit && len(r.Conflict) > 0
 }
 
 // Activity is one line of what happened lately.

@@ -29,7 +29,7 @@ var settingWords = map[string]settingWord{
 	"title": {"Title of the catalogue", "Default: that of the latest release, before the first one Fathombend catalogue of submarine channels.",
 		"Stands in citations, data packages, the feed and the features of the catalogue as it is, and is offered for the next release. Releases keep the title they were frozen with."},
 	"licence": {"Licence of the collection", "Default: the widest that the rows allow, CC0 when every row is CC0, else CC BY 4.0.",
-		"Is offered for the next release. Each row keeps the licence it was contributed under; CC0 is refused as long as one row is not."},
+		"Is offered for the next release. Each row keeps the licence it was contributed under; freezing a release under CC0 is refused as long as one row is not."},
 	"class_limits": {"Class limits of sinuosity", "Default 1.05, 1.2, 1.5: a convention of this program. No published limit for submarine channels is settled; in rivers 1.5 is used for meandering (Leopold and Wolman, US Geol. Surv. Prof. Pap. 282-B (1957)).",
 		"Parts the classes of the expectation with their base rates; from the second on a channel counts as sinuous in the facies statements. Fits do not change."},
 	"climate_table": {"Climate state by age", "Default: the built-in table, each boundary with its source and marked where it is from memory.",

@@ -110,6 +110,9 @@ func (p SystemsPage) sentence() string {
 		rows += len(s.Measurements)
 	}
 	if p.Total == 0 {
+		if len(activeFilters(p.Page, p.Filter)) == 0 {
+			return "No system is in the catalogue yet."
+		}
 		return "No system passes this filter."
 	}
 	_, last, _ := p.pages()
