@@ -127,17 +127,14 @@ func readRowIndex(ctx context.Context, q querier) (*rowIndex, error) {
 	for _, d := range dimensionExprs {
 		exprs = append(exprs, d.expr)
 	}
-	cells, dest := make([]any, len(exprs)), make([]any, len(exprs))
-	for i := range dest {
-		dest[i] = &cells[i]
-	}
-	rows, err := q.QueryContext(ctx, "SELECT "+strings.Join(exprs, ", ")+fromRows+" ORDER BY m.system_id, m.id")
+	cells := make(packedCells, len(exprs))
+	rows, err := q.QueryContext(ctx, "SELECT "+packedFunction+"("+strings.Join(exprs, ", ")+")"+fromRows+" ORDER BY m.system_id, m.id")
 	if err != nil {
 		return nil, err
 	}
 	defer rows.Close()
 	for rows.Next() {
-		if err := rows.Scan(dest...); err != nil {
+		if err := rows.Scan(cells); err != nil {
 			return nil, err
 		}
 		ix.take(cells[:first], cells[first:], known)
@@ -147,19 +144,19 @@ func readRowIndex(ctx context.Context, q querier) (*rowIndex, error) {
 }
 
 // take adds one row of readRowIndex.
-func (ix *rowIndex) take(head, cells []any, known []map[string]int32) {
+func (ix *rowIndex) take(head, cells packedCells, known []map[string]int32) {
 	row := int32(len(ix.ids))
-	id, _ := head[0].(int64)
-	system, _ := head[1].(int64)
-	grade, _ := head[2].(int64)
-	ix.ids, ix.systems, ix.grades = append(ix.ids, id), append(ix.systems, system), append(ix.grades, int8(grade))
-	ix.lon = append(ix.lon, NormalLongitude(numberOf(head[3])))
+	ix.ids, ix.systems, ix.grades = append(ix.ids, head[0].integer), append(ix.systems, head[1].integer), append(ix.grades, int8(head[2].integer))
+	ix.lon = append(ix.lon, NormalLongitude(head[3].num()))
 	for i := range known {
-		text, _ := cells[i].(string)
-		code, ok := known[i][text]
+		var held []byte
+		if cells[i].kind == 't' {
+			held = cells[i].text
+		}
+		code, ok := known[i][string(held)]
 		if !ok {
 			code = int32(len(ix.texts[i]))
-			text = strings.Clone(text)
+			text := string(held)
 			known[i][text] = code
 			ix.texts[i] = append(ix.texts[i], text)
 		}
@@ -167,11 +164,11 @@ func (ix *rowIndex) take(head, cells []any, known []map[string]int32) {
 	}
 	cells = cells[len(known):]
 	for i := range ix.ranges {
-		ix.ranges[i] = append(ix.ranges[i], numberOf(cells[i]))
+		ix.ranges[i] = append(ix.ranges[i], cells[i].num())
 	}
 	for i, cell := range cells[len(ix.ranges):] {
-		if v, ok := cell.(float64); ok {
-			ix.sizes[i].rows, ix.sizes[i].values = append(ix.sizes[i].rows, row), append(ix.sizes[i].values, v)
+		if cell.kind == 'f' {
+			ix.sizes[i].rows, ix.sizes[i].values = append(ix.sizes[i].rows, row), append(ix.sizes[i].values, cell.number)
 		}
 	}
 }

@@ -10,17 +10,6 @@ import (
 func compareInt(a, b int64) int      { return cmp.Compare(a, b) }
 func compareNumber(a, b float64) int { return cmp.Compare(a, b) }
 
-// numberOf is a cell as a number, NaN where it is not given.
-func numberOf(cell any) float64 {
-	switch v := cell.(type) {
-	case float64:
-		return v
-	case int64:
-		return float64(v)
-	}
-	return math.NaN()
-}
-
 // textFound are the rows that hold one text.
 type textFound struct {
 	text string

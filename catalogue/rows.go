@@ -9,8 +9,8 @@ import (
 	"time"
 )
 
-// rowColumns is the SELECT list of a row: every column, then what rowMeta
-// holds.
+// rowColumns is the SELECT list of a row, packed: every column, then what
+// rowMeta holds.
 var rowColumns = func() string {
 	exprs := make([]string, len(Columns))
 	for i, c := range Columns {
@@ -18,9 +18,9 @@ var rowColumns = func() string {
 	}
 	// The windows are those of the measurement's own line; a line of the whole
 	// system stands for its measurement only when there is just one.
-	return strings.Join(exprs, ", ") + `, m.id, m.system_id, max(m.revision, s.revision), max(m.updated_at, s.updated_at),
+	return packedFunction + "(" + strings.Join(exprs, ", ") + `, m.id, m.system_id, max(m.revision, s.revision), max(m.updated_at, s.updated_at),
 		(SELECT l.sinuosities FROM centrelines l WHERE l.measurement_id = m.id OR (l.measurement_id IS NULL AND l.system_id = m.system_id
-			AND (SELECT count(*) FROM measurements o WHERE o.system_id = m.system_id) = 1) ORDER BY l.measurement_id IS NULL, l.id DESC LIMIT 1)`
+			AND (SELECT count(*) FROM measurements o WHERE o.system_id = m.system_id) = 1) ORDER BY l.measurement_id IS NULL, l.id DESC LIMIT 1))`
 }()
 
 // rowMeta is what a stored row has beside its columns.
@@ -31,40 +31,38 @@ type rowMeta struct {
 
 // rowScanner reads rows of rowColumns; it is reused from row to row.
 type rowScanner struct {
-	cells []any
-	dest  []any
+	cells   packedCells
+	choices words
 }
 
 func newRowScanner() *rowScanner {
-	n := len(Columns) + 5
-	sc := &rowScanner{cells: make([]any, n), dest: make([]any, n)}
-	for i := range sc.cells {
-		sc.dest[i] = &sc.cells[i]
-	}
-	return sc
+	return &rowScanner{cells: make(packedCells, len(Columns)+5), choices: words{}}
 }
 
 func (sc *rowScanner) scan(rows interface{ Scan(...any) error }, r *Row) (rowMeta, error) {
 	var meta rowMeta
-	if err := rows.Scan(sc.dest...); err != nil {
+	if err := rows.Scan(sc.cells); err != nil {
 		return meta, err
 	}
 	*r = Row{}
 	for i := range Columns {
-		switch v := sc.cells[i].(type) {
-		case float64:
-			*Columns[i].num(r) = Number{V: v, Valid: true}
-		case string:
-			*Columns[i].text(r) = v
+		switch c := &sc.cells[i]; {
+		case c.kind == 'f':
+			*Columns[i].num(r) = Number{V: c.number, Valid: true}
+		case c.kind != 't' || len(c.text) == 0:
+		case Columns[i].Kind == KindChoice:
+			*Columns[i].text(r) = sc.choices.of(c.text)
+		default:
+			*Columns[i].text(r) = string(c.text)
 		}
 	}
 	rest := sc.cells[len(Columns):]
-	meta.id, _ = rest[0].(int64)
-	meta.systemID, _ = rest[1].(int64)
-	meta.revision, _ = rest[2].(int64)
-	meta.updatedAt, _ = rest[3].(string)
-	if windows, ok := rest[4].(string); ok && windows != "[]" {
-		if err := json.Unmarshal([]byte(windows), &r.WindowSinuosities); err != nil {
+	meta.id, meta.systemID, meta.revision = rest[0].integer, rest[1].integer, rest[2].integer
+	if rest[3].kind == 't' {
+		meta.updatedAt = string(rest[3].text)
+	}
+	if windows := rest[4]; windows.kind == 't' && string(windows.text) != "[]" {
+		if err := json.Unmarshal(windows.text, &r.WindowSinuosities); err != nil {
 			return meta, err
 		}
 	}
