@@ -209,6 +209,9 @@ func TestLinesGiveBackTheirRecords(t *testing.T) {
 		} else if r.ValleySlope.Valid && math.Abs(*m.ValleySlope/r.ValleySlope.V-1) > 0.16 {
 			t.Errorf("%s: the line falls by %.5f, the record says %.5f", r.SystemName, *m.ValleySlope, r.ValleySlope.V)
 		}
+		if n := len(m.Windows); r.Windows.Valid && int(r.Windows.V) != n || len(c.Sinuosities) != n {
+			t.Errorf("%s %s: the record counts %v windows, the line has %d and stores %d", r.SystemName, r.Reach, r.Windows, n, len(c.Sinuosities))
+		}
 		if len(c.Sinuosities) < 1 || len(vertices(t, c)) > 1000 {
 			t.Errorf("%s: %d windows, %d vertices", r.SystemName, len(c.Sinuosities), len(vertices(t, c)))
 		}

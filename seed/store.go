@@ -24,12 +24,19 @@ func (d *drawer) store(rs []reach, p pattern, lat, lon, bearing, depth float64) 
 	for i := range rs {
 		d.locate(&rs[i], c.shapes[i], c.spots[i])
 		for k := range rs[i].rows {
-			id := d.add(rs[i].rows[k])
-			if k == 0 && p != best {
-				row := rs[i].rows[0]
-				row.Measurement = id
-				d.survey.Centrelines = append(d.survey.Centrelines, centreline(&row, c.shapes[i], c.spots[i], rs[i].width))
+			row := &rs[i].rows[k]
+			if k > 0 || p == best {
+				d.add(*row)
+				continue
 			}
+			line := centreline(row, c.shapes[i], c.spots[i], rs[i].width)
+			// The law took the windows of a reach of typical length; the record
+			// counts those of the line that was drawn.
+			if row.Windows.Valid {
+				row.Windows = catalogue.Num(float64(len(line.Sinuosities)))
+			}
+			line.Measurement = d.add(*row)
+			d.survey.Centrelines = append(d.survey.Centrelines, line)
 		}
 	}
 	switch p {

@@ -2,6 +2,7 @@ package main
 
 import (
 	"net/http"
+	"regexp"
 	"testing"
 
 	"github.com/PuerkitoBio/goquery"
@@ -27,6 +28,15 @@ func TestGuidedExample(t *testing.T) {
 		h.ready(housePage{who: "reader", path: steps[i]})
 		v.get(steps[i]).is(http.StatusOK).says(says)
 	}
+	// The answer of the opening page and that of the step which asks the same of
+	// two models in another order are one answer.
+	coefficient := regexp.MustCompile(`coefficient may lie anywhere from \S+ to \S+`)
+	opening, asked := coefficient.FindString(v.get("/").text()), coefficient.FindString(v.get(steps[2]).text())
+	if opening == "" || opening != asked {
+		t.Errorf("the opening page says %q, the step %q", opening, asked)
+	}
+	// The first step narrows the rows, and says so.
+	v.get("/example").says("fitted to the channels of this belt alone", "Now all latitudes answer, and for peak sinuosity")
 	// Another catalogue has the pages but not that system.
 	other := newSite(t).visitor()
 	if n := other.get("/example").is(http.StatusOK).doc().Find("ol.steps li").Length(); n != 5 {

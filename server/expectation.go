@@ -35,7 +35,7 @@ func (a *App) routesExpectation(e *echo.Echo) {
 		get(e, r.path, noStore(r.h))
 		e.POST(r.path, noStore(r.h))
 	}
-	e.POST("/expectation.csv", noStore(a.expectationCSV))
+	e.POST("/expectation.csv", noStore(a.targetsPage))
 	get(e, "/expectation/columns.csv", a.expectationColumns)
 	a.routesExpectationMore(e)
 }
@@ -213,6 +213,36 @@ func (a *App) expectationFigure(c echo.Context) error {
 		return err
 	}
 	return a.writeFigure(c, page.File(panel, from))
+}
+
+// targetsPage answers a file of targets. A reader whose file is refused comes
+// back to the form that took it; a program gets the problem document.
+func (a *App) targetsPage(c echo.Context) error {
+	err := a.expectationCSV(c)
+	if err == nil || c.Response().Committed || !strings.Contains(c.Request().Header.Get(echo.HeaderAccept), "text/html") {
+		return err
+	}
+	p := problemOf(err)
+	if p.Status >= http.StatusInternalServerError {
+		return err
+	}
+	q, _ := url.ParseQuery(c.Request().URL.RawQuery)
+	if f := c.Request().MultipartForm; f != nil {
+		q = withValues(q, withoutEmpty(f.Value))
+	}
+	page := a.expectationFrame(c, q, false)
+	f, all, ok := refusals(q, err)
+	if !ok {
+		f, _ = readable(q)
+		all = []views.Refusal{{Name: views.TargetsField, Message: p.Detail, Expected: p.Expected}}
+	}
+	page.JSON = ""
+	page.Filter, page.Refusals, page.TypedFilter = f, all, q
+	page.Fields = append([]string{views.TargetsField}, targetParameters...)
+	if page.Facets, err = a.facets(c.Request().Context(), f); err != nil {
+		return err
+	}
+	return render(c, p.Status, views.Expectation(page))
 }
 
 // expectationCSV answers a file of targets: the body itself, or a form's file

@@ -159,8 +159,7 @@ func badTable(sentence string) error {
 // its error column. progress, if not nil, is called with the rows done.
 func answerTargets(ctx context.Context, in io.Reader, out io.Writer, base url.Values, fits fitter, progress func(int)) (batchCounts, error) {
 	var n batchCounts
-	r := csv.NewReader(skipBOM(in))
-	r.FieldsPerRecord, r.LazyQuotes, r.ReuseRecord = -1, true, false
+	r := targetReader(in)
 	b := &batch{base: base, fits: fits}
 	if err := b.readHeader(r); err != nil {
 		return n, err
@@ -203,8 +202,32 @@ func answerTargets(ctx context.Context, in io.Reader, out io.Writer, base url.Va
 	return n, w.Error()
 }
 
-func skipBOM(in io.Reader) io.Reader {
-	b := bufio.NewReaderSize(in, 64<<10)
+// targetReader reads a table of targets with the separator of its header: the
+// first of comma, semicolon and tab under which a parameter has a column.
+func targetReader(in io.Reader) *csv.Reader {
+	b := skipBOM(in)
+	head, _ := b.Peek(headerPeek)
+	if i := bytes.IndexAny(head, "\r\n"); i >= 0 {
+		head = head[:i]
+	}
+	r := csv.NewReader(b)
+	r.FieldsPerRecord, r.LazyQuotes = -1, true
+	for _, comma := range ",;\t" {
+		if slices.ContainsFunc(strings.Split(string(head), string(comma)), func(name string) bool {
+			return slices.Contains(targetParameters, strings.Trim(name, "\" "))
+		}) {
+			r.Comma = comma
+			break
+		}
+	}
+	return r
+}
+
+// headerPeek is how much of a header is looked at for its separator, in bytes.
+const headerPeek = 64 << 10
+
+func skipBOM(in io.Reader) *bufio.Reader {
+	b := bufio.NewReaderSize(in, headerPeek)
 	if head, err := b.Peek(3); err == nil && bytes.Equal(head, []byte("\xef\xbb\xbf")) {
 		_, _ = b.Discard(3)
 	}
@@ -230,11 +253,8 @@ func (b *batch) readHeader(r *csv.Reader) error {
 		}
 	}
 	known := slices.ContainsFunc(b.columns, func(c string) bool { return slices.Contains(targetParameters, c) })
-	if !known && len(head) == 1 && strings.ContainsAny(head[0], ";\t") {
-		return badTable("The columns are separated by semicolons or tabs. Expected commas, with a point as decimal sign")
-	}
 	if !known {
-		return badTable("No column of the header is a parameter. Expected some of: " + strings.Join(targetParameters, ", "))
+		return badTable("No column of the header is a parameter. Expected some, such as palaeolatitude, age, unit, site_lat, site_lon, plate or target_slope; /expectation/columns.csv has them all")
 	}
 	return nil
 }

@@ -234,8 +234,7 @@ type namedTarget struct {
 
 // fewTargets reads a short table of targets; a column called name names them.
 func fewTargets(table string, base url.Values) ([]namedTarget, error) {
-	r := csv.NewReader(skipBOM(strings.NewReader(table)))
-	r.FieldsPerRecord, r.LazyQuotes = -1, true
+	r := targetReader(strings.NewReader(table))
 	b := &batch{}
 	if err := b.readHeader(r); err != nil {
 		return nil, err

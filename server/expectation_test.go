@@ -379,7 +379,6 @@ func TestExpectationBatchUpload(t *testing.T) {
 	}
 	for _, c := range []struct{ body, says string }{
 		{"", "empty"},
-		{"palaeolatitude;age\n30;70\n", "semicolons"},
 		{"height,depth\n1,2\n", "parameter"},
 		{"palaeolatitude,palaeolatitude\n1,2\n", "twice"},
 		{"palaeolatitude,\xe9ge\n1,2\n", "UTF-8"},
@@ -389,6 +388,16 @@ func TestExpectationBatchUpload(t *testing.T) {
 			t.Errorf("%q: status %d, %s", c.body, a.status, a.body)
 		}
 	}
+	comma := readTargets(t, v.request("POST", "/expectation.csv?draws=500", "text/csv", strings.NewReader("name,palaeolatitude,age\n\"a;b\",30,70\n")).is(http.StatusOK).body)
+	for _, body := range []string{"name;palaeolatitude;age\n\"a;b\";30;70\n", "name\tpalaeolatitude\tage\r\na;b\t30\t70\r\n"} {
+		rows := readTargets(t, v.request("POST", "/expectation.csv?draws=500", "text/csv", strings.NewReader(body)).is(http.StatusOK).body)
+		if len(rows) != 1 || rows[0]["error"] != "" || rows[0]["name"] != "a;b" || rows[0]["result_p50"] == "" || rows[0]["result_p50"] != comma[0]["result_p50"] {
+			t.Errorf("%q gave %v, with commas %v", body, rows, comma)
+		}
+	}
+	if rows := readTargets(t, v.request("POST", "/expectation.csv", "text/csv", strings.NewReader("palaeolatitude;age\n28,5;70\n")).body); len(rows) != 1 || !strings.Contains(rows[0]["error"], "Expected 28.5, with a point") {
+		t.Errorf("a decimal comma between semicolons gave %v", rows)
+	}
 	if a := v.request("POST", "/expectation.csv?colour=blue", "text/csv", strings.NewReader("palaeolatitude\n1\n")); a.status != http.StatusBadRequest {
 		t.Errorf("an unknown parameter beside a file: status %d", a.status)
 	}
@@ -396,6 +405,58 @@ func TestExpectationBatchUpload(t *testing.T) {
 	columns.is(http.StatusOK)
 	if !strings.Contains(columns.body, "result_p50") || !strings.Contains(columns.body, "palaeolatitude_se") {
 		t.Error("the dictionary lacks columns")
+	}
+}
+
+// A reader whose file is refused stands before the form again, told why beside
+// the field; a program gets the problem document for the same file.
+func TestRefusedTargetsComeBackToTheForm(t *testing.T) {
+	v := newDemoSite(t).visitor()
+	send := func(file, accept, filter string) *answer {
+		var body bytes.Buffer
+		w := multipart.NewWriter(&body)
+		part, err := w.CreateFormFile("targets", "targets.csv")
+		if err != nil {
+			t.Fatal(err)
+		}
+		_, _ = part.Write([]byte(file))
+		_ = w.WriteField("abs_lat_max", filter)
+		w.Close()
+		r, err := http.NewRequest("POST", v.base+"/expectation.csv", &body)
+		if err != nil {
+			t.Fatal(err)
+		}
+		r.Header.Set("Content-Type", w.FormDataContentType())
+		r.Header.Set("Accept", accept)
+		return v.do(r)
+	}
+	const reader = "text/html,application/xhtml+xml,*/*;q=0.8"
+	for _, c := range []struct {
+		file, filter, says string
+		status             int
+	}{
+		{"height,depth\n1,2\n", "80", "No column of the header is a parameter", 422},
+		{"", "80", "The file of targets is empty", 422},
+		{"palaeolatitude\n30\n", "many", "abs_lat_max", 400},
+	} {
+		a := send(c.file, reader, c.filter).is(c.status).says("This cannot be answered as it stands", c.says, "Many targets")
+		if ct := a.header.Get("Content-Type"); !strings.HasPrefix(ct, "text/html") {
+			t.Errorf("%q: a reader gets %s", c.file, ct)
+		}
+		if c.filter == "80" {
+			if p := a.doc(); p.Find(`#set-targets[aria-invalid="true"]`).Length() != 1 || p.Find(`.errors a[href="#set-targets"]`).Length() != 1 ||
+				p.Find(`form[action="/expectation.csv"] input[name="abs_lat_max"][value="80"]`).Length() != 1 {
+				t.Errorf("%q: the page does not lead to the field, or lost the filter:\n%s", c.file, a.text())
+			}
+		}
+		a = send(c.file, "*/*", c.filter).is(c.status)
+		if ct := a.header.Get("Content-Type"); ct != "application/problem+json" {
+			t.Errorf("%q: a program gets %s", c.file, ct)
+		}
+	}
+	a := send("palaeolatitude\n30\n", reader, "80").is(http.StatusOK)
+	if ct := a.header.Get("Content-Type"); !strings.HasPrefix(ct, "text/csv") {
+		t.Errorf("a good file comes back as %s", ct)
 	}
 }
 

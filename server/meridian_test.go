@@ -57,6 +57,18 @@ func TestMeridianShowsEverySystem(t *testing.T) {
 	}
 }
 
+// The inset says which sinuosity and which rows it is of, and why it differs
+// from the expectation drawn at the same latitude.
+func TestMeridianInsetNamesItsFit(t *testing.T) {
+	d := newDemoSite(t).visitor().get("/").is(http.StatusOK).says("peak sinuosity of a channel at 30° would be expected at", "One explanation alone, fitted to the same ").doc()
+	_, said, ok := strings.Cut(d.Find(".spin p.small").Text(), "so give ")
+	said, _, _ = strings.Cut(said, " at 30°")
+	drawn := d.Find("svg#meridian text").FilterFunction(func(_ int, s *goquery.Selection) bool { return s.Text() == said }).Length()
+	if !ok || drawn == 0 {
+		t.Errorf("the inset compares itself with %q, which is not drawn", said)
+	}
+}
+
 func TestMeridianTellsAncientAndRivers(t *testing.T) {
 	v := newDemoSite(t).visitor()
 	d := v.get("/").doc()

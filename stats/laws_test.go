@@ -88,6 +88,22 @@ func TestRowOrderAndLabels(t *testing.T) {
 	}
 }
 
+// Nor does the order in which models are asked for, where rows share a response
+// and so are told apart by their predictors.
+func TestModelOrderChangesNothing(t *testing.T) {
+	rows := inventedRows(3, 60, 20)
+	for i := range rows {
+		rows[i].Sinuosity = 1.1 + math.Round(10*rows[i].Sinuosity)/10
+	}
+	req := lawRequest()
+	req.Models = []ModelSpec{{"linear", "valley_slope"}, {"linear", "coriolis"}}
+	a := analyse(t, rows, req)
+	req.Models = []ModelSpec{{"linear", "coriolis"}, {"linear", "valley_slope"}}
+	b := analyse(t, rows, req)
+	b.Models[0], b.Models[1] = b.Models[1], b.Models[0]
+	compareModels(t, "models turned round", a, b, 1, 0)
+}
+
 // compareModels wants b to be a with the predictor multiplied by scale, to a
 // tolerance; 0 means equal bits.
 func compareModels(t *testing.T, what string, a, b *Analysis, scale, tolerance float64) {

@@ -356,11 +356,17 @@ func newTable(used []UsedRow, req *Request, kind string) *table {
 }
 
 // inCanonicalOrder sorts rows by response, then by predictors, system and id.
+// The predictors count in the order of Predictors, so that the order in which
+// models are asked for changes no digit either.
 func inCanonicalOrder(used []UsedRow, rows []int, predictors []string) []int {
 	type key struct {
 		response float64
 		row      int
 	}
+	predictors = slices.Clone(predictors)
+	slices.SortFunc(predictors, func(a, b string) int {
+		return cmp.Compare(slices.Index(Predictors, a), slices.Index(Predictors, b))
+	})
 	keys := make([]key, len(rows))
 	for k, i := range rows {
 		keys[k] = key{used[i].Response, i}

@@ -25,7 +25,7 @@ type exampleStep struct{ href, title, look string }
 func (p ExamplePage) steps() []exampleStep {
 	out := []exampleStep{
 		{"/?abs_lat_min=20&abs_lat_max=36", "See what is known near 28 degrees",
-			"Every ribbon is one channel at the latitude it was made at, drawn with its own sinuosity. Are they alike? The pale ribbons at the right edge are what the fit expects of one new channel, with its limits."},
+			"Every ribbon is one channel at the latitude it was made at, drawn with its own sinuosity. Are they alike? The ribbons marked expected are what the fit expects of one new channel, with its limits. Everything on this page is fitted to the channels of this belt alone, where the Coriolis parameter hardly changes: so it explains little here, and the expectation, of sinuosity of any kind, is not yet that of the steps below. They use all latitudes."},
 	}
 	if p.HasSystem {
 		out = append(out, exampleStep{"/systems/" + ExampleSystem, "Look at a neighbour of the same age",
@@ -35,7 +35,7 @@ func (p ExamplePage) steps() []exampleStep {
 		exampleStep{"/regression?model=linear:coriolis&model=linear:valley_slope", "Ask what sinuosity goes with",
 			"The first sentence says how much of the variance goes with the Coriolis parameter, and between what limits. Read the boxes under it before the number: latitude comes with rivers, grain and slope, and the rows cannot tell them apart."},
 		exampleStep{workedExample, "Ask what to expect of the channel",
-			"Three ribbons answer: of ten new channels one lies below the first, half lie below the second, nine below the third. Under them, rival explanations stand side by side, each with its weight."},
+			"Now all latitudes answer, and for peak sinuosity, which lies above the mean of a channel. Three ribbons stand on top: of ten new channels one lies below the first, half lie below the second, nine below the third. Under them, rival explanations stand side by side, each with its weight."},
 		exampleStep{"/expectation/time" + workedExample[len("/expectation"):], "Carry it through time",
 			"The same place at other ages. The faster spin of the past moves the expectation far less than its own limits are wide."},
 		exampleStep{"/expectation/report" + workedExample[len("/expectation"):], "Take it away",

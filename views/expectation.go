@@ -49,6 +49,9 @@ type DayCurve struct {
 	Age, Value, Low, High []float64
 }
 
+// TargetsField is the form field of a file of targets.
+const TargetsField = "targets"
+
 // workedExample is the question offered to someone who has none yet: a buried
 // channel at 28 degrees in Late Cretaceous time.
 const workedExample = "/expectation?palaeolatitude=28&palaeolatitude_se=2&unit=Late+Cretaceous&target_grain=mud_sand&target_confinement=levee_confined&seed=1"

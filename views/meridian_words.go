@@ -127,10 +127,23 @@ func spinAge(ma float64) string {
 // spinSentence compares the oldest with today.
 func spinSentence(m MeridianPage) string {
 	now, then := m.Spin[0], m.Spin[len(m.Spin)-1]
-	s := fmt.Sprintf("Were the Coriolis parameter the whole story, a channel at %s would be expected at %s today and at %s under the spin of %s; the limits of one new system today are %s and %s",
-		FormatDegrees(m.SpinLatitude), num2Fixed(now.P50), num2Fixed(then.P50), spinAge(then.AgeMa), num2Fixed(now.P10), num2Fixed(now.P90))
+	s := fmt.Sprintf("Were the Coriolis parameter the whole story, %s of a channel at %s would be expected at %s today and at %s under the spin of %s; the limits of one new system today are %s and %s",
+		m.Response, FormatDegrees(m.SpinLatitude), num2Fixed(now.P50), num2Fixed(then.P50), spinAge(then.AgeMa), num2Fixed(now.P10), num2Fixed(now.P90))
 	if then.P50 > now.P10 && then.P50 < now.P90 {
 		return s + ", and hold it."
 	}
 	return s + "."
+}
+
+// spinFrom says what the inset has in common with the expectations of the
+// drawing, and why its numbers differ from theirs.
+func spinFrom(m MeridianPage) string {
+	s := fmt.Sprintf("One explanation alone, fitted to the same %s in %s.",
+		plural(m.ExpectedRows, "measurement", "measurements"), plural(m.ExpectedFrom, "deposit", "deposits"))
+	for _, e := range m.Expected {
+		if e.AbsLatitude == m.SpinLatitude && e.Why == "" {
+			s += fmt.Sprintf(" The expectations drawn above weigh it against its rivals and so give %s at %s.", num2Fixed(e.P50), FormatDegrees(m.SpinLatitude))
+		}
+	}
+	return s
 }

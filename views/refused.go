@@ -36,7 +36,7 @@ func (r Refusal) label() string {
 		text = rangeLabel(base) + ", to"
 	} else if slices.Contains(catalogue.ChoiceParameters, r.Name) {
 		text = ColumnLabel(r.Name)
-	} else if t, ok := map[string]string{"q": "Words", "bbox": "Box", "release": "Release", "sort": "Order", "page": "Page", "per_page": "Systems on a page"}[r.Name]; ok {
+	} else if t, ok := map[string]string{"q": "Words", "bbox": "Box", "release": "Release", "sort": "Order", "page": "Page", "per_page": "Systems on a page", TargetsField: "CSV of targets"}[r.Name]; ok {
 		text = t
 	}
 	if text == "" {
