@@ -88,6 +88,9 @@ func TestChangeOfAWithdrawnRecord(t *testing.T) {
 	if n := d.Find(".decision button[value=accept], .decision a[href$='/edit']").Length(); n != 0 {
 		t.Error("accepting is offered though it can only fail")
 	}
+	if strings.Contains(d.Find("main").Text(), "odd value") {
+		t.Error("the withdrawal is counted among the odd values of the record")
+	}
 	if d.Find(".decision button[value=return]").Length() != 1 {
 		t.Error("returning is not offered")
 	}

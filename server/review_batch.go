@@ -96,8 +96,6 @@ func (p *reviews) sampled(ctx context.Context, s *catalogue.Submission) (views.S
 	}
 	if s.Current != nil {
 		out.Changes = s.Changes
-	} else if recordGone(s) {
-		out.Findings = append(out.Findings, views.ReviewFinding{Column: "measurement", Message: s.Row.Measurement + " was withdrawn since this change of it was sent: return this row on its own page.", Hard: true})
 	}
 	row := s.Row
 	row.Normalise()

@@ -222,3 +222,17 @@ func FuzzSettingsFile(f *testing.F) {
 		}
 	})
 }
+
+// A licence that the rows do not allow yet is kept as a wish, and that is said.
+func TestSettingsSayWhenRowsBindTheLicence(t *testing.T) {
+	s, ann, cy := newContribution(t)
+	s.person("kit", "keeper")
+	accepted(t, s, ann, cy, goodRecord()) // under CC BY 4.0
+	k := s.as("kit")
+	form := fillIn(k.get("/settings").form("#settings-form"), map[string]string{"licence": "CC0-1.0", "why": "wide"})
+	k.post("/settings", form).is(http.StatusOK).says("One setting is changed", "Not every row is CC0 yet")
+	form = fillIn(k.get("/settings").form("#settings-form"), map[string]string{"licence": "CC-BY-4.0", "why": "as the rows"})
+	if a := k.post("/settings", form).is(http.StatusOK).says("One setting is changed"); strings.Contains(a.body, "Not every row is CC0 yet") {
+		t.Error("said of a licence that the rows allow")
+	}
+}
