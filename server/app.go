@@ -22,6 +22,8 @@ type App struct {
 	readOnly   bool
 	fits       *cache
 	jobs       jobs // long fits on their way
+	gate       gate // of the fits of a large catalogue
+	large      int  // measurements from which it is one
 	recomputes *recomputer
 	uploads    *uploader
 	metrics    *metrics
@@ -40,7 +42,7 @@ type App struct {
 
 // newApp wires an App over an open store.
 func newApp(store *catalogue.Store, log *slog.Logger, readOnly bool) *App {
-	a := &App{store: store, log: log, readOnly: readOnly, fits: newCache(256), began: time.Now(), answers: newAnswers()}
+	a := &App{store: store, log: log, readOnly: readOnly, fits: newCache(256), gate: newGate(), large: largeRows, began: time.Now(), answers: newAnswers()}
 	a.metrics = newMetrics(a)
 	a.recomputes = newRecomputer(store, log)
 	a.uploads = newUploader(store, log)

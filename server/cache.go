@@ -15,7 +15,11 @@ type cache struct {
 	limit int
 	order []string
 	held  map[string]*cached
+	heavy []string // keys of answers that weigh, newest last
 }
+
+// mostHeavy is how many answers that weigh are kept.
+const mostHeavy = 3
 
 type cached struct {
 	done  chan struct{}
@@ -43,8 +47,11 @@ func (c *cache) do(ctx context.Context, key string, compute func(context.Context
 		c.mu.Unlock()
 		e.value, e.err = compute(context.WithoutCancel(ctx))
 		close(e.done)
-		if e.err != nil {
+		switch {
+		case e.err != nil:
 			c.forget(key, e)
+		case weighs(e.value):
+			c.keepHeavy(key)
 		}
 		return e.value, e.err
 	}
@@ -62,5 +69,15 @@ func (c *cache) forget(key string, e *cached) {
 	defer c.mu.Unlock()
 	if c.held[key] == e {
 		delete(c.held, key)
+	}
+}
+
+// keepHeavy notes an answer that weighs and lets the oldest of too many go.
+func (c *cache) keepHeavy(key string) {
+	c.mu.Lock()
+	defer c.mu.Unlock()
+	if c.heavy = append(c.heavy, key); len(c.heavy) > mostHeavy {
+		delete(c.held, c.heavy[0])
+		c.heavy = c.heavy[1:]
 	}
 }

@@ -63,6 +63,11 @@ func (a *App) expectationFits(ctx context.Context, f catalogue.Filter, response,
 	}
 	key := fmt.Sprintf("expectation|%d|%s|%s|%s", rev, f.Values().Encode(), response, line)
 	v, err := a.fits.do(ctx, key, func(ctx context.Context) (any, error) {
+		leave, err := a.enter(ctx)
+		if err != nil {
+			return nil, err
+		}
+		defer leave()
 		chosen, err := a.settingsFor(ctx, f.Release)
 		if err != nil {
 			return nil, err

@@ -24,7 +24,7 @@ func (a *App) routesMeridian(e *echo.Echo) {
 
 // meridian is the opening page.
 func (a *App) meridian(c echo.Context) error {
-	m, q, err := a.meridianQuestion(c)
+	m, q, err := a.meridianQuestion(c, a.meridianWatched)
 	if err != nil {
 		return a.filterRefused(c, q, filterPage{title: "Meridian", nav: "meridian", question: "Do channels straighten towards the poles?", action: "Show", own: meridianParameters}, err)
 	}
@@ -40,6 +40,10 @@ func (a *App) meridian(c echo.Context) error {
 	table := m.Filter.Values()
 	m.CSV, m.JSON, m.GeoJSON = withQuery("/systems.csv", table), withQuery("/systems.json", table), withQuery("/systems.geojson", table)
 	m.FigureHref = withQuery("/figures/meridian.svg", withoutEmpty(q))
+	if m.Working {
+		askAgain(c)
+		return render(c, http.StatusAccepted, views.Meridian(m))
+	}
 	return render(c, http.StatusOK, views.Meridian(m))
 }
 
@@ -49,7 +53,7 @@ func (a *App) meridianFigure(c echo.Context) error {
 	if err != nil {
 		return err
 	}
-	m, q, err := a.meridianQuestion(c, "width")
+	m, q, err := a.meridianQuestion(c, a.meridianAnswer, "width")
 	if err != nil {
 		return err
 	}
@@ -68,8 +72,8 @@ func (a *App) meridianFigure(c echo.Context) error {
 	return writeFigureFile(c, kind, b)
 }
 
-// meridianQuestion reads the address and answers it, without the frame.
-func (a *App) meridianQuestion(c echo.Context, more ...string) (m views.MeridianPage, q url.Values, err error) {
+// meridianQuestion reads the address and has it answered, without the frame.
+func (a *App) meridianQuestion(c echo.Context, answer func(context.Context, catalogue.Filter) (*views.MeridianPage, error), more ...string) (m views.MeridianPage, q url.Values, err error) {
 	q, err = params(c)
 	if err != nil {
 		return m, q, err
@@ -89,7 +93,7 @@ func (a *App) meridianQuestion(c echo.Context, more ...string) (m views.Meridian
 	if err != nil {
 		return m, q, err
 	}
-	held, err := a.meridianAnswer(c.Request().Context(), f)
+	held, err := answer(c.Request().Context(), f)
 	if err != nil {
 		return m, q, err
 	}
@@ -123,6 +127,19 @@ func (a *App) warm(ctx context.Context) {
 }
 
 func (a *App) computeMeridian(ctx context.Context, f catalogue.Filter) (*views.MeridianPage, error) {
+	drawn, err := a.meridianDrawn(ctx, f)
+	if err != nil || drawn.Total == 0 {
+		return drawn, err
+	}
+	m := *drawn
+	if err := a.meridianHeadline(ctx, f, &m); err != nil {
+		return nil, err
+	}
+	return &m, a.meridianExpected(ctx, f, &m)
+}
+
+// drawMeridian is the page without what is fitted.
+func (a *App) drawMeridian(ctx context.Context, f catalogue.Filter) (*views.MeridianPage, error) {
 	m := &views.MeridianPage{}
 	err := a.store.EachSystem(ctx, f, func(r catalogue.Row) error {
 		m.Items = append(m.Items, meridianItem(r))
@@ -134,19 +151,11 @@ func (a *App) computeMeridian(ctx context.Context, f catalogue.Filter) (*views.M
 	m.Passing = len(m.Items)
 	m.Items = thinnedItems(m.Items, views.MeridianDrawn)
 	m.Layouts = views.NewMeridianLayouts(m.Items)
-	if _, m.Total, err = a.store.Systems(ctx, catalogue.Filter{PerPage: 1, Release: f.Release}); err != nil {
-		return nil, err
+	if m.Total, err = a.store.CountSystems(ctx, catalogue.Filter{Release: f.Release}); err != nil || m.Total == 0 {
+		return m, err
 	}
-	if m.Total == 0 {
-		return m, nil
-	}
-	if m.Facets, err = a.store.Facets(ctx, f); err != nil {
-		return nil, err
-	}
-	if err := a.meridianHeadline(ctx, f, m); err != nil {
-		return nil, err
-	}
-	return m, a.meridianExpected(ctx, f, m)
+	m.Facets, err = a.store.Facets(ctx, f)
+	return m, err
 }
 
 // meridianHeadline asks the default question of the regression page. A refusal

@@ -55,7 +55,7 @@ func TestMeridianOfManySystems(t *testing.T) {
 	s := newSite(t, func(file string) { mustRun(t, "", "invent", "-catalogue", file, "-systems", fmt.Sprint(n)) })
 	doc := s.visitor().get("/").is(200).doc()
 	caption := doc.Find("figcaption").First().Text()
-	for _, want := range []string{fmt.Sprintf("%d systems of %d in the catalogue", n, n), "of them are drawn: the same share of every five degrees of latitude", "The answer above rests on all of them."} {
+	for _, want := range []string{fmt.Sprintf("%d systems of %d in the catalogue", n, n), "of them are drawn: the same share of every five degrees of latitude", "The answer rests on all of them."} {
 		if !strings.Contains(caption, want) {
 			t.Errorf("the caption lacks %q: %s", want, caption)
 		}

@@ -142,6 +142,13 @@ func (a *App) analyse(ctx context.Context, f catalogue.Filter, req stats.Request
 	f = fitFilter(f, req.Group)
 	req.Workers = runtime.GOMAXPROCS(0)
 	v, err := a.fits.do(ctx, key, func(ctx context.Context) (any, error) {
+		ctx, j := a.jobs.start(ctx, key)
+		defer a.jobs.end(key, j)
+		leave, err := a.enter(ctx)
+		if err != nil {
+			return nil, err
+		}
+		defer leave()
 		chosen, err := a.settingsFor(ctx, f.Release)
 		if err != nil {
 			return nil, err
@@ -150,8 +157,6 @@ func (a *App) analyse(ctx context.Context, f catalogue.Filter, req stats.Request
 		if err != nil {
 			return nil, err
 		}
-		ctx, j := a.jobs.start(ctx, key)
-		defer a.jobs.end(key, j)
 		defer a.metrics.fitted("regression", time.Now())
 		analysis, err := stats.Analyse(ctx, rows, req, j.progress)
 		if err != nil {

@@ -23,6 +23,7 @@ type MeridianPage struct {
 	Folded   bool   // latitudes folded onto |latitude|
 	Colour   string // slope, feeder, grade, age
 	Headline string // the answer, or why there is none
+	Working  bool   // the answer is still being computed
 	Rows     int    // measurements behind the headline
 	Clusters int
 	// What the expectations were fitted on.

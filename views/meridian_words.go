@@ -43,7 +43,7 @@ func meridianCaption(m MeridianPage) string {
 	s := fmt.Sprintf("%s of %s in the catalogue, each as a sine-generated curve of its own sinuosity over one fixed length: 1.05 is nearly straight, 2.1 crosses at right angles, 3 folds back. ",
 		plural(m.Passing, "system", "systems"), strconv.Itoa(m.Total))
 	if len(m.Items) < m.Passing {
-		s += fmt.Sprintf("%d of them are drawn: the same share of every five degrees of latitude, the best-graded first. The answer above rests on all of them. ", len(m.Items))
+		s += fmt.Sprintf("%d of them are drawn: the same share of every five degrees of latitude, the best-graded first. The answer rests on all of them. ", len(m.Items))
 	}
 	s += "A sinuosity past 5 is drawn at 5 with a double tick. "
 	if len(m.Expected) > 0 {
@@ -57,6 +57,11 @@ func meridianCaption(m MeridianPage) string {
 		s += "Invented data."
 	}
 	return s
+}
+
+// workingWords stand where the answer of a large catalogue will.
+func (m MeridianPage) workingWords() string {
+	return fmt.Sprintf("The answer from %s is being computed: they are many, and every deposit is resampled. This page asks again by itself and shows it, with what to expect at each latitude, when it is there.", plural(m.Passing, "system", "systems"))
 }
 
 func plural(n int, one, many string) string {

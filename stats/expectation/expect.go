@@ -181,6 +181,9 @@ func className(limits []float64, k int) string {
 	return fmt.Sprintf("%g to %g", limits[k-1], limits[k])
 }
 
+// Held is how many rows the fits hold on to.
+func (f *Fits) Held() int { return len(f.frame.all) }
+
 // Expect answers one target. An *InputError names the parameter that cannot be
 // used.
 func (f *Fits) Expect(ctx context.Context, t Target) (*Result, error) {
