@@ -15,7 +15,7 @@ func TestSourceFillsItselfFromAnEntry(t *testing.T) {
 		return ann.post("/contribute", press(form, "reference")).is(http.StatusOK)
 	}
 	bib := "@article{m31,\n author = {Marlow, Ann and {\\O}stby, B.},\n title = {Invented soundings of a {C}hannel},\n journal = {J. Invented Sounding}, year = 2031, volume = 4, number = 12, pages = {1--9},\n doi = {https://doi.org/10.5555/Inv.31}\n}"
-	a := fill(bib).says("Filled", "Before, the source read", "typed before")
+	a := fill(bib).says("Filled: Source and DOI of the source", "Before, the source read", "typed before")
 	form := a.form("form.record")
 	if src := form.Get("source"); !strings.Contains(src, "Marlow") || !strings.Contains(src, "Østby") || !strings.Contains(src, "(2031)") || !strings.Contains(src, "Invented soundings of a Channel") {
 		t.Errorf("source: %q", src)
