@@ -21,9 +21,10 @@ type App struct {
 	log        *slog.Logger
 	readOnly   bool
 	fits       *cache
-	jobs       jobs // long fits on their way
-	gate       gate // of the fits of a large catalogue
-	large      int  // measurements from which it is one
+	jobs       jobs    // long fits on their way
+	gate       gate    // of the fits of a large catalogue
+	large      int     // measurements from which it is one
+	batches    batches // files of targets on their way
 	recomputes *recomputer
 	uploads    *uploader
 	metrics    *metrics
@@ -64,6 +65,7 @@ func (a *App) router() *echo.Echo {
 	a.routesFigures(e)
 	a.routesRegression(e)
 	a.routesExpectation(e)
+	a.routesBatch(e)
 	a.routesMeasure(e)
 	a.routesAccounts(e)
 	a.routesContribute(e)

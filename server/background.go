@@ -39,6 +39,10 @@ func (a *App) inBackground(cfg serveConfig) (done <-chan struct{}, stop func(), 
 		}
 		running.Go(func() { a.backups.run(ctx) })
 	}
+	running.Go(func() {
+		<-ctx.Done()
+		a.batches.halt()
+	})
 	if !cfg.ReadOnly {
 		a.recomputes.resume()
 		a.uploads.resume()

@@ -93,11 +93,11 @@ func (c *call) expect(targets io.Reader, name string, f catalogue.Filter, base u
 	fits := func(ctx context.Context, response, line string) (*expectation.Fits, error) {
 		return app.expectationFits(ctx, f, response, line)
 	}
-	n, err := answerTargets(ctx, targets, c.out, base, fits, func(done int) {
+	n, err := answerTargets(ctx, targets, c.out, base, fits, batchWatch{progress: func(done int) {
 		if done%(4*batchChunk) == 0 {
 			fmt.Fprintf(c.err, "%d rows\n", done)
 		}
-	})
+	}})
 	if err != nil {
 		var table *echo.HTTPError
 		if errors.As(err, &table) {

@@ -3,7 +3,6 @@ package main
 import (
 	"bytes"
 	"context"
-	"encoding/csv"
 	"errors"
 	"fmt"
 	"io"
@@ -227,8 +226,16 @@ func (a *App) targetsPage(c echo.Context) error {
 	if err == nil || c.Response().Committed || !strings.Contains(c.Request().Header.Get(echo.HeaderAccept), "text/html") {
 		return err
 	}
+	return a.targetsRefused(c, err)
+}
+
+// targetsRefused is the form of a file of targets, with why it was refused.
+func (a *App) targetsRefused(c echo.Context, err error) error {
 	p := problemOf(err)
-	if p.Status >= http.StatusInternalServerError {
+	switch {
+	case p.Status == http.StatusServiceUnavailable:
+		c.Response().Header().Set(echo.HeaderRetryAfter, "60")
+	case p.Status >= http.StatusInternalServerError:
 		return err
 	}
 	q, _ := url.ParseQuery(c.Request().URL.RawQuery)
@@ -263,14 +270,8 @@ func (a *App) expectationCSV(c echo.Context) error {
 		return err
 	}
 	defer in.Close()
-	if err := allow(q, targetParameters, catalogue.FilterParameters); err != nil {
-		return err
-	}
-	f, err := filterOf(q)
+	f, err := batchSettings(q)
 	if err != nil {
-		return err
-	}
-	if _, err := targetOf(q); err != nil {
 		return err
 	}
 	h := c.Response().Header()
@@ -285,11 +286,25 @@ func (a *App) expectationCSV(c echo.Context) error {
 	// The whole answer may take longer than an ordinary page is given: every
 	// piece that leaves wins time for the next.
 	deadline := http.NewResponseController(c.Response().Writer)
-	_, err = answerTargets(c.Request().Context(), in, out, targetValues(q), fits, func(int) {
+	_, err = answerTargets(c.Request().Context(), in, out, targetValues(q), fits, batchWatch{progress: func(int) {
 		c.Response().Flush()
 		_ = deadline.SetWriteDeadline(time.Now().Add(batchPatience))
-	})
+	}})
 	return err
+}
+
+// batchSettings checks what holds for every row of a file of targets, and gives
+// the rows of the catalogue that its answers stand on.
+func batchSettings(q url.Values) (catalogue.Filter, error) {
+	if err := allow(q, targetParameters, catalogue.FilterParameters); err != nil {
+		return catalogue.Filter{}, err
+	}
+	f, err := filterOf(q)
+	if err != nil {
+		return f, err
+	}
+	_, err = targetOf(q)
+	return f, err
 }
 
 // batchPatience is how long one piece of a batch may take.
@@ -374,45 +389,4 @@ func withQuery(path string, q url.Values) string {
 		return path
 	}
 	return path + "?" + q.Encode()
-}
-
-// columnHelp is the dictionary of the columns a file of targets may have and
-// of those it comes back with.
-func columnHelp() []views.ColumnHelp {
-	var out []views.ColumnHelp
-	for _, f := range targetFields {
-		out = append(out, views.ColumnHelp{Name: f.name, Unit: f.unit, Meaning: "from " + short(f.low) + " to " + short(f.top)})
-	}
-	for _, s := range slopeFields {
-		unit := map[string]string{"target_slope": "m/m", "target_slope_deg": "degrees", "target_slope_permille": "per mille"}[s.name]
-		out = append(out, views.ColumnHelp{Name: s.name, Unit: unit, Meaning: "valley slope; one of the three"})
-	}
-	for _, t := range targetTexts {
-		meaning := "a name"
-		if t.choices != nil {
-			meaning = "one of: " + strings.Join(t.choices, ", ")
-		}
-		out = append(out, views.ColumnHelp{Name: t.name, Meaning: meaning})
-	}
-	out = append(out, views.ColumnHelp{Name: "seed", Meaning: "seed of the draws"}, views.ColumnHelp{Name: "draws", Meaning: "number of draws"})
-	for _, c := range resultColumns {
-		out = append(out, views.ColumnHelp{Name: c.Name, Unit: c.Unit, Meaning: c.Meaning, Out: true})
-	}
-	return append(out, views.ColumnHelp{Name: errorColumn, Meaning: "why a row has no result; empty for the others", Out: true})
-}
-
-func (a *App) expectationColumns(c echo.Context) error {
-	var b strings.Builder
-	w := csv.NewWriter(&b)
-	_ = w.Write([]string{"column", "direction", "unit", "meaning"})
-	for _, h := range columnHelp() {
-		direction := "in"
-		if h.Out {
-			direction = "out"
-		}
-		_ = w.Write([]string{h.Name, direction, h.Unit, h.Meaning})
-	}
-	w.Flush()
-	c.Response().Header().Set(echo.HeaderContentDisposition, `attachment; filename="expectation-columns.csv"`)
-	return c.Blob(http.StatusOK, "text/csv; charset=utf-8; header=present", []byte(b.String()))
 }

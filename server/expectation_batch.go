@@ -20,114 +20,8 @@ import (
 
 	"fathombend/catalogue"
 	"fathombend/stats/expectation"
+	"fathombend/views"
 )
-
-// resultColumn is one column added to a file of targets.
-type resultColumn struct {
-	Name, Unit, Meaning string
-	of                  func(*expectation.Result) string
-}
-
-func quantile(of func(*expectation.Quantiles) float64) func(*expectation.Result) string {
-	return func(r *expectation.Result) string {
-		if r.Combined.Sinuosity == nil {
-			return ""
-		}
-		return cellNumber(of(r.Combined.Sinuosity))
-	}
-}
-
-// resultColumns in the order they are written; the dictionary on the page and
-// in /expectation/columns.csv is made from them. Every name starts with result_
-// so that none can be taken for a parameter.
-var resultColumns = []resultColumn{
-	{"result_palaeolatitude", "degrees", "palaeolatitude used: the point conversion of what was given", func(r *expectation.Result) string { return cellNumber(r.Palaeolatitude.Value) }},
-	{"result_palaeolatitude_se", "degrees", "its standard error", func(r *expectation.Result) string { return cellNumber(r.Palaeolatitude.SE) }},
-	{"result_age", "Ma", "age used", func(r *expectation.Result) string { return cellNumber(r.Age.Value) }},
-	{"result_age_se", "Ma", "its standard error", func(r *expectation.Result) string { return cellNumber(r.Age.SE) }},
-	{"result_day_length", "solar hours", "length of the day at that age", func(r *expectation.Result) string { return cellNumber(r.DayLength.Value) }},
-	{"result_rotation_ratio", "1", "rotation rate over today's", func(r *expectation.Result) string { return cellNumber(r.RotationRatio) }},
-	{"result_coriolis", "s-1", "size of the Coriolis parameter", func(r *expectation.Result) string { return cellNumber(r.Coriolis) }},
-	{"result_equivalent_modern_latitude", "degrees", "latitude with the same Coriolis parameter today; empty where there is none", func(r *expectation.Result) string {
-		if r.EquivalentModernLatitude == nil {
-			return ""
-		}
-		return cellNumber(*r.EquivalentModernLatitude)
-	}},
-	{"result_response", "", "which sinuosity is expected", func(r *expectation.Result) string { return r.Response }},
-	{"result_measured_line", "", "along which line", func(r *expectation.Result) string { return r.MeasuredLine }},
-	{"result_p2_5", "1", "sinuosity below which 2.5 % of new systems lie, all explanations combined", quantile(func(q *expectation.Quantiles) float64 { return q.P2_5 })},
-	{"result_p10", "1", "the same, 10 %", quantile(func(q *expectation.Quantiles) float64 { return q.P10 })},
-	{"result_p25", "1", "the same, 25 %", quantile(func(q *expectation.Quantiles) float64 { return q.P25 })},
-	{"result_p50", "1", "the same, 50 %: the expected value", quantile(func(q *expectation.Quantiles) float64 { return q.P50 })},
-	{"result_p75", "1", "the same, 75 %", quantile(func(q *expectation.Quantiles) float64 { return q.P75 })},
-	{"result_p90", "1", "the same, 90 %", quantile(func(q *expectation.Quantiles) float64 { return q.P90 })},
-	{"result_p97_5", "1", "the same, 97.5 %", quantile(func(q *expectation.Quantiles) float64 { return q.P97_5 })},
-	{"result_coverage_80", "fraction", "what the 80 % limits held when each cluster was left out", coverage(func(c *expectation.Coverage) float64 { return c.C80 })},
-	{"result_coverage_95", "fraction", "what the 95 % limits held when each cluster was left out", coverage(func(c *expectation.Coverage) float64 { return c.C95 })},
-	{"result_observed_percentile", "%", "share of outcomes below the observed sinuosity, if one was given", func(r *expectation.Result) string {
-		if r.Observed == nil {
-			return ""
-		}
-		return cellNumber(r.Observed.Percentile)
-	}},
-	{"result_classes", "", "planform classes with their probability and base rate in the rows", classesCell},
-	{"result_rows", "", "rows of the catalogue used", func(r *expectation.Result) string { return strconv.Itoa(r.Rows) }},
-	{"result_clusters", "", "clusters they form", func(r *expectation.Result) string { return strconv.Itoa(r.Clusters) }},
-	{"result_invented_rows", "", "how many of the rows are invented", func(r *expectation.Result) string { return strconv.Itoa(r.InventedRows) }},
-	{"result_seed", "", "seed of the draws", func(r *expectation.Result) string { return settingCell(r, "seed") }},
-	{"result_draws", "", "number of draws", func(r *expectation.Result) string { return settingCell(r, "draws") }},
-	{"result_extrapolation", "", "in what respect the target lies outside the rows", func(r *expectation.Result) string { return strings.Join(r.Extrapolation, " ") }},
-	{"result_notes", "", "what was assumed", func(r *expectation.Result) string { return strings.Join(r.Notes, " ") }},
-	{"result_cautions", "", "what this expectation is not for", func(r *expectation.Result) string { return strings.Join(r.Cautions, " ") }},
-}
-
-// errorColumn is why a row has no result; empty for the others.
-const errorColumn = "error"
-
-func coverage(of func(*expectation.Coverage) float64) func(*expectation.Result) string {
-	return func(r *expectation.Result) string {
-		if r.Combined.Coverage == nil {
-			return ""
-		}
-		return cellNumber(of(r.Combined.Coverage))
-	}
-}
-
-func classesCell(r *expectation.Result) string {
-	var parts []string
-	for _, c := range r.Classes {
-		parts = append(parts, c.Name+" "+percentText(c.Probability)+" (base rate "+percentText(c.BaseRate)+")")
-	}
-	return strings.Join(parts, "; ")
-}
-
-func settingCell(r *expectation.Result, name string) string {
-	switch v := r.Settings[name].(type) {
-	case uint64:
-		return strconv.FormatUint(v, 10)
-	case int:
-		return strconv.Itoa(v)
-	case float64:
-		return cellNumber(v)
-	}
-	return ""
-}
-
-// cellNumber writes a number with every digit it has; not finite is empty.
-func cellNumber(x float64) string {
-	if !isFinite(x) {
-		return ""
-	}
-	return strconv.FormatFloat(x, 'g', -1, 64)
-}
-
-func percentText(x float64) string {
-	if !isFinite(x) {
-		return "unknown"
-	}
-	return strconv.FormatFloat(100*x, 'f', 0, 64) + " %"
-}
 
 // fitter gives the fits for one response and measured line.
 type fitter func(ctx context.Context, response, line string) (*expectation.Fits, error)
@@ -149,6 +43,37 @@ const (
 // batchCounts says how a file of targets went.
 type batchCounts struct{ Rows, Bad int }
 
+// batchWatch is told how a file of targets goes; both may be nil.
+type batchWatch struct {
+	progress func(rows int) // done so far
+	refused  func(views.TargetRefusal)
+}
+
+// targetRow is one row of a file of targets; line counts from 1, the header.
+type targetRow struct {
+	line  int
+	cells []string
+}
+
+// targetAnswer is a row with its results, and why it has none.
+type targetAnswer struct {
+	cells   []string
+	refused *views.TargetRefusal
+}
+
+// readTarget gives the next row, nil after the last.
+func readTarget(r *csv.Reader) (*targetRow, error) {
+	cells, err := r.Read()
+	if errors.Is(err, io.EOF) {
+		return nil, nil
+	}
+	if err != nil {
+		return nil, err
+	}
+	line, _ := r.FieldPos(0)
+	return &targetRow{line, cells}, nil
+}
+
 // badTable is a file of targets that cannot be read as a table at all.
 func badTable(sentence string) error {
 	return echo.NewHTTPError(http.StatusUnprocessableEntity, sentence)
@@ -156,8 +81,8 @@ func badTable(sentence string) error {
 
 // answerTargets reads targets as CSV and writes the same rows with their
 // results. A row that cannot be answered keeps its place, with the reason in
-// its error column. progress, if not nil, is called with the rows done.
-func answerTargets(ctx context.Context, in io.Reader, out io.Writer, base url.Values, fits fitter, progress func(int)) (batchCounts, error) {
+// its error column.
+func answerTargets(ctx context.Context, in io.Reader, out io.Writer, base url.Values, fits fitter, watch batchWatch) (batchCounts, error) {
 	var n batchCounts
 	r := targetReader(in)
 	b := &batch{base: base, fits: fits}
@@ -169,17 +94,15 @@ func answerTargets(ctx context.Context, in io.Reader, out io.Writer, base url.Va
 		return n, err
 	}
 	for done := false; !done; {
-		var rows [][]string
-		for len(rows) < batchChunk {
-			row, err := r.Read()
-			if errors.Is(err, io.EOF) {
-				done = true
-				break
-			}
-			if err != nil && !errors.Is(err, csv.ErrFieldCount) {
+		var rows []targetRow
+		for len(rows) < batchChunk && !done {
+			row, err := readTarget(r)
+			if err != nil {
 				return n, err
 			}
-			rows = append(rows, row)
+			if done = row == nil; !done {
+				rows = append(rows, *row)
+			}
 		}
 		answers := b.answerAll(ctx, rows)
 		if err := ctx.Err(); err != nil {
@@ -187,16 +110,19 @@ func answerTargets(ctx context.Context, in io.Reader, out io.Writer, base url.Va
 		}
 		for _, a := range answers {
 			n.Rows++
-			if a[len(a)-1] != "" {
+			if a.refused != nil {
 				n.Bad++
+				if watch.refused != nil {
+					watch.refused(*a.refused)
+				}
 			}
-			if err := w.Write(a); err != nil {
+			if err := w.Write(a.cells); err != nil {
 				return n, err
 			}
 		}
 		w.Flush()
-		if progress != nil {
-			progress(n.Rows)
+		if watch.progress != nil {
+			watch.progress(n.Rows)
 		}
 	}
 	return n, w.Error()
@@ -276,8 +202,8 @@ func (b *batch) header() []string {
 
 // answerAll answers rows on all cores; the order is that of the rows and no
 // number depends on how many cores there are.
-func (b *batch) answerAll(ctx context.Context, rows [][]string) [][]string {
-	out := make([][]string, len(rows))
+func (b *batch) answerAll(ctx context.Context, rows []targetRow) []targetAnswer {
+	out := make([]targetAnswer, len(rows))
 	next := make(chan int)
 	var wg sync.WaitGroup
 	for range min(runtime.GOMAXPROCS(0), len(rows)) {
@@ -296,7 +222,8 @@ func (b *batch) answerAll(ctx context.Context, rows [][]string) [][]string {
 }
 
 // answer is one row with its results.
-func (b *batch) answer(ctx context.Context, row []string) []string {
+func (b *batch) answer(ctx context.Context, in targetRow) targetAnswer {
+	row := in.cells
 	out := make([]string, 0, len(b.extra)+len(resultColumns)+1)
 	for _, i := range b.extra {
 		if i < len(row) {
@@ -314,9 +241,10 @@ func (b *batch) answer(ctx context.Context, row []string) []string {
 		}
 	}
 	if err != nil {
-		return append(out, catalogue.Neutralise(rowError(err)))
+		field, reason := rowRefusal(err)
+		return targetAnswer{append(out, catalogue.Neutralise(rowError(err))), &views.TargetRefusal{Line: in.line, Field: field, Reason: reason}}
 	}
-	return append(out, "")
+	return targetAnswer{append(out, ""), nil}
 }
 
 // passThrough keeps numbers to the letter and neutralises text that a
@@ -365,19 +293,25 @@ func (b *batch) expect(ctx context.Context, row []string) (*expectation.Result, 
 // rowError is what the owner of the file may read about err: the same sentence
 // a page would show.
 func rowError(err error) string {
+	field, reason := rowRefusal(err)
+	if field != "" {
+		return field + ": " + reason
+	}
+	return reason
+}
+
+// rowRefusal is the field that err is about, "" for none, and what is wrong.
+func rowRefusal(err error) (field, reason string) {
 	p := problemOf(err)
 	if p.Status >= http.StatusInternalServerError {
-		return "could not be answered; the fault is in the program, not in the row"
+		return "", "could not be answered; the fault is in the program, not in the row"
 	}
-	text := p.whole
-	if text == "" {
-		text = p.Detail
+	reason = p.whole
+	if reason == "" {
+		reason = p.Detail
 		if p.Expected != "" {
-			text = strings.TrimSuffix(text, ".") + ". Expected: " + p.Expected
+			reason = strings.TrimSuffix(reason, ".") + ". Expected: " + p.Expected
 		}
 	}
-	if p.Field != "" {
-		return p.Field + ": " + text
-	}
-	return text
+	return p.Field, reason
 }

@@ -445,7 +445,7 @@ func TestRefusedTargetsComeBackToTheForm(t *testing.T) {
 		}
 		if c.filter == "80" {
 			if p := a.doc(); p.Find(`#set-targets[aria-invalid="true"]`).Length() != 1 || p.Find(`.errors a[href="#set-targets"]`).Length() != 1 ||
-				p.Find(`form[action="/expectation.csv"] input[name="abs_lat_max"][value="80"]`).Length() != 1 {
+				p.Find(`form[action="/expectation/batch"] input[name="abs_lat_max"][value="80"]`).Length() != 1 {
 				t.Errorf("%q: the page does not lead to the field, or lost the filter:\n%s", c.file, a.text())
 			}
 		}

@@ -51,6 +51,7 @@ func (h *house) readersPages() []housePage {
 		"resamples": {"199"}, "permutations": {"99"}, "title": {"Figure 3"}, "why": {"of the manuscript"}}).is(http.StatusOK).url.Path
 	h.who["curator"].post("/releases", url.Values{"name": {"2031.1"}, "title": {"The demonstration survey"}, "notes": {"The first."}, "licence": {"CC-BY-4.0"}, "doi": {""}}).is(http.StatusOK)
 	question := "palaeolatitude=28&palaeolatitude_se=4&age=70&age_se=3"
+	targets := h.who["reader"].answered(h.who["reader"].sendTargets(manyTargets(1500, 120), nil)).url.RequestURI()
 	return []housePage{
 		{"reader", "meridian", "/", 0, ""},
 		{"reader", "meridian-folded", "/?fold=yes&colour=grade", 0, ""},
@@ -72,6 +73,8 @@ func (h *house) readersPages() []housePage {
 		{"reader", "expectation-time", "/expectation/time?" + question, 0, ""},
 		{"reader", "expectation-report", "/expectation/report?" + question, 0, ""},
 		{"reader", "expectation-deep-time", "/expectation/deep-time", 0, ""},
+		{"reader", "targets-answered", targets, 0, ""},
+		{"reader", "targets-forgotten", "/expectation/batch?key=none", http.StatusNotFound, ""},
 		{"reader", "measure", "/measure", 0, ""},
 		{"reader", "measured", "/measure", 0, sentPlainly("main [name=line]", wanderingLine())},
 		{"reader", "methods", "/methods", 0, ""},

@@ -15,7 +15,7 @@ var privateRoutes = []string{
 	"/chart", "/chart.json", "/chart/lines.json",
 	"/regression", "/regression.json", "/regression.csv", "/regression/cancel", "/regression/freeze", "/regression/next", "/regression/next.json",
 	"/expectation", "/expectation.json", "/expectation.csv", "/expectation/time", "/expectation/time.json", "/expectation/report",
-	"/expectation/deep-time", "/expectation/deep-time.json",
+	"/expectation/deep-time", "/expectation/deep-time.json", "/expectation/batch", "/expectation/batch/cancel",
 }
 
 // holdsPrivate says whether a route is one of privateRoutes or the file of a

@@ -297,6 +297,9 @@ func TestHiddenRowsAreSeenByTheirPeople(t *testing.T) {
 				t.Errorf("%s as %s is tagged", path, name)
 			}
 		}
+		if rows := v.answersTo([]byte("palaeolatitude,age\n20,1\n")); rows[0]["result_rows"] != "27" {
+			t.Errorf("a file of targets of %s is answered on %s rows", name, rows[0]["result_rows"])
+		}
 		// As everybody sees it, when asked so.
 		v.get("/systems.json?private=no").is(http.StatusOK).holdsNone(name+" with private=no", s.base, privateMarkers)
 		if a := v.get("/regression.json" + fit + "&private=no"); !strings.Contains(a.body, `"rows":24`) || strings.Contains(a.body, "private_rows") {

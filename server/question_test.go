@@ -111,7 +111,7 @@ func FuzzTargetsFile(f *testing.F) {
 			return
 		}
 		var out bytes.Buffer
-		n, err := answerTargets(context.Background(), strings.NewReader(text), &out, url.Values{}, refuse, nil)
+		n, err := answerTargets(context.Background(), strings.NewReader(text), &out, url.Values{}, refuse, batchWatch{})
 		if err != nil {
 			if out.Len() > 0 {
 				t.Fatalf("%q: refused with %d bytes written: %v", text, out.Len(), err)

@@ -14,7 +14,7 @@ var openToAll = []string{
 	"/regression", "/regression.json", "/regression.csv", "/regression/next", "/regression/next.json", "/figures/regression.svg", "/figures/regression.png", "/figures/regression.pdf",
 	"/expectation", "/expectation.json", "/expectation/time", "/expectation/time.json", "/expectation/report", "/figures/expectation.svg",
 	"/figures/expectation.png", "/figures/expectation.pdf",
-	"/expectation/columns.csv", "/expectation/deep-time", "/expectation/deep-time.json", "/analyses", "/analyses/:name", "/figures/meridian.svg",
+	"/expectation/columns.csv", "/expectation/batch", "/expectation/deep-time", "/expectation/deep-time.json", "/analyses", "/analyses/:name", "/figures/meridian.svg",
 	"/chart", "/chart.json", "/chart/land.json", "/chart/lines.json", "/recompute.json", "/recompute/:name",
 	"/dictionary", "/dictionary.csv", "/dictionary.json", "/systems.zip", "/sources", "/sources.csv", "/sources.json", "/sources.bib", "/sources.ris",
 	"/features", "/features/", "/features/api", "/features/conformance", "/features/collections", "/features/collections/:collection",
