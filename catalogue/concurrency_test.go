@@ -1,6 +1,7 @@
 package catalogue
 
 import (
+	"context"
 	"fmt"
 	"sync"
 	"testing"
@@ -79,4 +80,38 @@ func TestReaderSeesOneMoment(t *testing.T) {
 	if err != nil || n != 80 {
 		t.Errorf("%d rows, %v", n, err)
 	}
+}
+
+// Tables that are taken slowly, more at once than there are readers of pages,
+// keep nobody waiting: neither a page nor the session of whoever takes them.
+func TestSlowTablesKeepNobodyWaiting(t *testing.T) {
+	s := open(t)
+	if err := s.InsertRows(ctx, []Row{row("Slow Channel", 1, 2, 1.5)}, nil, 0, "slow"); err != nil {
+		t.Fatal(err)
+	}
+	if err := s.SessionCommit(ctx, "token", []byte("x"), time.Now().Add(time.Hour)); err != nil {
+		t.Fatal(err)
+	}
+	slow := min(2*s.r.Stats().MaxOpenConnections, streams)
+	var begun, ended sync.WaitGroup
+	taken := make(chan struct{})
+	begun.Add(slow)
+	for range slow {
+		ended.Go(func() {
+			if err := s.EachRow(ctx, Filter{}, func(Row) error { begun.Done(); <-taken; return nil }); err != nil {
+				t.Error(err)
+			}
+		})
+	}
+	begun.Wait()
+	soon, cancel := context.WithTimeout(ctx, time.Minute)
+	defer cancel()
+	if _, found, err := s.SessionFind(soon, "token"); err != nil || !found {
+		t.Errorf("the session: %v, %v", found, err)
+	}
+	if _, total, err := s.Systems(soon, Filter{}); err != nil || total != 1 {
+		t.Errorf("a page: %d systems, %v", total, err)
+	}
+	close(taken)
+	ended.Wait()
 }

@@ -186,7 +186,7 @@ func (s *Store) EachSystem(ctx context.Context, f Filter, visit func(Row) error)
 	if err != nil {
 		return err
 	}
-	q, err := at(ctx, s.r, f.Release)
+	q, err := at(ctx, s.out, f.Release)
 	if err != nil {
 		return fault("systems", err)
 	}

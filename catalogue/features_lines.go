@@ -139,7 +139,7 @@ func (s *Store) EachLine(ctx context.Context, f Filter, visit func(*LineFeature)
 
 // eachLine visits until visit says false.
 func (s *Store) eachLine(ctx context.Context, release, tail string, args []any, visit func(*LineFeature) (bool, error)) error {
-	q, err := at(ctx, s.r, release)
+	q, err := at(ctx, s.out, release)
 	if err != nil {
 		return fault("lines", err)
 	}

@@ -41,7 +41,7 @@ type Difference struct {
 // records they list, so only what differs is read.
 func (s *Store) EachDifference(ctx context.Context, before, after string, visit func(Change) error) (*Difference, error) {
 	d := &Difference{columns: map[string]int{}}
-	err := s.read(ctx, func(tx *sql.Tx) error {
+	err := snapshot(ctx, s.out, func(tx *sql.Tx) error {
 		var sides [2]querier
 		var ids [2]int64
 		for i, name := range []string{before, after} {

@@ -108,7 +108,7 @@ func (s *Store) EachRow(ctx context.Context, f Filter, visit func(Row) error) er
 	if err != nil {
 		return err
 	}
-	q, err := at(ctx, s.r, f.Release)
+	q, err := at(ctx, s.out, f.Release)
 	if err != nil {
 		return fault("rows", err)
 	}
@@ -163,7 +163,11 @@ func (s *Store) RowsPage(ctx context.Context, f Filter) (rows []Row, total int, 
 
 // read runs fn on one snapshot of the catalogue.
 func (s *Store) read(ctx context.Context, fn func(tx *sql.Tx) error) error {
-	tx, err := s.r.BeginTx(ctx, nil)
+	return snapshot(ctx, s.r, fn)
+}
+
+func snapshot(ctx context.Context, db *sql.DB, fn func(tx *sql.Tx) error) error {
+	tx, err := db.BeginTx(ctx, nil)
 	if err != nil {
 		return fault("begin", err)
 	}

@@ -25,6 +25,7 @@ type Store struct {
 	path   string
 	w      *sql.DB // one connection, immediate transactions; nil when read only
 	r      *sql.DB // a pool of read-only connections
+	out    *sql.DB // the same, for rows that go out one by one
 	onLand func(lat, lon float64) bool
 	unit   func(name string) (top, base float64, problem string)
 	// immutable is added to the address of connections when the file lies where
@@ -35,6 +36,11 @@ type Store struct {
 	now       func() time.Time
 	due       atomic.Int64 // second at which Lift has to look again
 }
+
+// streams is how many tables may go out at once. They have connections of their
+// own: whoever takes a table slowly holds one for as long, and must neither
+// keep a page waiting nor wait for the session that its own first byte asks for.
+const streams = 64
 
 // Options of Open.
 type Options struct {
@@ -91,11 +97,16 @@ func (s *Store) open(ctx context.Context, o Options) (err error) {
 		// written opens only as immutable, which it is as nobody can write it.
 		s.immutable = "&immutable=1"
 	}
-	if s.r, err = sql.Open("sqlite", readerDSN(s.path)+s.immutable); err != nil {
-		return err
+	for _, p := range []struct {
+		db   **sql.DB
+		most int
+	}{{&s.r, max(4, 2*runtime.GOMAXPROCS(0))}, {&s.out, streams}} {
+		if *p.db, err = sql.Open("sqlite", readerDSN(s.path)+s.immutable); err != nil {
+			return err
+		}
+		(*p.db).SetMaxOpenConns(p.most)
+		(*p.db).SetMaxIdleConns(max(4, 2*runtime.GOMAXPROCS(0)))
 	}
-	s.r.SetMaxOpenConns(max(4, 2*runtime.GOMAXPROCS(0)))
-	s.r.SetMaxIdleConns(max(4, 2*runtime.GOMAXPROCS(0)))
 	return checkVersion(ctx, s.r)
 }
 
@@ -170,6 +181,9 @@ func sqliteCode(err error) int {
 // Close ends all connections.
 func (s *Store) Close() error {
 	var errs []error
+	if s.out != nil {
+		errs = append(errs, s.out.Close())
+	}
 	if s.r != nil {
 		errs = append(errs, s.r.Close())
 	}

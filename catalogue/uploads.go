@@ -375,7 +375,7 @@ func sendRows(ctx context.Context, tx *sql.Tx, id, by, batch int64, now string) 
 
 // Remarks lists what a check had to say: kind problem, warning or conversion.
 func (s *Store) Remarks(ctx context.Context, id int64, kind string, limit int, each func(RowProblem) error) error {
-	rows, err := s.r.QueryContext(ctx, `SELECT line, column_name, value, message, expected FROM upload_remarks WHERE upload_id = ? AND kind = ? ORDER BY n LIMIT ?`, id, kind, limit)
+	rows, err := s.out.QueryContext(ctx, `SELECT line, column_name, value, message, expected FROM upload_remarks WHERE upload_id = ? AND kind = ? ORDER BY n LIMIT ?`, id, kind, limit)
 	if err != nil {
 		return fault("remarks", err)
 	}
