@@ -92,20 +92,25 @@ func TestSlowTablesKeepNobodyWaiting(t *testing.T) {
 	if err := s.SessionCommit(ctx, "token", []byte("x"), time.Now().Add(time.Hour)); err != nil {
 		t.Fatal(err)
 	}
+	soon, cancel := context.WithTimeout(ctx, time.Minute)
+	defer cancel()
 	slow := min(2*s.r.Stats().MaxOpenConnections, streams)
-	var begun, ended sync.WaitGroup
-	taken := make(chan struct{})
-	begun.Add(slow)
+	begun, taken := make(chan bool, slow), make(chan bool)
+	var ended sync.WaitGroup
 	for range slow {
 		ended.Go(func() {
-			if err := s.EachRow(ctx, Filter{}, func(Row) error { begun.Done(); <-taken; return nil }); err != nil {
+			if err := s.EachRow(soon, Filter{}, func(Row) error { begun <- true; <-taken; return nil }); err != nil {
 				t.Error(err)
 			}
 		})
 	}
-	begun.Wait()
-	soon, cancel := context.WithTimeout(ctx, time.Minute)
-	defer cancel()
+	for range slow {
+		select {
+		case <-begun:
+		case <-soon.Done():
+			t.Error("a table waits for others that are taken slowly")
+		}
+	}
 	if _, found, err := s.SessionFind(soon, "token"); err != nil || !found {
 		t.Errorf("the session: %v, %v", found, err)
 	}

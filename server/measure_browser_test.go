@@ -144,7 +144,7 @@ func TestBrowserMeasureDropChangeSave(t *testing.T) {
 // waitFor waits until a condition holds on the page.
 func waitFor(t *testing.T, ctx context.Context, condition string) {
 	t.Helper()
-	for range 300 {
+	for range 1200 {
 		if ok, err := chromedp.Run(ctx, chromedp.Evaluate[bool](condition)); err == nil && ok {
 			return
 		}

@@ -8,7 +8,6 @@ import (
 	"path/filepath"
 	"strings"
 	"testing"
-	"time"
 
 	"github.com/chromedp/chromedp"
 )
@@ -46,12 +45,9 @@ func TestUploadInTheBrowser(t *testing.T) {
 	at := b.path()
 	b.goTo("/contribute") // the page is left, the check goes on
 	b.goTo(at)
-	for range 600 {
-		if strings.Contains(b.text(), "Every row can be sent") {
-			break
-		}
-		time.Sleep(100 * time.Millisecond) // the script shows the result when it is there
-	}
+	// The script loads the page anew when the result is there: asked in the page,
+	// since a node that was found may be gone a moment later.
+	waitFor(t, b.ctx, `document.readyState === "complete" && document.body.innerText.includes("Every row can be sent")`)
 	b.says("6000 rows read: 6000 new", "Nothing is sent yet", "degrees read as valley_slope")
 	b.press("button[value=send]")
 	b.says("6000 rows wait for a curator")
