@@ -19,7 +19,7 @@ type cache struct {
 }
 
 // mostHeavy is how many answers that weigh are kept.
-const mostHeavy = 3
+const mostHeavy = 2
 
 type cached struct {
 	done  chan struct{}

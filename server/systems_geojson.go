@@ -53,7 +53,7 @@ func (a *App) systemsGeoJSON(c echo.Context) error {
 	if q.Get("page") != "" || q.Get("per_page") != "" {
 		return a.systemsGeoJSONPage(c, f)
 	}
-	_, matched, err := a.store.CountFeatures(ctx, catalogue.FeatureQuery{Filter: f})
+	matched, err := a.store.CountSystems(ctx, f)
 	if err != nil {
 		return err
 	}
