@@ -13,7 +13,11 @@ func (a *App) openAPI(c echo.Context) error {
 	if _, err := featureParameters(c); err != nil {
 		return err
 	}
-	return writeTyped(c, openAPIType, openAPIDocument(a.baseAddress(c)))
+	title, err := a.store.Title(c.Request().Context())
+	if err != nil {
+		return err
+	}
+	return writeTyped(c, openAPIType, openAPIDocument(title, a.baseAddress(c)))
 }
 
 type object = map[string]any
@@ -155,7 +159,7 @@ func withPost(path object, summary string, takes ...string) object {
 
 func ref(name string) object { return object{"$ref": "#/components/schemas/" + name} }
 
-func openAPIDocument(base string) object {
+func openAPIDocument(title, base string) object {
 	text, anything := object{"type": "string"}, object{"type": "object"}
 	binary := object{"type": "string", "format": "binary"}
 	f, release := formatParameter(), filterParameter("release")
@@ -200,8 +204,8 @@ func openAPIDocument(base string) object {
 	}
 	return object{
 		"openapi": "3.0.3",
-		"info": object{"title": catalogue.DefaultTitle, "version": Version,
-			"description": "Measurements of submarine channels, regressions and expectations. Every state of a page is in its query string, and every page is data at the same address with a suffix. Records carry their own licence in the column licence.",
+		"info": object{"title": title, "version": Version,
+			"description": "Measurements of submarine channels, regressions and expectations. Every state of a page is in its query string, and pages of rows, fits and releases are data at the same address with a suffix. Records carry their own licence in the column licence.",
 			"license":     object{"name": "Apache-2.0 (the program; records carry their own)", "url": "https://www.apache.org/licenses/LICENSE-2.0"}},
 		"servers":    []any{object{"url": base}},
 		"tags":       []any{object{"name": features}, object{"name": tables}, object{"name": fits}, object{"name": releases}, object{"name": about}},

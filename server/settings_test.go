@@ -178,6 +178,9 @@ func TestSettingsReachThePages(t *testing.T) {
 	if a := v.get("/feed.atom"); !strings.Contains(a.body, "Northern Survey") {
 		t.Error("the feed has another title")
 	}
+	if a := v.get("/openapi.json").is(http.StatusOK); !strings.Contains(a.body, `"title":"Northern Survey"`) {
+		t.Error("the description for programs has another title")
+	}
 	k.get("/releases").is(http.StatusOK)
 	if form := k.get("/releases").form("form[action^='/releases']"); form.Get("title") != "Northern Survey" {
 		t.Errorf("offered for the next release: %v", form)

@@ -113,8 +113,9 @@ var chart = table("ics.csv", func(rows []record) []Unit {
 func Units() []Unit { return append([]Unit(nil), chart()...) }
 
 // UnitNamed finds a unit by name. Early/Late and Lower/Upper are both known,
-// and -aeo- spellings; an unknown name is an *InputError that offers the
-// nearest ones.
+// and -aeo- spellings; an unknown name is an *InputError that offers up to
+// three that are near: one contains the other, or at most one letter in three
+// differs.
 func UnitNamed(name string) (Unit, error) {
 	key := unitKey(name)
 	if len(key) > 100 {
@@ -126,7 +127,7 @@ func UnitNamed(name string) (Unit, error) {
 	}
 	var best []near
 	for _, u := range chart() {
-		d := len(key)
+		d, isNear := len(key), false
 		for _, n := range []string{u.Name, u.AltName} {
 			if n == "" {
 				continue
@@ -136,11 +137,22 @@ func UnitNamed(name string) (Unit, error) {
 				return u, nil
 			}
 			d = min(d, Distance(key, k))
+			isNear = isNear || 3*d <= len(key) || len(key) > 3 && (strings.Contains(k, key) || strings.Contains(key, k))
 		}
-		best = append(best, near{u.Name, d})
+		if isNear {
+			best = append(best, near{u.Name, d})
+		}
 	}
 	slices.SortStableFunc(best, func(a, b near) int { return a.d - b.d })
-	return Unit{}, &InputError{"unit", fmt.Sprintf("%q is no unit of the chronostratigraphic chart (v2024-12). Nearest: %s, %s, %s", clip(name), best[0].name, best[1].name, best[2].name)}
+	what := fmt.Sprintf("%q is no unit of the chronostratigraphic chart (v2024-12)", clip(name))
+	if len(best) == 0 {
+		return Unit{}, &InputError{"unit", what + ", nor near one. Expected an English name on it, such as Maastrichtian or Upper Cretaceous; the field lists them all"}
+	}
+	var names []string
+	for _, b := range best[:min(3, len(best))] {
+		names = append(names, b.name)
+	}
+	return Unit{}, &InputError{"unit", what + ". Nearest: " + strings.Join(names, ", ")}
 }
 
 // unitKey folds the spellings of one unit to one key.

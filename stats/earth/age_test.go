@@ -29,6 +29,20 @@ func TestUnits(t *testing.T) {
 	}
 }
 
+// A name is offered only where it is near.
+func TestNearUnits(t *testing.T) {
+	for name, says := range map[string]string{"Cretac": "Nearest: ", "Campanien": "Nearest: Campanian", "Cretaceous Upper": "Cretaceous", "Jurasic": "Nearest: Jurassic"} {
+		if _, err := UnitNamed(name); err == nil || !strings.Contains(err.Error(), says) {
+			t.Errorf("%s: %v", name, err)
+		}
+	}
+	for _, name := range []string{"Foo", "x", "Thursday", "yesterday evening"} {
+		if _, err := UnitNamed(name); err == nil || strings.Contains(err.Error(), "Nearest") || !strings.Contains(err.Error(), "nor near one. Expected") {
+			t.Errorf("%s: %v", name, err)
+		}
+	}
+}
+
 func TestParseAge(t *testing.T) {
 	for text, want := range map[string][2]float64{
 		"70": {70, 0}, "70 Ma": {70, 0}, "70 +- 3": {70, 3}, "70±3 Ma": {70, 3}, "70 +/- 3 Ma": {70, 3}, "12 ka": {0.012, 0}, "2.5Ga": {2500, 0},
