@@ -2,6 +2,8 @@ package main
 
 import (
 	"context"
+	"encoding/json"
+	"fmt"
 	"strconv"
 	"testing"
 
@@ -81,6 +83,34 @@ func TestBrowserWeightShiftAndWidth(t *testing.T) {
 			}
 			t.Logf("%-28s %d requests, %d kB", p, requests, weight/1000)
 		}
+	}
+}
+
+// The tables of measurements fit a window of 1280 pixels, all columns in sight;
+// the levels of a measured line fit a phone.
+func TestBrowserTablesFit(t *testing.T) {
+	s := newDemoSite(t)
+	ctx := openBrowser(t)
+	over := `Math.max(...[...document.querySelectorAll(".scroll:has(%s)")].map(e => e.scrollWidth - e.clientWidth))`
+	for _, p := range []struct{ path, table string }{{"/systems", "#systems-table"}, {"/systems?page=2", "#systems-table"}, {"/systems/xanthuvel-channel", "#measurements"}, {"/systems/gwendrasse-deep-sea-channel", "#measurements"}} {
+		open(t, ctx, s.base+p.path)
+		evaluate[bool](t, ctx, `document.fonts.ready.then(() => true)`)
+		if o := evaluate[int](t, ctx, fmt.Sprintf(over, p.table)); o > 0 {
+			t.Errorf("%s: the table is %d pixels wider than its place", p.path, o)
+		}
+	}
+	if err := chromedp.Do(ctx, chromedp.EmulateViewport(390, 844)); err != nil {
+		t.Fatal(err)
+	}
+	open(t, ctx, s.base+"/measure")
+	line, err := json.Marshal(sineKML(80))
+	if err != nil {
+		t.Fatal(err)
+	}
+	evaluate[bool](t, ctx, `(() => { const f = document.getElementById("measure-form"); f.elements.line.value = `+string(line)+`; f.elements.line.dispatchEvent(new Event("input", {bubbles: true})); f.requestSubmit(); return true })()`)
+	waitFor(t, ctx, `!!document.querySelector('[aria-label="Sinuosity"] table')`)
+	if o := evaluate[int](t, ctx, fmt.Sprintf(over, `.interval`)); o > 0 {
+		t.Errorf("the limits of the levels go %d pixels past the page", o)
 	}
 }
 
