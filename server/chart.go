@@ -89,9 +89,14 @@ func (a *App) chartAnswer(ctx context.Context, f catalogue.Filter) (*chartAnswer
 		return nil, err
 	}
 	v, err := a.fits.do(ctx, fmt.Sprintf("chart|%d|%s", rev, f.Values().Encode()), func(ctx context.Context) (any, error) {
-		out := &chartAnswer{}
 		f.Sort = ""
-		err := a.store.EachSystem(ctx, f, func(r catalogue.Row) error {
+		n, err := a.store.CountSystems(ctx, f)
+		if err != nil {
+			return nil, err
+		}
+		// Rows are large: room that grows would copy each of them several times.
+		out := &chartAnswer{rows: make([]catalogue.Row, 0, n), items: make([]views.ChartItem, 0, n)}
+		err = a.store.EachSystem(ctx, f, func(r catalogue.Row) error {
 			if !r.LatitudeDeg.Valid || !r.LongitudeDeg.Valid {
 				out.none++
 				return nil
