@@ -129,6 +129,15 @@
   addEventListener("popstate", () => { if (location.pathname + location.search !== shown) show(location.href, false); });
   if (document.querySelector("form[data-live]")) history.replaceState({ live: true }, "", location.href);
 
+  // What a part that is opened needs, fetched when it is opened.
+  document.addEventListener("toggle", (e) => {
+    const address = e.target.open && e.target.dataset?.script;
+    if (!address || document.querySelector(`script[src="${address}"]`)) return;
+    const s = document.createElement("script");
+    s.src = address;
+    document.head.append(s);
+  }, true);
+
   // Copy a table as tab-separated text.
   document.addEventListener("click", async (e) => {
     const button = e.target.closest("button[data-copy]");

@@ -16,17 +16,18 @@
   const outlines = (address) => once[address] ||= fetch(address).then((a) => { if (!a.ok) throw new Error(a.status); return a.json(); })
     .catch((e) => { delete once[address]; throw e; });
 
-  // The listener stands on the document, so that a form put in place anew needs
-  // nothing of its own.
-  document.addEventListener("toggle", (e) => {
-    const root = e.target;
+  const opened = (root) => {
     if (!(root instanceof HTMLDetailsElement) || !root.matches(".place-picker") || !root.open || pickers.has(root)) return;
     const says = root.querySelector("[role=status]");
     pickers.set(root, null);
     Promise.all([window.chartMap ? null : load(root.dataset.map), outlines(root.dataset.land)])
       .then(([, land]) => pickers.set(root, picker(root, window.chartMap.ringsOf(land), says)))
       .catch(() => { pickers.delete(root); says.textContent = "The map could not be loaded. Close and open it to try again, or type the place."; });
-  }, true);
+  };
+  // The listener stands on the document, so that a form put in place anew needs
+  // nothing of its own. This script is fetched when the first map is opened.
+  document.addEventListener("toggle", (e) => opened(e.target), true);
+  document.querySelectorAll(".place-picker[open]").forEach(opened);
 
   function picker(root, coarse, says) {
     const M = window.chartMap;
