@@ -59,7 +59,7 @@ func (f *Fits) outsideF(d *draws) []string {
 		}
 	}
 	if share := n / float64(d.n); share > 0.05 {
-		return []string{fmt.Sprintf("With its errors, the target's |f| lies outside the range of the rows (%.2f to %.2fe-4 per second) in %.0f %% of the draws.", lo, hi, 100*share)}
+		return []string{fmt.Sprintf("With its errors, the target's |f| lies outside the range of the rows (%.2fe-4 to %.2fe-4 per second) in %.0f %% of the draws.", lo, hi, 100*share)}
 	}
 	return nil
 }
