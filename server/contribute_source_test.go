@@ -90,7 +90,7 @@ func TestAllErrorsOfAFormAtOnce(t *testing.T) {
 // is not the curator's to give.
 func TestAcceptWithEditsAsksForNoLicence(t *testing.T) {
 	s, ann, cy := newContribution(t)
-	ann.upload([]byte(csvHead+"Loom Channel,-30,-20,1.4,peak,thalweg,Invented 2031,0.004\n"), nil).is(http.StatusOK)
+	ann.act(ann.upload([]byte(csvHead+"Loom Channel,-30,-20,1.4,peak,thalweg,Invented 2031,0.004\n"), nil).is(http.StatusOK), "send").is(http.StatusOK)
 	edit := cy.get("/review/1/edit").is(http.StatusOK).form("form.record")
 	edit.Set("notes", "page 4")
 	cy.post("/review/1/edit", press(edit, "accept")).is(http.StatusOK).says("accepted with your edits")

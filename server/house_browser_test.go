@@ -196,6 +196,12 @@ func (b *houseTab) load(t *testing.T, p housePage, width int64) loaded {
 		t.Errorf("%s (%s): status %d, want %d\n%.600s", p.name, p.path, resp.Status, p.want(), b.text())
 	}
 	l := evaluate[loaded](t, b.ctx, measureLoad)
+	if l.Shift >= mostShift && p.act == "" {
+		// On a machine that is busy a font may come after its time: what moves at
+		// every visit is a fault of the page.
+		b.goTo(p.path)
+		l.Shift = min(l.Shift, evaluate[loaded](t, b.ctx, measureLoad).Shift)
+	}
 	requests, bytes := mostRequests, mostBytes
 	if strings.HasPrefix(p.path, "/chart") {
 		requests, bytes = mostOfChart, mostBytesChart

@@ -828,9 +828,9 @@ func EmbargoesPage(p Page, list []catalogue.Hidden) templ.Component {
 						return templ_7745c5c3_Err
 					}
 					var templ_7745c5c3_Var36 string
-					templ_7745c5c3_Var36, templ_7745c5c3_Err = templruntime.NewAttributeExpression("Publish " + h.SystemName + " of contribution " + strconv.FormatInt(h.ID, 10)).Resolve(ctx)
+					templ_7745c5c3_Var36, templ_7745c5c3_Err = templruntime.NewAttributeExpression("Publish now: " + h.SystemName + " of contribution " + strconv.FormatInt(h.ID, 10)).Resolve(ctx)
 					if templ_7745c5c3_Err != nil {
-						return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/private.templ`, Line: 155, Col: 122}
+						return templ.Error{Err: templ_7745c5c3_Err, FileName: `views/private.templ`, Line: 155, Col: 127}
 					}
 					_, templ_7745c5c3_Err = templ_7745c5c3_Buffer.WriteString(templ_7745c5c3_Var36)
 					if templ_7745c5c3_Err != nil {

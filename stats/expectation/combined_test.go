@@ -8,6 +8,9 @@ import (
 	"strings"
 	"testing"
 
+	"github.com/google/go-cmp/cmp"
+	"github.com/google/go-cmp/cmp/cmpopts"
+
 	"fathombend/stats"
 )
 
@@ -37,14 +40,8 @@ func TestExpectCombined(t *testing.T) {
 			t.Errorf("target %d: %s alone, %s in a file", i, a, b)
 		}
 		whole.Combined.Sinuosity, part.Combined.Sinuosity = nil, nil
-		if whole.EquivalentModernLatitude != nil && *whole.EquivalentModernLatitude == *part.EquivalentModernLatitude {
-			whole.EquivalentModernLatitude = part.EquivalentModernLatitude
-		}
-		if whole.Observed != nil && *whole.Observed == *part.Observed {
-			whole.Observed = part.Observed
-		}
-		if a, b := fmt.Sprintf("%+v", *whole), fmt.Sprintf("%+v", *part); a != b {
-			t.Errorf("target %d differs:\n%s\n%s", i, a, b)
+		if diff := cmp.Diff(whole, part, cmpopts.EquateNaNs()); diff != "" {
+			t.Errorf("target %d differs:\n%s", i, diff)
 		}
 	}
 }
