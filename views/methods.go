@@ -124,4 +124,6 @@ var formSources = map[string]string{
 var predictorTexts = map[string]string{
 	"valley_slope": "S_v, m/m; rows with a slope of 0 or below are kept out", "abs_latitude": "|latitude|, degrees, at the time of deposition",
 	"sin_abs_latitude": "sin |latitude|, at the time of deposition", "coriolis": "|f| = 2 Ω(age) sin |latitude|, in 10⁻⁴ s⁻¹", "channel_width": "W, m",
+	"channel_depth": "h, m; bankfull, levee crest to thalweg",
+	"log10_slope":   "log₁₀ of S_v in m/m; rows with a slope of 0 or below are kept out",
 }
